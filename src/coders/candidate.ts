@@ -1,0 +1,131 @@
+import { InputError } from '../errors/errors.ts';
+import { nearestWord } from '../errors/nearest.ts';
+import type { Coder, CoderEntry, Declaration } from './contract.ts';
+import { type ParameterValues, resolveParameters, writeParameters } from './parameters.ts';
+import { coderEntries } from './registry.ts';
+
+/** A coder with all parameters set, and its stable name. */
+export interface Candidate {
+  /** `name` or `name:key=value,…`, parameters in declared order, defaults left out. */
+  readonly id: string;
+  readonly declaration: Declaration;
+  readonly values: ParameterValues;
+  create(): Coder;
+}
+
+/** Names of keys that a later version will understand, for every coder. */
+const LATER_KEYS = ['after', 'stored', 'tables_in_set', 'stage', 'lanes', 'refresh', 'position'];
+
+/** The registry entry of that name. Throws InputError with the nearest name. */
+export function coderEntryOf(name: string): CoderEntry {
+  const entry = coderEntries.find((e) => e.declaration.name === name);
+  if (entry !== undefined) return entry;
+  const names = coderEntries.map((e) => e.declaration.name);
+  const near = nearestWord(name, names);
+  throw new InputError(`there is no coder named ${JSON.stringify(name)}`, {
+    expected: `one of ${names.join(', ')}`,
+    advice: near === undefined ? 'bitassay coders lists them.' : `Did you mean ${near}?`,
+  });
+}
+
+function splitPairs(text: string, name: string, pairs: string): [string, string][] {
+  const result: [string, string][] = [];
+  for (const pair of pairs.split(',')) {
+    const at = pair.indexOf('=');
+    const key = at < 0 ? pair.trim() : pair.slice(0, at).trim();
+    if (at < 1 || key === '') {
+      throw new InputError(`cannot read the candidate ${JSON.stringify(text)}`, {
+        expected: 'name:key=value,key=value',
+        got: pair,
+        advice: `bitassay coders ${name} shows the parameters of ${name}.`,
+      });
+    }
+    if (result.some(([k]) => k === key)) {
+      throw new InputError(`the candidate ${JSON.stringify(text)} gives ${key} twice`, { key });
+    }
+    result.push([key, pair.slice(at + 1).trim()]);
+  }
+  return result;
+}
+
+/** Number of candidates that {@link parseCandidates} would give, without making them. */
+export function countCandidates(text: string): number {
+  let count = 1;
+  for (const match of text.matchAll(/=\s*(\d+)\.\.(\d+)/g)) {
+    count *= Math.max(0, Number(match[2]) - Number(match[1]) + 1);
+  }
+  return count;
+}
+
+/**
+ * The candidates behind one text: a value may be a range `a..b`, which gives one candidate for each integer.
+ * @throws InputError for an unknown coder or parameter, a value out of range, an empty range, or more than 100 000 candidates
+ */
+export function parseCandidates(text: string): Candidate[] {
+  const colon = text.indexOf(':');
+  const name = (colon < 0 ? text : text.slice(0, colon)).trim();
+  const entry = coderEntryOf(name);
+  const declaration = entry.declaration;
+  const pairs = colon < 0 ? [] : splitPairs(text, name, text.slice(colon + 1));
+  if (countCandidates(text) > 100_000) {
+    throw new InputError(
+      `the candidate ${JSON.stringify(text)} stands for ${countCandidates(text)} candidates`,
+      {
+        expected: 'at most 100000',
+        advice: 'Narrow its ranges.',
+      },
+    );
+  }
+  let choices: Record<string, string>[] = [{}];
+  for (const [key, value] of pairs) {
+    if (LATER_KEYS.includes(key) && !declaration.parameters.some((p) => p.key === key)) {
+      throw new InputError(`${name}: the key ${key} is not built yet`, {
+        key,
+        advice: 'Leave it out; a later version of bitassay will understand it.',
+      });
+    }
+    const range = /^(\d+)\.\.(\d+)$/.exec(value);
+    let values = [value];
+    if (range) {
+      const from = Number(range[1]);
+      const to = Number(range[2]);
+      if (to < from) {
+        throw new InputError(`${name}: the range of ${key} is empty`, {
+          key,
+          expected: 'a..b with a ≤ b',
+          got: value,
+        });
+      }
+      values = Array.from({ length: to - from + 1 }, (_, i) => String(from + i));
+    }
+    choices = choices.flatMap((choice) => values.map((v) => ({ ...choice, [key]: v })));
+  }
+  return choices.map((given) =>
+    candidateOf(entry, resolveParameters(name, declaration.parameters, given)),
+  );
+}
+
+/** The one candidate behind a text without ranges. Throws InputError when there are several. */
+export function parseCandidate(text: string): Candidate {
+  const candidates = parseCandidates(text);
+  if (candidates.length !== 1) {
+    throw new InputError(
+      `${JSON.stringify(text)} stands for ${candidates.length} candidates where one is wanted`,
+      {
+        advice: 'Give one value instead of a range.',
+      },
+    );
+  }
+  return candidates[0];
+}
+
+function candidateOf(entry: CoderEntry, values: ParameterValues): Candidate {
+  const declaration = entry.declaration;
+  const parameters = writeParameters(declaration.parameters, values);
+  return {
+    id: parameters === '' ? declaration.name : `${declaration.name}:${parameters}`,
+    declaration,
+    values,
+    create: () => entry.create(values),
+  };
+}

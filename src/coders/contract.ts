@@ -1,0 +1,170 @@
+import type { SymbolChunk, SymbolSequence } from '../symbols/sequence.ts';
+import type { ParameterDeclaration, ParameterValues } from './parameters.ts';
+
+/** Where a coder's knowledge comes from; `none` for coders that need no tables and keep no state between messages. */
+export type TablePolicy = 'shipped' | 'sent' | 'learned' | 'primed' | 'none';
+
+/** When an adaptive coder forgets and `sent` tables are sent anew, as a plan says it. */
+export type Reset = 'message' | 'file' | 'never';
+
+/**
+ * The same as a coder sees it: the harness runs reset `file` as one unit a file, so within a unit there is either a
+ * reset at each message or none.
+ */
+export type UnitReset = 'message' | 'never';
+
+/**
+ * What the decoder is told for free: `known` the symbol count of each message; `link` where each message ends in the
+ * carried bits; `sent` neither. What is not free is written in the message and booked in `framing`.
+ */
+export type Lengths = 'known' | 'link' | 'sent';
+
+/** Trained or fitted knowledge of one coder; made by its trainer, read only by the same coder. */
+export interface Tables {
+  /** Name of the coder that made them. */
+  readonly coder: string;
+}
+
+/** Everything both ends agree on before the first bit. */
+export interface Setup {
+  readonly policy: TablePolicy;
+  readonly alphabetSize: number;
+  readonly reset: UnitReset;
+  readonly lengths: Lengths;
+  /** Each message's bits are padded to a multiple of this: 1, 8, 16, 32 or 64. */
+  readonly align: number;
+  /**
+   * `shipped`, `primed`: at both ends. `sent` with reset `never`: fitted to the unit, at the encoder only, which writes
+   * them in the first message. `sent` with reset `message`: absent, the encoder fits each message itself.
+   */
+  readonly tables?: Tables;
+}
+
+/** Exact integers, in bits, summed over messages; `payloadBits` is the one real number (see DESIGN of the account). */
+export interface IntegerAccount {
+  /** Code words, or whole bytes shifted out of an arithmetic coder. */
+  writtenBits: number;
+  /** What ends the message's code string. */
+  endingBits: number;
+  /** Zeros up to `align`. */
+  paddingBits: number;
+  tableBits: number;
+  indexBits: number;
+  framingBits: number;
+  checkBits: number;
+}
+
+/** What an encoder gives back. */
+export interface Coded {
+  /** All messages, one after another; the last byte filled up with zeros. */
+  readonly bytes: Uint8Array;
+  /** For each message the bit where it ends, padding included: multiples of `align`. */
+  readonly messageEndsBits: Float64Array;
+  readonly account: IntegerAccount;
+  /** Σ word lengths, or −log2 of the final by the initial interval of an arithmetic coder: real, not rounded. */
+  readonly payloadBits: number;
+}
+
+export interface Encoder {
+  /** Codes the chunk. Any cut of a sequence into chunks gives the same bytes. */
+  push(chunk: SymbolChunk): void;
+  /** Ends the unit. An open message is an error. The encoder cannot be used afterwards. */
+  finish(): Coded;
+}
+
+/** What a decoder is given of one unit; the optional parts only under the lengths rule that grants them. */
+export interface CodedInput {
+  readonly bytes: Uint8Array;
+  readonly messageCount: number;
+  /** Only under `link`. */
+  readonly messageEndsBits?: Float64Array;
+  /** Only under `known`. */
+  readonly symbolCounts?: Uint32Array;
+}
+
+export interface Decoded {
+  readonly sequence: SymbolSequence;
+  /** Bits read, padding included; equals the last message's end for an honest stream. */
+  readonly bitsConsumed: number;
+}
+
+/** Bounds that keep a decoder safe on any bytes. */
+export interface DecodeLimits {
+  /** Most symbols of a whole unit. */
+  readonly maxSymbols: number;
+}
+
+export interface Decoder {
+  /** @throws CorruptStreamError, LimitError – and nothing else, whatever the bytes. */
+  decode(input: CodedInput): Decoded;
+}
+
+export interface Trainer {
+  push(chunk: SymbolChunk): void;
+  finish(): Tables;
+}
+
+/** The class of which `fit` is the best member. */
+export type FitClass = { readonly order: number } | { readonly block: number };
+
+/** Code lengths by the model alone: a pass of its own, never timed, floating point allowed. */
+export interface Price {
+  /** −Σ log2 of the probabilities behind the code. */
+  readonly idealBits: number;
+  /** The same per message. */
+  readonly messageIdealBits: Float64Array;
+  /**
+   * Shortest code length of one fixed member of the coder's class over the whole sequence, with the contexts that the
+   * cell has (start contexts or run-on). Absent where the class has no best member.
+   */
+  readonly fit?: { readonly bits: number; readonly of: FitClass };
+}
+
+/** A coder's description of itself: what the registry, screens and documents show. */
+export interface Declaration {
+  readonly name: string;
+  /** One sentence. */
+  readonly summary: string;
+  readonly parameters: readonly ParameterDeclaration[];
+  readonly policies: readonly TablePolicy[];
+  /** Resets in which cells exist for policies other than `shipped` and `none` (these have one cell, at `message`). */
+  readonly resets: readonly Reset[];
+  /** The encoder must hold a whole message before its first bit. */
+  readonly needsWholeMessage: boolean;
+  /** A general-purpose coder shown for scale; never a pick, its bits never gated. */
+  readonly reference: boolean;
+  /** Largest alphabet, in symbols. */
+  readonly maxAlphabetSize: number;
+  /** Longest a message of n symbols can become, in words and symbols. */
+  readonly worstCase: string;
+  /** Memory of each end beside the message, in words and symbols. */
+  readonly memory: string;
+  /** Author, year, section of the method. */
+  readonly source: string;
+}
+
+/**
+ * A coder with all parameters set.
+ *
+ * Messages are coded one after another; each starts with what `lengths` does not grant (see message-frame.ts) and is
+ * padded to `align`.
+ */
+export interface Coder {
+  readonly declares: Declaration;
+  /** Throws InputError when this setup cannot work (alphabet too large, policy not declared …), saying why. */
+  check?(setup: Setup): void;
+  /** Absent where no policy of the coder uses tables. */
+  trainer?(setup: Setup): Trainer;
+  encoder(setup: Setup): Encoder;
+  decoder(setup: Setup, limits: DecodeLimits): Decoder;
+  /** Absent for coders that have no probabilities (references). `sequence` is one whole unit. */
+  price?(sequence: SymbolSequence, setup: Setup): Price;
+  /** Lines that show the tables to a person: sizes, bits, a few rows. */
+  describeTables?(tables: Tables, setup: Setup): string[];
+}
+
+/** A coder before its parameters are set: what a coder's file exports and the registry lists. */
+export interface CoderEntry {
+  readonly declaration: Declaration;
+  create(values: ParameterValues): Coder;
+}
