@@ -104,8 +104,19 @@ export interface Trainer {
   finish(): Tables;
 }
 
-/** The class of which `fit` is the best member. */
-export type FitClass = { readonly order: number } | { readonly block: number };
+/**
+ * The class of which `fit` is the best member: all order-k conditional distributions, or all distributions over blocks of n
+ * symbols. For blocks the coder also says how many it saw, how many were distinct, and their plug-in entropy in bits a block,
+ * which tell whether that class is estimable.
+ */
+export type FitClass =
+  | { readonly order: number }
+  | {
+      readonly block: number;
+      readonly blocks: number;
+      readonly distinct: number;
+      readonly entropyBits: number;
+    };
 
 /** Code lengths by the model alone: a pass of its own, never timed, floating point allowed. */
 export interface Price {

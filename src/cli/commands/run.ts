@@ -1,0 +1,142 @@
+import { basename, join } from 'node:path';
+import type { Command } from 'commander';
+import { countCandidates } from '../../coders/candidate.ts';
+import { compareWithBest } from '../../compare/compare-cells.ts';
+import { type Plan, readPlan } from '../../corpus/plan.ts';
+import { InputError } from '../../errors/errors.ts';
+import { estimateSeconds } from '../../harness/estimate.ts';
+import { requestOf } from '../../harness/plan-request.ts';
+import { cellsOf, type RunRequest, runAll } from '../../harness/run-all.ts';
+import { writeRunFolder } from '../../harness/run-folder.ts';
+import { countText, durationText } from '../../report/figures.ts';
+import { runScreen } from '../../report/run-screen.ts';
+import { CommandEnd, exitCodes } from '../exit.ts';
+import { whileInterruptible } from '../interrupt.ts';
+import { terminalColumns, writeStandardOutput } from '../output.ts';
+import { ProgressLine } from '../progress.ts';
+
+interface RunOptions {
+  readonly output?: string;
+  readonly only?: string;
+  readonly cells?: boolean;
+  readonly many?: boolean;
+  readonly json?: boolean;
+}
+
+/** More cells than this are run only when asked for twice. */
+const MANY_CELLS = 2000;
+
+function defaultFolder(planFile: string): string {
+  return join(
+    planFile.replace(/[^/\\]*$/, ''),
+    `${basename(planFile).replace(/\.ya?ml$/i, '')}.run`,
+  );
+}
+
+/** Refuses, before any file is read, a plan whose ranges stand for more candidates than anybody means. */
+function guardCandidates(plan: Plan): void {
+  const count = plan.candidates.reduce((sum, text) => sum + countCandidates(text), 0);
+  if (count <= 100_000) return;
+  throw new InputError(`the plan stands for ${countText(count)} candidates`, {
+    file: plan.file,
+    key: 'candidates',
+    expected: 'at most 100 000',
+    advice: 'Narrow the ranges.',
+  });
+}
+
+async function guardCells(request: RunRequest, options: RunOptions): Promise<void> {
+  const { cells } = cellsOf(request);
+  if (cells.length === 0) {
+    throw new InputError('no cell is left to run', {
+      ...(options.only === undefined ? {} : { got: `--only ${options.only}` }),
+      advice: 'bitassay run PLAN.yaml --cells lists the cells there are.',
+    });
+  }
+  if (cells.length <= MANY_CELLS || options.many) return;
+  const seconds = await estimateSeconds(cells, request.corpora, request.align);
+  throw new InputError(
+    `this plan has ${countText(cells.length)} cells and would take about ${durationText(seconds)} without timing`,
+    {
+      expected: `at most ${countText(MANY_CELLS)} cells unless asked for`,
+      advice: 'Narrow a range or use --only TEXT; --many runs them all.',
+    },
+  );
+}
+
+async function listCellsOf(request: RunRequest, json: boolean): Promise<void> {
+  const { cells, undeclared } = cellsOf(request);
+  const seconds = await estimateSeconds(cells, request.corpora, request.align);
+  if (json) {
+    const list = { cells: cells.map((c) => c.id), undeclared, seconds: Math.round(seconds) };
+    await writeStandardOutput(`${JSON.stringify(list, null, 1)}\n`);
+    return;
+  }
+  const lines = [
+    ...cells.map((cell) => cell.id),
+    '',
+    `${countText(cells.length)} cells, about ${durationText(seconds)} without timing (a guess from the beginning of the data).`,
+    ...(undeclared === 0
+      ? []
+      : [`${countText(undeclared)} combinations give no cell: the coder does not declare them.`]),
+  ];
+  await writeStandardOutput(`${lines.join('\n')}\n`);
+}
+
+async function runPlanFile(planFile: string, options: RunOptions): Promise<void> {
+  const plan = await readPlan(planFile);
+  guardCandidates(plan);
+  const whole = await requestOf(plan);
+  const request = options.only === undefined ? whole : { ...whole, only: options.only };
+  if (options.cells) return listCellsOf(request, options.json === true);
+  await guardCells(request, options);
+  for (const choice of plan.chosen)
+    process.stderr.write(`bitassay: the plan leaves open ${choice}\n`);
+  const progress = new ProgressLine(true);
+  const result = await whileInterruptible((interrupted) =>
+    runAll(request, { progress: (state) => progress.show(state), interrupted }),
+  ).finally(() => progress.stop());
+  const folder = options.output ?? defaultFolder(planFile);
+  await writeRunFolder(folder, result);
+  const { record } = result;
+  process.stderr.write(`bitassay: record in ${join(folder, 'run.json')}\n`);
+  if (options.json) {
+    await writeStandardOutput(`${JSON.stringify(record, null, 1)}\n`);
+  } else {
+    await writeStandardOutput(
+      runScreen(record, {
+        columns: terminalColumns(),
+        comparisons: compareWithBest(record, result.messages),
+        next: `bitassay entropy ${planFile}`,
+      }),
+    );
+  }
+  if (record.partial) throw new CommandEnd(exitCodes.interrupted);
+  if (record.cells.some((cell) => !cell.verified)) throw new CommandEnd(exitCodes.cellFailed);
+}
+
+/** `bitassay run PLAN`: every cell of a plan, verified, accounted and timed. */
+export function registerRun(program: Command): void {
+  program
+    .command('run')
+    .summary('run a plan: the product’s own framing and table policies')
+    .description(
+      'Trains, codes, decodes, compares, accounts and times every cell of a plan, and leaves a run record in a folder.',
+    )
+    .argument('<plan>', 'plan file (YAML)')
+    .option('-o, --output <folder>', 'folder of the run record (default: the plan’s name + .run)')
+    .option('--only <text>', 'only the cells whose id contains this text')
+    .option('--cells', 'list the cells and guess the time, without running them')
+    .option('--many', `run a plan of more than ${MANY_CELLS} cells`)
+    .option('--json', 'print the run record')
+    .addHelpText(
+      'after',
+      `
+Examples:
+  bitassay run plan.yaml
+  bitassay run plan.yaml --cells
+  bitassay run plan.yaml --only telemetry/arith -o arith.run
+  bitassay run plan.yaml --json > run.json`,
+    )
+    .action((planFile: string, options: RunOptions) => runPlanFile(planFile, options));
+}

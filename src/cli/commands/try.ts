@@ -1,0 +1,145 @@
+import { basename } from 'node:path';
+import { type Command, Option } from 'commander';
+import { parseCandidates } from '../../coders/candidate.ts';
+import type { Reset, TablePolicy } from '../../coders/contract.ts';
+import type { SplitRule } from '../../corpus/decide-split.ts';
+import { InputError } from '../../errors/errors.ts';
+import { describeSplit, loadCorpusData } from '../../harness/load-corpus-data.ts';
+import { type RunRequest, runAll } from '../../harness/run-all.ts';
+import { tryScreen } from '../../report/try-screen.ts';
+import { CommandEnd, exitCodes } from '../exit.ts';
+import { whileInterruptible } from '../interrupt.ts';
+import { terminalColumns } from '../output.ts';
+import { addOutputOptions, type OutputOptions, writeResult } from '../output-options.ts';
+import { ProgressLine } from '../progress.ts';
+import {
+  addSourceOptions,
+  numberOption,
+  type SourceOptions,
+  specFromOptions,
+  typedOptions,
+} from '../source-options.ts';
+
+interface TryOptions extends SourceOptions, OutputOptions {
+  readonly coder: readonly string[];
+  readonly tables: readonly TablePolicy[];
+  readonly reset: readonly Reset[];
+  readonly align: number;
+}
+
+/** What is tried when no coder is named: fixed width, the plain families, and general-purpose coders for scale. */
+const USUAL_CANDIDATES = [
+  'fixed',
+  'huffman',
+  'block-huffman:n=2',
+  'arith:order=0..3',
+  'deflate',
+  'deflate-huffman',
+  'brotli',
+];
+
+const HALVES: SplitRule = { by: 'message', order: 'in_time', train: 0.5 };
+
+const collect = (value: string, before: string[]): string[] => [...before, value];
+
+function policiesFor(options: TryOptions): readonly TablePolicy[] {
+  if (options.tables.length > 0) return options.tables;
+  return options.messages === 'whole' ? ['sent', 'learned'] : ['shipped', 'sent', 'learned'];
+}
+
+async function tryFiles(files: readonly string[], options: TryOptions): Promise<void> {
+  const policies = policiesFor(options);
+  const trains = policies.includes('shipped') || policies.includes('primed');
+  if (trains && options.messages === 'whole' && files.length < 2) {
+    throw new InputError('tables cannot be trained on one message', {
+      expected: 'messages to train on and others to code',
+      got: '--messages whole and one file',
+      advice:
+        'Cut the file into messages, as in --messages lines or --messages every=1024, or leave out --tables.',
+    });
+  }
+  const candidates = (options.coder.length > 0 ? options.coder : USUAL_CANDIDATES).flatMap(
+    parseCandidates,
+  );
+  const rule = trains ? HALVES : undefined;
+  const name = files.length === 1 ? basename(files[0]).replace(/[^A-Za-z0-9._-]/g, '_') : 'files';
+  const corpus = await loadCorpusData(specFromOptions(name, files, options), process.cwd(), rule);
+  const request: RunRequest = {
+    title: files.join(', '),
+    corpora: [corpus],
+    candidates,
+    policies,
+    resets: options.reset.length > 0 ? options.reset : ['message'],
+    align: options.align,
+    split: describeSplit(rule),
+  };
+  const progress = new ProgressLine(true);
+  const result = await whileInterruptible((interrupted) =>
+    runAll(request, { progress: (state) => progress.show(state), interrupted }),
+  ).finally(() => progress.stop());
+  const { record } = result;
+  await writeResult(record, options, () =>
+    tryScreen(record, {
+      columns: terminalColumns(),
+      caution:
+        corpus.test.messageEnds.length === 1
+          ? 'These rates hold for ONE long message. If the product sends packets, ask again with its messages.'
+          : 'No speed was measured here, and one split of one corpus can mislead.',
+      next: nextCommand(files, options, corpus.test.messageEnds.length === 1),
+    }),
+  );
+  if (record.partial) throw new CommandEnd(exitCodes.interrupted);
+  if (record.cells.some((cell) => !cell.verified)) throw new CommandEnd(exitCodes.cellFailed);
+}
+
+function nextCommand(files: readonly string[], options: TryOptions, whole: boolean): string {
+  const names = files.map((file) => (/[^\w./-]/.test(file) ? `'${file}'` : file)).join(' ');
+  if (whole) return `bitassay try ${names}${typedOptions(options, 'every=192')}`;
+  return `bitassay entropy ${names}${typedOptions(options)}`;
+}
+
+/** `bitassay try FILE…`: first contact, without a plan. */
+export function registerTry(program: Command): void {
+  const command = program
+    .command('try')
+    .summary('first contact: code files with a list of coders')
+    .description(
+      'Codes files with a list of coders, decodes and compares each, and shows how far each lies above the entropy floor and where its bits went.',
+    )
+    .argument('<file...>', 'files or patterns');
+  addSourceOptions(command)
+    .option(
+      '--coder <candidate>',
+      'a candidate such as arith:order=0..3; may be repeated',
+      collect,
+      [],
+    )
+    .addOption(
+      new Option('--tables <policy...>', 'where a coder’s knowledge comes from')
+        .choices(['shipped', 'sent', 'learned', 'primed'])
+        .default([], 'sent, learned; with messages also shipped'),
+    )
+    .addOption(
+      new Option('--reset <when...>', 'when an adaptive coder forgets')
+        .choices(['message', 'file', 'never'])
+        .default([], 'message'),
+    )
+    .option(
+      '--align <bits>',
+      'pad each message to a multiple of so many bits',
+      numberOption(1, true),
+      8,
+    );
+  addOutputOptions(command)
+    .addHelpText(
+      'after',
+      `
+Examples:
+  bitassay try telemetry.bin
+  bitassay try events.log --messages lines
+  bitassay try uplink.bin --record 24 --messages records=8 --coder huffman --coder arith:order=0..3
+  bitassay try positions.csv --symbols csv:speed_knots --step 0.1
+  bitassay try *.log --json -o first-look.json`,
+    )
+    .action((files: string[], options: TryOptions) => tryFiles(files, options));
+}

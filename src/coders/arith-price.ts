@@ -1,0 +1,62 @@
+import { empiricalLengthBits } from '../models/empirical-length.ts';
+import { IntervalTape } from '../models/interval.ts';
+import { PairTree } from '../models/pair-tree.ts';
+import { StaticModel } from '../models/static-model.ts';
+import { compileTable } from '../models/static-table.ts';
+import type { SymbolModel } from '../models/symbol-model.ts';
+import { Meter } from '../stages/meter.ts';
+import type { SymbolSequence } from '../symbols/sequence.ts';
+import type { ArithSettings } from './arith-settings.ts';
+import { adaptiveModelFor, BLOCK_SYMBOLS, startsAtMessages, tablesFor } from './arith-tables.ts';
+import type { Price, Setup } from './contract.ts';
+
+/**
+ * Code lengths by the same model code as the encoder's, into a meter; static tables enter with their raw counts instead
+ * of quantised frequencies.
+ */
+export function arithPrice(settings: ArithSettings, sequence: SymbolSequence, setup: Setup): Price {
+  const { symbols, messageEnds, alphabetSize } = sequence;
+  const { order } = settings;
+  const meter = new Meter();
+  const tape = new IntervalTape(BLOCK_SYMBOLS * (order + 2));
+  const ownPairs =
+    setup.policy === 'sent' && setup.reset === 'message'
+      ? new PairTree(alphabetSize, order)
+      : undefined;
+  let model = ownPairs === undefined ? pricedModel(settings, setup) : undefined;
+  const messageIdealBits = new Float64Array(messageEnds.length);
+  let idealBits = 0;
+  let from = 0;
+  for (let i = 0; i < messageEnds.length; i++) {
+    const to = messageEnds[i];
+    if (ownPairs !== undefined) {
+      ownPairs.clear();
+      ownPairs.count(symbols, from, to);
+      model = new StaticModel(compileTable(ownPairs.tree, order, 'none', 'exact'));
+    } else if (startsAtMessages(setup)) {
+      model!.reset();
+    }
+    for (let at = from; at < to; at += BLOCK_SYMBOLS) {
+      model!.encode(symbols, at, Math.min(to, at + BLOCK_SYMBOLS), tape);
+      meter.putTape(tape);
+    }
+    messageIdealBits[i] = meter.takeBits();
+    idealBits += messageIdealBits[i];
+    from = to;
+  }
+  const bits = empiricalLengthBits(sequence, order, startsAtMessages(setup));
+  return { idealBits, messageIdealBits, fit: { bits, of: { order } } };
+}
+
+function pricedModel(settings: ArithSettings, setup: Setup): SymbolModel {
+  const { order } = settings;
+  if (setup.policy === 'shipped') {
+    const { pairs } = tablesFor(setup, 'shipped');
+    return new StaticModel(compileTable(pairs.tree, order, settings.unseen, 'exact'));
+  }
+  if (setup.policy === 'sent') {
+    const { pairs } = tablesFor(setup, 'sent');
+    return new StaticModel(compileTable(pairs.tree, order, 'none', 'exact'));
+  }
+  return adaptiveModelFor(settings, setup);
+}

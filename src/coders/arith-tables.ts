@@ -1,0 +1,95 @@
+import { BugError } from '../errors/errors.ts';
+import { IntervalTape } from '../models/interval.ts';
+import { PairTrainer, type PairTree } from '../models/pair-tree.ts';
+import { compileTable, type StaticTable } from '../models/static-table.ts';
+import type { AdaptiveModel } from '../models/symbol-model.ts';
+import type { SymbolChunk } from '../symbols/sequence.ts';
+import type { ArithSettings } from './arith-settings.ts';
+import type { Setup, Tables, Trainer } from './contract.ts';
+
+/** Symbols whose intervals are on a tape at once. */
+export const BLOCK_SYMBOLS = 1024;
+
+/** What `arith` is trained to. */
+export type ArithTables =
+  | {
+      readonly coder: 'arith';
+      readonly policy: 'shipped';
+      /** Raw counts of orders 0 … k. */
+      readonly pairs: PairTree;
+      /** The same, quantised. */
+      readonly table: StaticTable;
+    }
+  | { readonly coder: 'arith'; readonly policy: 'sent'; readonly pairs: PairTree }
+  | { readonly coder: 'arith'; readonly policy: 'primed'; readonly model: AdaptiveModel };
+
+/** The tables that a setup's policy needs; a missing or foreign set is our own bug. */
+export function tablesFor<P extends ArithTables['policy']>(
+  setup: Setup,
+  policy: P,
+): Extract<ArithTables, { policy: P }> {
+  const tables = setup.tables as ArithTables | undefined;
+  if (tables?.coder !== 'arith' || tables.policy !== policy) {
+    throw new BugError(`arith was given no tables for ${policy}`, {
+      got: tables === undefined ? 'none' : `tables of ${(tables as Tables).coder}`,
+    });
+  }
+  return tables as Extract<ArithTables, { policy: P }>;
+}
+
+/** A trainer for the policies that have tables. */
+export function arithTrainer(settings: ArithSettings, setup: Setup): Trainer {
+  const { policy, alphabetSize } = setup;
+  if (policy === 'primed') return primedTrainer(settings, setup);
+  const startAtMessages = policy === 'shipped' || setup.reset === 'message';
+  const trainer = new PairTrainer(alphabetSize, settings.order, startAtMessages);
+  return {
+    push: (chunk) => trainer.push(chunk),
+    finish: (): ArithTables => {
+      const { pairs } = trainer;
+      if (policy === 'sent') return { coder: 'arith', policy, pairs };
+      const bits = settings.totalBits(alphabetSize);
+      const table = compileTable(pairs.tree, settings.order, settings.unseen, { bits });
+      return { coder: 'arith', policy: 'shipped', pairs, table };
+    },
+  };
+}
+
+/** Runs the model over the train split without a stage. */
+function primedTrainer(settings: ArithSettings, setup: Setup): Trainer {
+  const model = settings.newModel(setup.alphabetSize);
+  const tape = new IntervalTape(BLOCK_SYMBOLS * model.intervalsPerSymbol);
+  const learn = (chunk: SymbolChunk, from: number, to: number) => {
+    for (let at = from; at < to; at += BLOCK_SYMBOLS) {
+      model.encode(chunk.symbols, at, Math.min(to, at + BLOCK_SYMBOLS), tape);
+      tape.clear();
+    }
+  };
+  return {
+    push(chunk) {
+      let from = 0;
+      for (const to of chunk.messageEnds) {
+        learn(chunk, from, to);
+        if (setup.reset === 'message') model.startContexts();
+        from = to;
+      }
+      learn(chunk, from, chunk.symbols.length);
+    },
+    finish: (): ArithTables => ({ coder: 'arith', policy: 'primed', model }),
+  };
+}
+
+/** The adaptive model that both ends of a unit start with. */
+export function adaptiveModelFor(settings: ArithSettings, setup: Setup): AdaptiveModel {
+  const model =
+    setup.policy === 'primed'
+      ? tablesFor(setup, 'primed').model.clone()
+      : settings.newModel(setup.alphabetSize);
+  if (setup.reset === 'message') model.markResetState();
+  model.startContexts();
+  return model;
+}
+
+/** Whether contexts begin anew at each message. */
+export const startsAtMessages = (setup: Setup): boolean =>
+  setup.policy === 'shipped' || setup.reset === 'message';

@@ -1,0 +1,117 @@
+import { BitReader } from '../bits/bit-reader.ts';
+import { BitWriter } from '../bits/bit-writer.ts';
+import { CorruptStreamError } from '../errors/errors.ts';
+import { newSymbolArray } from '../symbols/sequence.ts';
+import type { Coder, CoderEntry, Declaration, Setup } from './contract.ts';
+import { MessageWalk, writeSymbolCount } from './message-frame.ts';
+import { MessageLedger } from './message-ledger.ts';
+import { MessagePieces } from './message-pieces.ts';
+import { growSymbols } from './symbol-buffer.ts';
+
+const declaration: Declaration = {
+  name: 'fixed',
+  summary: 'Every symbol in ⌈log2 m⌉ bits: what the product pays without an entropy coder.',
+  parameters: [],
+  policies: ['none'],
+  resets: ['message'],
+  needsWholeMessage: false,
+  reference: false,
+  maxAlphabetSize: 2 ** 32,
+  worstCase: 'n · ⌈log2 m⌉ bits, always',
+  memory: 'none',
+  source: 'common practice, no source',
+};
+
+/** ⌈log2 m⌉ for m ≥ 1. */
+export function symbolWidth(alphabetSize: number): number {
+  let width = 0;
+  while (2 ** width < alphabetSize) width++;
+  return width;
+}
+
+/** A code of equal lengths. One symbol only (m = 1): 0 bits a symbol, the count alone is carried. */
+export const fixed: CoderEntry = { declaration, create: () => coder };
+
+const coder: Coder = {
+  declares: declaration,
+
+  encoder(setup: Setup) {
+    const width = symbolWidth(setup.alphabetSize);
+    const writer = new BitWriter();
+    const ledger = new MessageLedger(setup.align);
+    const pieces = new MessagePieces({
+      begin(symbolCount) {
+        ledger.framingBits += writeSymbolCount(writer, setup, symbolCount);
+      },
+      take(symbols, from, to) {
+        writer.reserve(Math.ceil(((to - from) * width) / 8) + 1);
+        for (let i = from; i < to; i++) writer.writeBits(symbols[i], width);
+        ledger.writtenBits += (to - from) * width;
+        ledger.payloadBits += (to - from) * width;
+      },
+      end() {
+        ledger.close(writer);
+      },
+    });
+    return {
+      push: (chunk) => pieces.push(chunk),
+      finish: () => {
+        pieces.finish();
+        return ledger.finish(writer);
+      },
+    };
+  },
+
+  decoder(setup, limits) {
+    const width = symbolWidth(setup.alphabetSize);
+    return {
+      decode(input) {
+        const reader = new BitReader(input.bytes);
+        const walk = new MessageWalk(reader, setup, input, limits);
+        let symbols = newSymbolArray(setup.alphabetSize, 0);
+        let filled = 0;
+        for (let count = walk.next(); count >= 0; count = walk.next()) {
+          if (width > 0 && count * width > reader.limit - reader.position) {
+            throw new CorruptStreamError('a message says it holds more symbols than its bits can', {
+              bitOffset: reader.position,
+              got: `${count} symbols of ${width} bits`,
+            });
+          }
+          symbols = growSymbols(symbols, setup.alphabetSize, filled, count);
+          for (let i = 0; i < count; i++) {
+            const symbol = reader.readBits(width);
+            if (symbol >= setup.alphabetSize) {
+              throw new CorruptStreamError('a decoded symbol is outside the alphabet', {
+                bitOffset: reader.position,
+                expected: `below ${setup.alphabetSize}`,
+                got: String(symbol),
+              });
+            }
+            symbols[filled++] = symbol;
+          }
+          walk.close(reader.position);
+        }
+        return {
+          sequence: {
+            alphabetSize: setup.alphabetSize,
+            symbols: symbols.subarray(0, filled),
+            messageEnds: walk.messageEnds,
+          },
+          bitsConsumed: reader.position,
+        };
+      },
+    };
+  },
+
+  price(sequence, setup) {
+    const width = symbolWidth(setup.alphabetSize);
+    const bits = sequence.symbols.length * width;
+    const messageIdealBits = new Float64Array(sequence.messageEnds.length);
+    let from = 0;
+    for (let i = 0; i < messageIdealBits.length; i++) {
+      messageIdealBits[i] = (sequence.messageEnds[i] - from) * width;
+      from = sequence.messageEnds[i];
+    }
+    return { idealBits: bits, messageIdealBits, fit: { bits, of: { order: 0 } } };
+  },
+};

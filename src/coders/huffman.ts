@@ -1,0 +1,298 @@
+import { BitReader } from '../bits/bit-reader.ts';
+import { BitWriter } from '../bits/bit-writer.ts';
+import { CorruptStreamError, InputError } from '../errors/errors.ts';
+import { PrefixDecoder } from '../stages/prefix-decoder.ts';
+import { PrefixEncoder } from '../stages/prefix-encoder.ts';
+import { PrefixTable } from '../stages/prefix-table.ts';
+import { newSymbolArray } from '../symbols/sequence.ts';
+import type {
+  Coder,
+  CoderEntry,
+  Declaration,
+  DecodeLimits,
+  Decoder,
+  Encoder,
+  Setup,
+  Tables,
+} from './contract.ts';
+import { symbolWidth } from './fixed.ts';
+import { SymbolCounts } from './huffman-counts.ts';
+import { priceHuffman } from './huffman-price.ts';
+import {
+  addedCount,
+  describeHuffman,
+  HuffmanFit,
+  type HuffmanTables,
+  huffmanTables,
+  huffmanTrainer,
+} from './huffman-tables.ts';
+import { MessageWalk, writeSymbolCount } from './message-frame.ts';
+import { MessageLedger } from './message-ledger.ts';
+import { MessagePieces, wholeMessages } from './message-pieces.ts';
+import type { ParameterValues, Rational } from './parameters.ts';
+import { growSymbols } from './symbol-buffer.ts';
+
+const declaration: Declaration = {
+  name: 'huffman',
+  summary: 'Each symbol as a word of a canonical code of least mean length.',
+  parameters: [
+    {
+      key: 'maxbits',
+      kind: 'integer',
+      min: 1,
+      max: 32,
+      standard: 24,
+      summary: 'Longest code word, in bits; with 24 a decoder finds any word in one 32-bit load.',
+    },
+    {
+      key: 'unseen',
+      kind: 'word',
+      words: ['add:X'],
+      standard: 'add:1/2',
+      summary: 'Shipped tables: X is added to every count, so that each symbol has a word.',
+    },
+  ],
+  policies: ['shipped', 'sent'],
+  resets: ['message', 'file', 'never'],
+  needsWholeMessage: false,
+  reference: false,
+  maxAlphabetSize: 2 ** 24,
+  worstCase: 'n · maxbits bits for shipped tables; n · ⌈log2 m⌉ bits and the table for sent ones',
+  memory:
+    'encoder 5 bytes a symbol of the alphabet (256 KiB more for bytes in long messages), decoder 5 bytes a word and a table of ' +
+    '16 KiB (bytes) or up to 256 KiB; fitting 60 bytes a symbol',
+  source:
+    'D. A. Huffman, Proc. IRE 40(9), 1952; limit: L. L. Larmore, D. S. Hirschberg, J. ACM 37(3), 1990',
+};
+
+/**
+ * Huffman coding of single symbols.
+ *
+ * `sent`: the table stands before the words of the message it was fitted to; under reset `never` in the first message that has symbols.
+ * Where only one symbol occurs its word is empty: the table names it, and its repetitions cost nothing.
+ */
+export const huffman: CoderEntry = { declaration, create: (values) => createHuffman(values) };
+
+function createHuffman(values: ParameterValues): Coder {
+  const maxBits = Number(values['maxbits']);
+  const added = addedCount(String(values['unseen']));
+  // Shipped tables are made once, however many units are coded with them.
+  const shippedEncoders = new WeakMap<Tables, PrefixEncoder>();
+  const shippedDecoders = new WeakMap<Tables, PrefixDecoder>();
+
+  function shippedEncoder(setup: Setup): PrefixEncoder {
+    const tables = huffmanTables(setup);
+    let encoder = shippedEncoders.get(tables);
+    if (encoder === undefined) {
+      const { table } = fitTables(tables, setup, maxBits, added);
+      encoder = new PrefixEncoder(setup.alphabetSize);
+      encoder.setWords(table.symbols, table.lengths, table.count);
+      shippedEncoders.set(tables, encoder);
+    }
+    return encoder;
+  }
+
+  function shippedDecoder(setup: Setup): PrefixDecoder {
+    const tables = huffmanTables(setup);
+    let decoder = shippedDecoders.get(tables);
+    if (decoder === undefined) {
+      const { table } = fitTables(tables, setup, maxBits, added);
+      decoder = new PrefixDecoder(setup.alphabetSize);
+      decoder.setWords(table.symbols, table.lengths, table.count, Number.POSITIVE_INFINITY);
+      shippedDecoders.set(tables, decoder);
+    }
+    return decoder;
+  }
+
+  return {
+    declares: declaration,
+
+    check(setup) {
+      if (!declaration.policies.includes(setup.policy)) {
+        throw new InputError(`huffman has no table policy ${setup.policy}`, {
+          coder: 'huffman',
+          expected: declaration.policies.join(', '),
+        });
+      }
+      if (setup.alphabetSize > declaration.maxAlphabetSize) {
+        throw new InputError('the alphabet is too large for huffman', {
+          coder: 'huffman',
+          expected: `at most ${declaration.maxAlphabetSize} symbols`,
+          got: String(setup.alphabetSize),
+        });
+      }
+      const least = symbolWidth(setup.alphabetSize);
+      if (maxBits < least) {
+        throw new InputError(`${setup.alphabetSize} symbols need words of up to ${least} bits`, {
+          coder: 'huffman',
+          key: 'maxbits',
+          expected: `at least ${least}`,
+          got: String(maxBits),
+          advice: `Give maxbits=${least} or more.`,
+        });
+      }
+    },
+
+    trainer: huffmanTrainer,
+
+    encoder(setup) {
+      if (setup.policy === 'shipped')
+        return streamEncoder(setup, shippedEncoder(setup), undefined, 0);
+      if (setup.reset === 'message') return messageEncoder(setup, maxBits);
+      const { table } = fitTables(huffmanTables(setup), setup, maxBits, added);
+      const words = new PrefixEncoder(setup.alphabetSize);
+      words.setWords(table.symbols, table.lengths, table.count);
+      return streamEncoder(setup, words, table, maxBits);
+    },
+
+    decoder(setup, limits) {
+      if (setup.policy === 'shipped') return shippedReader(setup, limits, shippedDecoder(setup));
+      return sentReader(setup, limits, maxBits);
+    },
+
+    price: (sequence, setup) => priceHuffman(sequence, setup, added),
+
+    describeTables(tables, setup) {
+      const own = huffmanTables({ ...setup, tables });
+      return describeHuffman(own, setup, fitTables(own, setup, maxBits, added), maxBits);
+    },
+  };
+}
+
+function fitTables(
+  tables: HuffmanTables,
+  setup: Setup,
+  maxBits: number,
+  added: Rational,
+): HuffmanFit {
+  const fit = new HuffmanFit(maxBits);
+  if (setup.policy === 'shipped') fit.fitSmoothed(tables.counts, added);
+  else fit.fitPresent(tables.counts);
+  return fit;
+}
+
+/** One code for the whole unit; a `table` is sent in the first message that has symbols. */
+function streamEncoder(
+  setup: Setup,
+  words: PrefixEncoder,
+  table: PrefixTable | undefined,
+  maxBits: number,
+): Encoder {
+  const writer = new BitWriter();
+  const ledger = new MessageLedger(setup.align);
+  let unsent = table;
+  const pieces = new MessagePieces({
+    begin(symbolCount) {
+      ledger.framingBits += writeSymbolCount(writer, setup, symbolCount);
+      if (unsent !== undefined && symbolCount > 0) {
+        ledger.tableBits += unsent.write(writer, setup.alphabetSize, maxBits);
+        unsent = undefined;
+      }
+    },
+    take(symbols, from, to) {
+      const bits = words.encode(writer, symbols, from, to);
+      ledger.writtenBits += bits;
+      ledger.payloadBits += bits;
+    },
+    end() {
+      ledger.close(writer);
+    },
+  });
+  return {
+    push: (chunk) => pieces.push(chunk),
+    finish: () => {
+      pieces.finish();
+      return ledger.finish(writer);
+    },
+  };
+}
+
+/** Fits a code to each message and sends it there. */
+function messageEncoder(setup: Setup, maxBits: number): Encoder {
+  const writer = new BitWriter();
+  const ledger = new MessageLedger(setup.align);
+  const counts = new SymbolCounts(setup.alphabetSize);
+  const fit = new HuffmanFit(maxBits);
+  const words = new PrefixEncoder(setup.alphabetSize);
+  const pieces = wholeMessages((symbols, from, to) => {
+    ledger.framingBits += writeSymbolCount(writer, setup, to - from);
+    if (to > from) {
+      counts.clear();
+      counts.add(symbols, from, to);
+      fit.fitSeen(counts);
+      const { table } = fit;
+      ledger.tableBits += table.write(writer, setup.alphabetSize, maxBits);
+      words.setWords(table.symbols, table.lengths, table.count);
+      const bits = words.encode(writer, symbols, from, to);
+      ledger.writtenBits += bits;
+      ledger.payloadBits += bits;
+    }
+    ledger.close(writer);
+  });
+  return {
+    push: (chunk) => pieces.push(chunk),
+    finish: () => {
+      pieces.finish();
+      return ledger.finish(writer);
+    },
+  };
+}
+
+function shippedReader(setup: Setup, limits: DecodeLimits, words: PrefixDecoder): Decoder {
+  return { decode: (input) => decodeMessages(input, setup, limits, words, () => {}) };
+}
+
+function sentReader(setup: Setup, limits: DecodeLimits, maxBits: number): Decoder {
+  const table = new PrefixTable();
+  const words = new PrefixDecoder(setup.alphabetSize);
+  const each = setup.reset === 'message';
+  return {
+    decode(input) {
+      let known = false;
+      return decodeMessages(input, setup, limits, words, (reader, symbolCount) => {
+        if (known) return;
+        known = !each;
+        // Each symbol that a table names is coded at least once.
+        const most = each ? symbolCount : limits.maxSymbols;
+        table.read(reader, setup.alphabetSize, maxBits, most);
+        words.setWords(table.symbols, table.lengths, table.count, most);
+      });
+    },
+  };
+}
+
+/** Walks the messages; `prepare` is called for each that has symbols, before its words. */
+function decodeMessages(
+  input: Parameters<Decoder['decode']>[0],
+  setup: Setup,
+  limits: DecodeLimits,
+  words: PrefixDecoder,
+  prepare: (reader: BitReader, symbolCount: number) => void,
+): ReturnType<Decoder['decode']> {
+  const reader = new BitReader(input.bytes);
+  const walk = new MessageWalk(reader, setup, input, limits);
+  let symbols = newSymbolArray(setup.alphabetSize, 0);
+  let filled = 0;
+  for (let count = walk.next(); count >= 0; count = walk.next()) {
+    if (count > 0) {
+      prepare(reader, count);
+      if (count * words.shortestWordBits > reader.limit - reader.position) {
+        throw new CorruptStreamError('a message says it holds more symbols than its bits can', {
+          bitOffset: reader.position,
+          got: `${count} symbols of ${words.shortestWordBits} bits or more`,
+        });
+      }
+      symbols = growSymbols(symbols, setup.alphabetSize, filled, count);
+      filled = words.decode(reader, symbols, filled, filled + count);
+    }
+    walk.close(reader.position);
+  }
+  return {
+    sequence: {
+      alphabetSize: setup.alphabetSize,
+      symbols: symbols.subarray(0, filled),
+      messageEnds: walk.messageEnds,
+    },
+    bitsConsumed: reader.position,
+  };
+}

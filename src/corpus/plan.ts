@@ -1,0 +1,114 @@
+import { dirname } from 'node:path';
+import { BugError, InputError } from '../errors/errors.ts';
+import type { CorpusSpec } from './corpus.ts';
+import type { SplitRule } from './decide-split.ts';
+import { readCorpusSpecs, schemaFaults, togetherFaults } from './plan-check.ts';
+import { type PlanDocument, readPlanDocument } from './plan-document.ts';
+import { planError } from './plan-faults.ts';
+import { laterFaults } from './plan-later.ts';
+import { type PlanFile, planSchema } from './plan-schema.ts';
+import { readInputFile } from './read-file.ts';
+
+/** A plan that this version can run. */
+export interface Plan {
+  /** Path of the plan file, as it was given. */
+  readonly file: string;
+  /** The folder that the files of its corpora are relative to. */
+  readonly folder: string;
+  readonly title?: string;
+  readonly corpora: readonly CorpusSpec[];
+  readonly split: SplitRule;
+  /** As written; ranges are not opened yet. */
+  readonly candidates: readonly string[];
+  /** Line of each candidate in the file. */
+  readonly candidateLines: readonly number[];
+  readonly tables: readonly ('shipped' | 'sent' | 'learned' | 'primed')[];
+  readonly reset: readonly ('message' | 'file' | 'never')[];
+  readonly align: 1 | 8 | 16 | 32 | 64;
+  readonly check: 'none';
+  readonly timing: { readonly repeats: number; readonly pacer: 'deflate-huffman' };
+  /** What the file leaves open and was chosen for it, as it would be written there; for screens. */
+  readonly chosen: readonly string[];
+  /** The file's own data, keys in snake_case. */
+  readonly written: PlanFile;
+}
+
+const USUAL_TABLES = ['shipped', 'sent', 'learned'] as const;
+const USUAL_SPLIT = { by: 'message', order: 'in_time', train: 0.5 } as const;
+const USUAL_SEED = 1;
+
+/**
+ * Reads and checks a plan file.
+ * @throws InputError that lists every fault with its line, or NotYetError when all it asks too much is not built yet
+ */
+export async function readPlan(path: string): Promise<Plan> {
+  const bytes = await readInputFile(path, path);
+  let text: string;
+  try {
+    text = new TextDecoder('utf-8', { fatal: true }).decode(bytes);
+  } catch (error) {
+    throw new InputError(
+      `${path} is not UTF-8 text`,
+      { file: path, expected: 'a plan in YAML' },
+      error,
+    );
+  }
+  return parsePlan(text, path);
+}
+
+/**
+ * Checks the text of a plan.
+ * @param file  its path: named in errors, and its folder is where corpora are looked for
+ * @throws as {@link readPlan}
+ */
+export function parsePlan(text: string, file: string): Plan {
+  const document = readPlanDocument(text);
+  if (document.faults.length > 0) throw planError(file, document.faults);
+  const checked = planSchema.safeParse(document.data);
+  const { specs, faults: corpusFaults } = readCorpusSpecs(document);
+  const faults = [
+    ...(checked.success ? [] : schemaFaults(checked.error.issues, document)),
+    ...corpusFaults,
+    ...togetherFaults(document),
+    ...laterFaults(document),
+  ];
+  if (faults.length > 0 || !checked.success) throw planError(file, faults);
+  return planOf(checked.data, specs, document, file);
+}
+
+function planOf(
+  written: PlanFile,
+  corpora: CorpusSpec[],
+  document: PlanDocument,
+  file: string,
+): Plan {
+  const { split = {}, timing = {} } = written;
+  const by = split.by ?? USUAL_SPLIT.by;
+  const order = split.order ?? USUAL_SPLIT.order;
+  const train = split.train ?? USUAL_SPLIT.train;
+  if (by === 'unit') throw new BugError('a plan that asks for what is not built was not refused');
+  const chosen: string[] = [];
+  for (const key of ['by', 'order', 'train'] as const)
+    if (split[key] === undefined) chosen.push(`split.${key}: ${USUAL_SPLIT[key]}`);
+  if (order === 'random' && split.seed === undefined) chosen.push(`split.seed: ${USUAL_SEED}`);
+  if (written.tables === undefined) chosen.push(`tables: [${USUAL_TABLES.join(', ')}]`);
+  if (written.reset === undefined) chosen.push('reset: [message]');
+  if (written.align === undefined) chosen.push('align: 8');
+  if (timing.repeats === undefined) chosen.push('timing.repeats: 20');
+  return {
+    file,
+    folder: dirname(file),
+    ...(written.title === undefined ? {} : { title: written.title }),
+    corpora,
+    split: { by, order, train, ...(order === 'random' ? { seed: split.seed ?? USUAL_SEED } : {}) },
+    candidates: written.candidates,
+    candidateLines: written.candidates.map((_, i) => document.lineOf(['candidates', i])),
+    tables: written.tables ?? USUAL_TABLES,
+    reset: (written.reset ?? ['message']) as Plan['reset'],
+    align: written.align ?? 8,
+    check: 'none',
+    timing: { repeats: timing.repeats ?? 20, pacer: 'deflate-huffman' },
+    chosen,
+    written,
+  };
+}

@@ -1,0 +1,114 @@
+import { parseCandidate } from '../coders/candidate.ts';
+import type { Coded, Coder, Decoded, Setup } from '../coders/contract.ts';
+import { BitassayError, PromiseError } from '../errors/errors.ts';
+import type { SymbolSequence } from '../symbols/sequence.ts';
+import type { Ceiling } from './floor.ts';
+
+export interface CeilingsOptions {
+  /** Lowest order of the adaptive coders; 0 when absent. */
+  readonly from?: number;
+  /** Highest order of the adaptive coders; 4 when absent. */
+  readonly upto?: number;
+  /** The coder of an order; back-off `arith` when absent. */
+  readonly coderOf?: (order: number) => Coder;
+  readonly progress?: (done: number, total: number) => void;
+}
+
+/** A coder that gave no ceiling, and why. */
+export interface NoCeiling {
+  readonly name: string;
+  readonly error: BitassayError;
+}
+
+export interface Ceilings {
+  readonly ceilings: readonly Ceiling[];
+  readonly without: readonly NoCeiling[];
+}
+
+/**
+ * Rates that adaptive coders of orders 0 … `upto` reach on the whole sequence, learning from nothing and never reset. Each
+ * is encoded, decoded and compared; only then its ideal + tables + index bits count.
+ *
+ * A coder that meets a limit, or fails, is listed and does not stop the others. An equal-length code is always among the
+ * ceilings: it needs no run to be known.
+ * @returns no ceilings for an empty sequence but the equal-length code's
+ */
+export function adaptiveCeilings(
+  sequence: SymbolSequence,
+  options: CeilingsOptions = {},
+): Ceilings {
+  const { from = 0, upto = 4, progress } = options;
+  const coderOf = options.coderOf ?? ((order) => parseCandidate(nameOf(order)).create());
+  const ceilings: Ceiling[] = [equalLengths(sequence.alphabetSize)];
+  const without: NoCeiling[] = [];
+  for (let order = from; order <= upto && sequence.symbols.length > 0; order++) {
+    const name = nameOf(order);
+    try {
+      ceilings.push({ name, bitsPerSymbol: verifiedRate(coderOf(order), sequence) });
+    } catch (error) {
+      if (!(error instanceof BitassayError)) throw error;
+      without.push({ name, error });
+    }
+    progress?.(order - from + 1, upto - from + 1);
+  }
+  return { ceilings, without };
+}
+
+const nameOf = (order: number): string => `arith:order=${order}`;
+
+function equalLengths(alphabetSize: number): Ceiling {
+  let width = 0;
+  while (2 ** width < alphabetSize) width++;
+  return { name: 'fixed', bitsPerSymbol: width };
+}
+
+/** Ideal, table and index bits per symbol, after the decode gave back the input. */
+function verifiedRate(coder: Coder, sequence: SymbolSequence): number {
+  const setup: Setup = {
+    policy: 'learned',
+    alphabetSize: sequence.alphabetSize,
+    reset: 'never',
+    lengths: 'known',
+    align: 8,
+  };
+  coder.check?.(setup);
+  const encoder = coder.encoder(setup);
+  encoder.push(sequence);
+  const coded = encoder.finish();
+  verify(coder, setup, coded, sequence);
+  const { idealBits } = coder.price!(sequence, setup);
+  const { tableBits, indexBits } = coded.account;
+  return (idealBits + tableBits + indexBits) / sequence.symbols.length;
+}
+
+function verify(coder: Coder, setup: Setup, coded: Coded, sequence: SymbolSequence): void {
+  const { symbols, messageEnds } = sequence;
+  const symbolCounts = messageEnds.map((end, m) => end - (m === 0 ? 0 : messageEnds[m - 1]));
+  const decoder = coder.decoder(setup, { maxSymbols: symbols.length });
+  const decoded: Decoded = decoder.decode({
+    bytes: coded.bytes,
+    messageCount: messageEnds.length,
+    symbolCounts,
+  });
+  const symbolIndex = firstDifference(decoded.sequence.symbols, symbols);
+  if (symbolIndex >= 0) {
+    throw new PromiseError('the decoder gave back other symbols than were coded', {
+      coder: coder.declares.name,
+      symbolIndex,
+    });
+  }
+  const messageIndex = firstDifference(decoded.sequence.messageEnds, messageEnds);
+  if (messageIndex >= 0) {
+    throw new PromiseError('the decoder gave back other message ends than were coded', {
+      coder: coder.declares.name,
+      messageIndex,
+    });
+  }
+}
+
+/** Index of the first difference, −1 where there is none. */
+function firstDifference(a: ArrayLike<number>, b: ArrayLike<number>): number {
+  const length = Math.max(a.length, b.length);
+  for (let i = 0; i < length; i++) if (a[i] !== b[i]) return i;
+  return -1;
+}

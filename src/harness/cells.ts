@@ -1,0 +1,92 @@
+import type { Candidate } from '../coders/candidate.ts';
+import type { Reset, TablePolicy, UnitReset } from '../coders/contract.ts';
+import { InputError } from '../errors/errors.ts';
+
+/** What is run, timed and reported: a candidate on a corpus under one table policy and one reset. */
+export interface Cell {
+  /** `corpus/candidate@policy/reset` */
+  readonly id: string;
+  readonly corpus: string;
+  readonly candidate: Candidate;
+  readonly policy: TablePolicy;
+  /** Always `message` for `shipped` and `none`, which have nothing to forget. */
+  readonly reset: Reset;
+}
+
+export interface CellList {
+  readonly cells: readonly Cell[];
+  /** Combinations of candidate, policy and reset that the candidate does not declare. */
+  readonly undeclared: number;
+}
+
+/** The policies that the plan asks for and the candidate declares; `none` when the candidate declares only that. */
+function policiesOf(candidate: Candidate, asked: readonly TablePolicy[]): TablePolicy[] {
+  const declared = candidate.declaration.policies;
+  if (declared.includes('none')) return ['none'];
+  return asked.filter((policy) => declared.includes(policy));
+}
+
+/**
+ * Every cell of the given corpora and candidates, candidates within corpora, in the order given.
+ * @throws InputError for a candidate that has no cell at all, or that stands twice in the list
+ */
+export function listCells(
+  corpora: readonly string[],
+  candidates: readonly Candidate[],
+  policies: readonly TablePolicy[],
+  resets: readonly Reset[],
+): CellList {
+  const cells: Cell[] = [];
+  let undeclared = 0;
+  const seen = new Set<string>();
+  for (const candidate of candidates) {
+    if (seen.has(candidate.id))
+      throw new InputError(`the candidate ${candidate.id} is listed twice`);
+    seen.add(candidate.id);
+  }
+  for (const corpus of corpora) {
+    for (const candidate of candidates) {
+      const used = policiesOf(candidate, policies);
+      if (!candidate.declaration.policies.includes('none')) {
+        undeclared += (policies.length - used.length) * resets.length;
+      }
+      const before = cells.length;
+      for (const policy of used) {
+        const own: readonly Reset[] =
+          policy === 'shipped' || policy === 'none' ? ['message'] : resets;
+        for (const reset of own) {
+          if (own === resets && !candidate.declaration.resets.includes(reset)) {
+            undeclared++;
+            continue;
+          }
+          cells.push({
+            id: `${corpus}/${candidate.id}@${policy}/${reset}`,
+            corpus,
+            candidate,
+            policy,
+            reset,
+          });
+        }
+      }
+      if (cells.length === before) {
+        throw new InputError(`${candidate.id} has no cell under the tables and resets asked for`, {
+          coder: candidate.id,
+          expected: `tables ${candidate.declaration.policies.join(', ')}; resets ${candidate.declaration.resets.join(', ')}`,
+          got: `tables ${policies.join(', ')}; resets ${resets.join(', ')}`,
+          advice: 'Leave the candidate out, or ask for tables and a reset that it declares.',
+        });
+      }
+    }
+  }
+  return { cells, undeclared };
+}
+
+/** The reset within a unit: the harness runs reset `file` as one unit a file. */
+export function unitResetOf(cell: Cell): UnitReset {
+  return cell.reset === 'message' ? 'message' : 'never';
+}
+
+/** Whether a message can be decoded without any earlier one. */
+export function decodesAlone(cell: Cell): boolean {
+  return cell.policy === 'shipped' || cell.reset === 'message';
+}

@@ -1,0 +1,59 @@
+import { BitWriter } from '../bits/bit-writer.ts';
+import type { Corpus, CorpusSpec } from '../corpus/corpus.ts';
+import type { SplitRule } from '../corpus/decide-split.ts';
+import { loadCorpus, loadSplitCorpus } from '../corpus/intake.ts';
+import { writeAlphabetMap } from '../symbols/alphabet-map.ts';
+import type { CorpusData } from './corpus-data.ts';
+
+/**
+ * Reads one corpus and parts it as `rule` says; without a rule nothing trains and all data are coded.
+ * @throws what intake and split throw
+ */
+export async function loadCorpusData(
+  spec: CorpusSpec,
+  baseFolder: string,
+  rule: SplitRule | undefined,
+): Promise<CorpusData> {
+  if (rule === undefined) {
+    const corpus = await loadCorpus(spec, baseFolder);
+    const { alphabet } = corpus;
+    const data = { ...factsOf(corpus, corpus.fileEnds), test: corpus.sequence };
+    if (alphabet.kind !== 'map') return data;
+    const writer = new BitWriter();
+    const bits = writeAlphabetMap(writer, alphabet.map);
+    return { ...data, sentMap: { bytes: writer.finish().bytes, bits } };
+  }
+  const { corpus, parts } = await loadSplitCorpus(spec, baseFolder, rule);
+  return {
+    ...factsOf(corpus, parts.testFileEnds),
+    train: parts.train,
+    test: parts.test,
+    repeated: { share: parts.repeatedShare, mask: parts.repeated },
+  };
+}
+
+function factsOf(corpus: Corpus, fileEnds: Uint32Array): Omit<CorpusData, 'test'> {
+  return {
+    name: corpus.name,
+    sha256: corpus.sha256,
+    symbolsAs: corpus.symbolsAs,
+    messagesAs: corpus.messagesAs,
+    lengths: corpus.lengths,
+    alphabetSize: corpus.sequence.alphabetSize,
+    sourceBytes: corpus.sourceBytes,
+    testFiles: corpus.files.map(({ path, sha256 }, i) => ({
+      path,
+      sha256,
+      messageEnd: fileEnds[i],
+    })),
+  };
+}
+
+/** How train and test were parted, in words. */
+export function describeSplit(rule: SplitRule | undefined): string {
+  if (rule === undefined) return 'none: all data are coded';
+  const order = rule.order === 'in_time' ? 'the first' : 'a random';
+  const share = `${Number((rule.train * 100).toPrecision(6))} %`;
+  const tail = rule.order === 'random' ? `, seed ${rule.seed ?? 1}` : '';
+  return `${order} ${share} by ${rule.by}${tail}`;
+}

@@ -1,0 +1,209 @@
+import type { CodedTotals } from '../account/bit-account.ts';
+import type { Coded, FitClass, Setup } from '../coders/contract.ts';
+import { BitassayError, BugError } from '../errors/errors.ts';
+import type { SymbolSequence } from '../symbols/sequence.ts';
+import { type Cell, unitResetOf } from './cells.ts';
+import { type CorpusData, unitsOf } from './corpus-data.ts';
+import { compareDecoded, decodeUnit, trainOn } from './verify.ts';
+
+/** What coding a cell gave, before it is held against a floor. */
+export interface CellBits {
+  readonly cell: Cell;
+  readonly totals: CodedTotals;
+  /** The class behind `totals.fitBits`. */
+  readonly fitOf?: FitClass;
+  /** Carried bits of each message. */
+  readonly messageBits: Float64Array;
+  /** Ideal bits of each message; absent for coders without probabilities. */
+  readonly messageIdealBits?: Float64Array;
+  /** Carried bits of the alphabet map, padding included, sent once before the messages. */
+  readonly mapBits: number;
+  /** The units as coded, for timing. */
+  readonly units: readonly CodedUnit[];
+}
+
+/** One unit with what both ends need to code it again. */
+export interface CodedUnit {
+  readonly sequence: SymbolSequence;
+  readonly setup: Setup;
+  readonly coded: Coded;
+}
+
+/** A cell that gave no rate, and why. */
+export interface CellFailure {
+  readonly cell: Cell;
+  readonly failure: string;
+}
+
+/** Steps between which a run may be interrupted. */
+export type CellStep = 'train' | 'encode' | 'decode' | 'price';
+
+/** Policies under which what the coder knows is sent or grown, so that a fitted alphabet map must be sent too. */
+function sendsMap(cell: Cell): boolean {
+  return cell.policy === 'sent' || cell.policy === 'learned' || cell.policy === 'none';
+}
+
+function setupOf(cell: Cell, corpus: CorpusData, align: number, unit?: SymbolSequence): Setup {
+  const base: Setup = {
+    policy: cell.policy,
+    alphabetSize: corpus.alphabetSize,
+    reset: unitResetOf(cell),
+    lengths: corpus.lengths,
+    align,
+  };
+  cell.candidate.create().check?.(base);
+  let from: SymbolSequence | undefined;
+  if (cell.policy === 'shipped' || cell.policy === 'primed') {
+    if (corpus.train === undefined)
+      throw new BugError(`${cell.id} needs a train split and there is none`);
+    from = corpus.train;
+  } else if (cell.policy === 'sent' && base.reset === 'never') {
+    from = unit;
+  }
+  const tables = from === undefined ? undefined : trainOn(cell.candidate, base, from);
+  return tables === undefined ? base : { ...base, tables };
+}
+
+function sumCoded(
+  units: readonly CodedUnit[],
+): Omit<CodedTotals, 'carriedBits' | 'idealBits' | 'fitBits'> {
+  const sum = {
+    writtenBits: 0,
+    endingBits: 0,
+    paddingBits: 0,
+    tableBits: 0,
+    indexBits: 0,
+    framingBits: 0,
+    checkBits: 0,
+    payloadBits: 0,
+  };
+  for (const { coded } of units) {
+    for (const key of Object.keys(coded.account) as (keyof typeof coded.account)[]) {
+      sum[key] += coded.account[key];
+    }
+    sum.payloadBits += coded.payloadBits;
+  }
+  return sum;
+}
+
+/** Encodes the unit whole, in one push. */
+export function encodeUnit(cell: Cell, setup: Setup, sequence: SymbolSequence): Coded {
+  const encoder = cell.candidate.create().encoder(setup);
+  encoder.push(sequence);
+  return encoder.finish();
+}
+
+function messageBitsOf(units: readonly CodedUnit[], messageCount: number): Float64Array {
+  const bits = new Float64Array(messageCount);
+  let at = 0;
+  for (const { coded } of units) {
+    let from = 0;
+    for (const end of coded.messageEndsBits) {
+      bits[at++] = end - from;
+      from = end;
+    }
+  }
+  if (at !== messageCount) throw new BugError('the units of a cell do not hold its messages');
+  return bits;
+}
+
+/**
+ * Trains, encodes, decodes, compares and prices one cell. A rate exists only if the decode gave back the input bit for bit.
+ *
+ * @param pause  awaited between steps, so that a run can be shown and interrupted; may throw to stop
+ * @throws what `pause` throws; what a coder throws becomes a {@link CellFailure}
+ */
+export async function runCell(
+  cell: Cell,
+  corpus: CorpusData,
+  align: number,
+  pause: (step: CellStep) => Promise<void>,
+): Promise<CellBits | CellFailure> {
+  const units: CodedUnit[] = [];
+  const coder = cell.candidate.create();
+  let idealBits = 0;
+  let fitBits: number | undefined;
+  let fitOf: FitClass | undefined;
+  let priced = coder.price !== undefined;
+  const messageIdealBits = new Float64Array(corpus.test.messageEnds.length);
+  let messageAt = 0;
+  const guarded = <T>(step: () => T): T | CellFailure => {
+    try {
+      return step();
+    } catch (error) {
+      if (error instanceof BitassayError)
+        return { cell, failure: `${error.message}${placeOf(error)}` };
+      throw error;
+    }
+  };
+  const sequences = unitsOf(corpus, cell.reset);
+  for (const sequence of sequences) {
+    await pause('train');
+    const setup = guarded(() => setupOf(cell, corpus, align, sequence));
+    if ('failure' in setup) return setup;
+    await pause('encode');
+    const coded = guarded(() => encodeUnit(cell, setup, sequence));
+    if ('failure' in coded) return coded;
+    await pause('decode');
+    const verdict = guarded(() => {
+      compareDecoded(decodeUnit(cell.candidate, setup, coded, sequence), coded, sequence);
+      return 'same' as const;
+    });
+    if (verdict !== 'same') return verdict;
+    units.push({ sequence, setup, coded });
+    if (!priced) continue;
+    await pause('price');
+    const price = guarded(() => coder.price!(sequence, setup));
+    if ('failure' in price) return price;
+    idealBits += price.idealBits;
+    if (price.fit !== undefined && sequences.length === 1) {
+      fitBits = price.fit.bits;
+      fitOf = price.fit.of;
+    }
+    messageIdealBits.set(price.messageIdealBits, messageAt);
+    messageAt += price.messageIdealBits.length;
+  }
+  priced &&= units.length > 0;
+  if (priced && sequences.length > 1) {
+    // One member for all files: priced over the whole test part, whose contexts differ from the cell's own only in the
+    // first k symbols of each file.
+    await pause('price');
+    const whole = guarded(() => coder.price!(corpus.test, units[0].setup));
+    if ('failure' in whole) return whole;
+    fitBits = whole.fit?.bits;
+    fitOf = whole.fit?.of;
+  }
+  const sum = sumCoded(units);
+  const sentBits = sendsMap(cell) && corpus.sentMap !== undefined ? corpus.sentMap.bits : 0;
+  const mapBits = Math.ceil(sentBits / align) * align;
+  const messageBits = messageBitsOf(units, corpus.test.messageEnds.length);
+  let carriedBits = mapBits;
+  for (const bits of messageBits) carriedBits += bits;
+  return {
+    cell,
+    totals: {
+      ...sum,
+      tableBits: sum.tableBits + sentBits,
+      paddingBits: sum.paddingBits + mapBits - sentBits,
+      carriedBits,
+      ...(priced ? { idealBits } : {}),
+      ...(priced && fitBits !== undefined ? { fitBits } : {}),
+    },
+    ...(fitOf === undefined ? {} : { fitOf }),
+    messageBits,
+    ...(priced ? { messageIdealBits } : {}),
+    mapBits,
+    units,
+  };
+}
+
+function placeOf(error: BitassayError): string {
+  const { expected, got, bitOffset, messageIndex, advice } = error.where;
+  const parts = [
+    messageIndex === undefined ? '' : `message ${messageIndex}`,
+    bitOffset === undefined ? '' : `bit ${bitOffset}`,
+    expected === undefined ? '' : `expected ${expected}`,
+    got === undefined ? '' : `got ${got}`,
+  ].filter((part) => part !== '');
+  return `${parts.length === 0 ? '' : ` (${parts.join(', ')})`}${advice === undefined ? '' : `. ${advice}`}`;
+}

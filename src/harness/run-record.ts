@@ -1,0 +1,143 @@
+import { z } from 'zod';
+import { ACCOUNT_LINES } from '../account/bit-account.ts';
+
+/**
+ * The run record: what a run leaves, `DIR/run.json`. Counts, hashes and figures only, never content of the data.
+ * Keys are in snake_case here and in the file; its JSON Schema is made from this ({@link runRecordJsonSchema}).
+ */
+
+const speed = z.strictObject({
+  seconds: z.array(z.number()).describe('one pass over the test part, seconds, in time order'),
+  speed: z.number().describe('median of pacer time ÷ candidate time'),
+  low: z.number(),
+  high: z.number(),
+});
+
+const account = z.strictObject(
+  Object.fromEntries(ACCOUNT_LINES.map((line) => [line, z.number().optional()])) as Record<
+    (typeof ACCOUNT_LINES)[number],
+    z.ZodOptional<z.ZodNumber>
+  >,
+);
+
+const order = z.strictObject({
+  k: z.number(),
+  plug_in: z.number().describe('bits per symbol'),
+  corrected: z.number().describe('Miller–Madow, bits per symbol'),
+  low: z.number().optional(),
+  high: z.number().optional(),
+  positions: z.number(),
+  contexts: z.number(),
+  pairs: z.number(),
+  estimable: z.boolean(),
+  useful: z.boolean().optional().describe('absent: not tested'),
+});
+
+const cell = z.strictObject({
+  id: z.string(),
+  corpus: z.string(),
+  candidate: z.string(),
+  coder: z.string(),
+  params: z.record(z.string(), z.union([z.number(), z.string()])),
+  tables: z.string(),
+  reset: z.string(),
+  reference: z.boolean(),
+  decodes_alone: z.boolean().describe('false: needs all earlier messages'),
+  messages_as: z.string(),
+  verified: z.boolean(),
+  symbol_count: z.number().optional(),
+  message_count: z.number().optional(),
+  coded_bytes: z.number().optional(),
+  carried_bits: z.number().optional(),
+  rate: z.number().optional().describe('carried bits per source symbol'),
+  backend: z.literal('ts').optional(),
+  account: account.optional(),
+  message_bytes: z
+    .strictObject({
+      mean: z.number(),
+      p50: z.number(),
+      p95: z.number(),
+      p99: z.number(),
+      max: z.number(),
+    })
+    .optional(),
+  rate_without_repeats: z
+    .number()
+    .optional()
+    .describe('rate over test messages that do not occur in train'),
+  files: z
+    .array(
+      z.strictObject({ sha256: z.string(), symbol_count: z.number(), coded_bytes: z.number() }),
+    )
+    .optional(),
+  encode: speed.optional(),
+  decode: speed.optional(),
+  failure: z.string().optional(),
+});
+
+const corpus = z.strictObject({
+  name: z.string(),
+  sha256: z.string(),
+  symbols_as: z.string(),
+  messages_as: z.string(),
+  lengths: z.string(),
+  alphabet_size: z.number(),
+  source_bytes: z.number(),
+  symbol_count: z.number().describe('of the part that is coded'),
+  message_count: z.number(),
+  train_symbol_count: z.number(),
+  repeated_share: z.number().optional().describe('share of test messages that also occur in train'),
+});
+
+const entropy = z.strictObject({
+  corpus: z.string(),
+  contexts: z.enum(['message', 'running']),
+  orders: z.array(order),
+  floor: z.strictObject({
+    point: z.number(),
+    low: z.number(),
+    high: z.number(),
+    method: z.string(),
+    order: z.number(),
+    cut: z
+      .boolean()
+      .describe('the lowest ceiling lies below the corrected entropy: order k is not enough'),
+  }),
+});
+
+export const runRecordSchema = z.strictObject({
+  record: z.literal(1),
+  tool: z.strictObject({ name: z.literal('bitassay'), version: z.string() }),
+  plan: z.strictObject({
+    title: z.string(),
+    align: z.number(),
+    split: z.string().describe('how train and test were parted, or "none"'),
+    tables: z.array(z.string()),
+    resets: z.array(z.string()),
+  }),
+  environment: z.strictObject({
+    node: z.string(),
+    zlib: z.string(),
+    cpu: z.string(),
+    cores: z.number(),
+    os: z.string(),
+    class: z.string().describe('speeds are compared only within one class'),
+  }),
+  corpora: z.array(corpus),
+  entropy: z.array(entropy),
+  cells: z.array(cell),
+  undeclared: z
+    .number()
+    .describe('combinations that gave no cell since the coder does not declare them'),
+  partial: z.boolean(),
+});
+
+export type RunRecord = z.infer<typeof runRecordSchema>;
+export type CellRecord = RunRecord['cells'][number];
+export type CorpusRecord = RunRecord['corpora'][number];
+export type EntropyRecord = RunRecord['entropy'][number];
+
+/** The published JSON Schema of the run record. */
+export function runRecordJsonSchema(): unknown {
+  return z.toJSONSchema(runRecordSchema);
+}

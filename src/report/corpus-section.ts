@@ -1,0 +1,172 @@
+import type { CorpusRecord, EntropyRecord, RunRecord } from '../harness/run-record.ts';
+import { cellTable } from './cell-table.ts';
+import {
+  countText,
+  decimalsFor,
+  padLeft,
+  padRight,
+  rateText,
+  sizeText,
+  symbolNoun,
+  wrapText,
+} from './figures.ts';
+import { bestCell, cellPhrase, cellsOfCorpus, entropyOf, floorRateOf } from './floor-lines.ts';
+
+export interface SectionOptions {
+  readonly columns: number;
+  /** One character before a cell's name, such as `=` for cells this corpus cannot tell from the best. */
+  markOf?(cellId: string): string;
+}
+
+function floorRemark({ floor }: EntropyRecord, decimals: number): string {
+  const enough = floor.cut
+    ? `order ${floor.order} is not enough for this source`
+    : `order ${floor.order} is estimable`;
+  if (floor.low === floor.high) {
+    return `the lowest that a coder reached; the true one may be lower, since ${enough}`;
+  }
+  return `band ${rateText(floor.low, decimals)} to ${rateText(floor.high, decimals)}; ${enough}`;
+}
+
+/** The three figures that matter of one corpus: what it takes now, the best cell tried, the floor. */
+function headLines(record: RunRecord, corpus: CorpusRecord, options: SectionOptions): string[] {
+  const noun = symbolNoun(corpus.symbols_as);
+  const cells = cellsOfCorpus(record, corpus);
+  const tried = cells.filter((c) => c.verified && !c.reference).length;
+  const best = bestCell(cells);
+  const n = corpus.symbol_count;
+  const decimals = decimalsFor(best?.rate ?? 1);
+  const rows: [string, string, string, string][] = [];
+  const width = Math.ceil(Math.log2(Math.max(1, corpus.alphabet_size)));
+  rows.push([
+    'at a fixed width',
+    `${rateText(width, decimals)} bits/${noun}`,
+    sizeText((width * n) / 8),
+    '',
+  ]);
+  if (best !== undefined) {
+    rows.push([
+      `best of ${tried} tried`,
+      rateText(best.rate!, decimals),
+      sizeText((best.rate! * n) / 8),
+      cellPhrase(best),
+    ]);
+  }
+  const entropy =
+    best === undefined
+      ? record.entropy.find((e) => e.corpus === corpus.name)
+      : entropyOf(record, best);
+  if (entropy !== undefined) {
+    const { point } = entropy.floor;
+    rows.push([
+      'floor, an estimate',
+      `≈ ${rateText(point, decimals)}`,
+      sizeText((point * n) / 8),
+      floorRemark(entropy, decimals),
+    ]);
+  }
+  const first = Math.max(...rows.map((r) => r[0].length));
+  const figures = rows.map((r) => /^(≈ )?([\d.−]+)(.*)$/.exec(r[1])!);
+  const whole = Math.max(...figures.map((f) => f[2].length + 2));
+  const rest = Math.max(...figures.map((f) => f[3].length));
+  const size = Math.max(...rows.map((r) => r[2].length));
+  return rows.flatMap((r, i) => {
+    const figure =
+      padLeft(`${figures[i][1] ?? ''}${figures[i][2]}`, whole) + padRight(figures[i][3], rest);
+    const start = ` ${padRight(r[0], first)}  ${figure}  ${padLeft(r[2], size)}`;
+    if (r[3] === '') return [start.trimEnd()];
+    if (start.length + 3 + r[3].length <= options.columns) return [`${start}   ${r[3]}`];
+    return [start, ...wrapText(r[3], options.columns, '   ')];
+  });
+}
+
+/** Remarks that a reader needs to use the figures rightly; each one line or paragraph. */
+function remarks(record: RunRecord, corpus: CorpusRecord): string[] {
+  const notes: string[] = [];
+  const cells = cellsOfCorpus(record, corpus).filter((c) => c.verified);
+  const best = bestCell(cells);
+  if (corpus.train_symbol_count > 0) {
+    notes.push(
+      `Coded: the test part, ${countText(corpus.symbol_count)} symbols in ${countText(corpus.message_count)} messages; ` +
+        `trained on ${countText(corpus.train_symbol_count)} symbols (${record.plan.split}).`,
+    );
+    if ((corpus.repeated_share ?? 0) >= 0.01) {
+      const without =
+        best?.rate_without_repeats === undefined
+          ? ''
+          : `; without them the best rate is ${rateText(best.rate_without_repeats)}`;
+      notes.push(
+        `${Math.round(corpus.repeated_share! * 100)} % of the test messages also occur in train${without}.`,
+      );
+    }
+  }
+  const reference = cells.find((c) => c.reference && best !== undefined && c.rate! < best.rate!);
+  if (reference !== undefined) {
+    notes.push(
+      `${cellPhrase(reference)}, a reference, needs less than every candidate: these data repeat in ways that the contexts tried here do not see.`,
+    );
+  }
+  const dependent = cells.filter((c) => !c.decodes_alone && (c.message_count ?? 0) > 1);
+  if (dependent.length > 0) {
+    notes.push(
+      `Under reset ${[...new Set(dependent.map((c) => c.reset))].join(' and ')} a message needs all earlier messages: one lost message spoils those after it.`,
+    );
+  }
+  for (const entropy of record.entropy.filter((e) => e.corpus === corpus.name)) {
+    const below = cells.filter(
+      (c) => entropyOf(record, c) === entropy && c.rate! < entropy.floor.low,
+    );
+    if (below.length > 0) {
+      notes.push(
+        `${below[0].candidate} lies below the band (${rateText(below[0].rate!)} against ${rateText(entropy.floor.low)}): the estimate was wrong for what this cell knows, such as trained tables.`,
+      );
+    }
+  }
+  for (const wide of cells) {
+    const n = wide.params['n'];
+    if (wide.coder !== 'block-huffman' || typeof n !== 'number' || wide.tables !== 'sent') continue;
+    const narrow = cells.find(
+      (c) =>
+        c.coder === 'block-huffman' &&
+        c.params['n'] === n - 1 &&
+        c.tables === 'sent' &&
+        c.reset === wide.reset,
+    );
+    const plain =
+      n === 2
+        ? cells.find(
+            (c) => c.candidate === 'huffman' && c.tables === 'sent' && c.reset === wide.reset,
+          )
+        : undefined;
+    const other = narrow ?? plain;
+    if (other !== undefined && wide.carried_bits! > other.carried_bits!) {
+      notes.push(
+        `${wide.candidate}: its table (${sizeText((wide.account?.tables ?? 0) / 8)}) no longer pays; ${other.candidate} needs less in all.`,
+      );
+    }
+  }
+  return notes;
+}
+
+/** One corpus on a terminal: head, table of cells, remarks. */
+export function corpusSection(
+  record: RunRecord,
+  corpus: CorpusRecord,
+  options: SectionOptions,
+): string[] {
+  const { columns } = options;
+  const cells = cellsOfCorpus(record, corpus);
+  if (corpus.symbol_count === 0) return [' No symbols: nothing to code, 0 bits exactly.'];
+  return [
+    ...headLines(record, corpus, options),
+    '',
+    ...cellTable(cells, {
+      columns,
+      noun: symbolNoun(corpus.symbols_as),
+      floorOf: (cell) => floorRateOf(record, cell),
+      ...(options.markOf === undefined ? {} : { markOf: (cell) => options.markOf!(cell.id) }),
+    }),
+    '',
+    ...remarks(record, corpus).flatMap((note) => wrapText(note, columns - 1, ' ')),
+  ];
+}

@@ -1,0 +1,90 @@
+import { describe, expect, it } from 'vitest';
+import type { Coder, Decoded } from '../../src/coders/contract.ts';
+import { adaptiveCeilings } from '../../src/entropy/ceilings.ts';
+import { LimitError, PromiseError } from '../../src/errors/errors.ts';
+import { oneMessage } from '../../src/symbols/sequence.ts';
+import { addOneCoder } from './stand-in-coder.ts';
+
+const input = {
+  alphabetSize: 5,
+  symbols: Uint8Array.from({ length: 1000 }, (_, i) => (i * i) % 5),
+  messageEnds: Uint32Array.of(400, 400, 1000),
+};
+
+/** A coder whose decoder spoils what it decoded. */
+function spoiling(spoil: (sequence: Decoded['sequence']) => void): Coder {
+  const coder = addOneCoder(0);
+  return {
+    ...coder,
+    decoder: (setup, limits) => ({
+      decode: (coded) => {
+        const decoded = coder.decoder(setup, limits).decode(coded);
+        spoil(decoded.sequence);
+        return decoded;
+      },
+    }),
+  };
+}
+
+describe('adaptiveCeilings', () => {
+  it('lists an equal-length code and each order that decoded', () => {
+    const steps: number[] = [];
+    const { ceilings, without } = adaptiveCeilings(input, {
+      upto: 1,
+      coderOf: addOneCoder,
+      progress: (done) => steps.push(done),
+    });
+    // The stand-in writes ⌈log2 5⌉ = 3 bits a symbol, whatever its order.
+    expect(ceilings).toEqual([
+      { name: 'fixed', bitsPerSymbol: 3 },
+      { name: 'arith:order=0', bitsPerSymbol: 3 },
+      { name: 'arith:order=1', bitsPerSymbol: 3 },
+    ]);
+    expect(without).toEqual([]);
+    expect(steps).toEqual([1, 2]);
+  });
+
+  it('gives no ceiling to a decoder that errs in a symbol or in a message end', () => {
+    const faults = [
+      spoiling(({ symbols }) => {
+        symbols[999] = (symbols[999] + 1) % 5;
+      }),
+      spoiling(({ messageEnds }) => {
+        messageEnds[1] = 401;
+      }),
+    ];
+    const { ceilings, without } = adaptiveCeilings(input, {
+      upto: 2,
+      coderOf: (order) => faults[order] ?? addOneCoder(order),
+    });
+    expect(ceilings.map((c) => c.name)).toEqual(['fixed', 'arith:order=2']);
+    expect(without.map((w) => w.name)).toEqual(['arith:order=0', 'arith:order=1']);
+    for (const { error } of without) expect(error).toBeInstanceOf(PromiseError);
+    expect(without[0].error.where.symbolIndex).toBe(999);
+    expect(without[1].error.where.messageIndex).toBe(1);
+  });
+
+  it('goes on after a limit, and not after a fault of another kind', () => {
+    const limited = (order: number): Coder => {
+      if (order === 1) throw new LimitError('too many contexts');
+      return addOneCoder(order);
+    };
+    const { ceilings, without } = adaptiveCeilings(input, { upto: 2, coderOf: limited });
+    expect(ceilings.map((c) => c.name)).toEqual(['fixed', 'arith:order=0', 'arith:order=2']);
+    expect(without.map((w) => [w.name, w.error.message])).toEqual([
+      ['arith:order=1', 'too many contexts'],
+    ]);
+    const faulty = () => {
+      throw new TypeError('broken');
+    };
+    expect(() => adaptiveCeilings(input, { coderOf: faulty })).toThrow(TypeError);
+  });
+
+  it('asks for nothing where there are no symbols', () => {
+    const empty = oneMessage(new Uint8Array(0), 1);
+    expect(adaptiveCeilings(empty, { coderOf: addOneCoder })).toEqual({
+      ceilings: [{ name: 'fixed', bitsPerSymbol: 0 }],
+      without: [],
+    });
+  });
+});

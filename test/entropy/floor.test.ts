@@ -1,0 +1,93 @@
+import fc from 'fast-check';
+import { describe, expect, it } from 'vitest';
+import { floorOf, openingBits } from '../../src/entropy/floor.ts';
+import { BugError } from '../../src/errors/errors.ts';
+
+const order = (k: number, corrected: number, low: number, estimable = true) => ({
+  k,
+  corrected,
+  low,
+  estimable,
+});
+const orders = [order(0, 4, 3.9), order(1, 3, 2.8), order(2, 2.5, 2.2), order(3, 1, 0.9, false)];
+
+describe('floorOf', () => {
+  it('takes the largest estimable order where no ceiling lies below it', () => {
+    const ceilings = [
+      { name: 'fixed', bitsPerSymbol: 8 },
+      { name: 'arith:order=2', bitsPerSymbol: 2.7 },
+    ];
+    expect(floorOf({ orders, ceilings })).toEqual({
+      point: 2.5,
+      low: 2.2,
+      high: 2.7,
+      method: 'corrected entropy of order 2 (Miller–Madow) with a simple interval',
+      cut: false,
+      order: 2,
+    });
+  });
+
+  it('is cut by a ceiling below it, and its low end with it', () => {
+    expect(floorOf({ orders, ceilings: [{ name: 'arith:order=4', bitsPerSymbol: 2 }] })).toEqual({
+      point: 2,
+      low: 2,
+      high: 2,
+      method: 'what arith:order=4 reaches, below the corrected entropy of order 2',
+      cut: true,
+      order: 2,
+    });
+  });
+
+  it('is the ceiling, with nothing known below, where no order is estimable', () => {
+    const unknown = [order(0, 4, 3.9, false)];
+    expect(floorOf({ orders: unknown, ceilings: [{ name: 'fixed', bitsPerSymbol: 8 }] })).toEqual({
+      point: 8,
+      low: 0,
+      high: 8,
+      method: 'what fixed reaches, since no order is estimable',
+      cut: false,
+      order: -1,
+    });
+  });
+
+  it('keeps low ≤ point ≤ high, and is asked for a ceiling', () => {
+    const rate = fc.double({ min: 0, max: 8, noNaN: true });
+    const anyOrders = fc.array(fc.tuple(rate, rate, fc.boolean()), { maxLength: 5 });
+    fc.assert(
+      fc.property(anyOrders, fc.array(rate, { minLength: 1 }), (list, rates) => {
+        const floor = floorOf({
+          orders: list.map(([a, b, e], k) => order(k, Math.max(a, b), Math.min(a, b), e)),
+          ceilings: rates.map((bitsPerSymbol) => ({ name: 'x', bitsPerSymbol })),
+        });
+        expect(floor.high).toBe(Math.min(...rates));
+        expect(floor.point).toBeLessThanOrEqual(floor.high);
+        expect(floor.low).toBeLessThanOrEqual(floor.point);
+      }),
+    );
+    expect(() => floorOf({ orders, ceilings: [] })).toThrow(BugError);
+  });
+});
+
+describe('openingBits', () => {
+  it('sums H_j − H_k over the first symbols of each message', () => {
+    const lengths = fc.array(fc.nat(6), { maxLength: 20 });
+    fc.assert(
+      fc.property(lengths, fc.integer({ min: -1, max: 3 }), (list, k) => {
+        let expected = 0;
+        for (const length of list) {
+          for (let j = 0; j < k && j < length; j++) {
+            expected += orders[j].corrected - orders[k].corrected;
+          }
+        }
+        let end = 0;
+        const messageEnds = Uint32Array.from(list, (length) => {
+          end += length;
+          return end;
+        });
+        const sequence = { alphabetSize: 256, symbols: new Uint8Array(end), messageEnds };
+        expect(openingBits(sequence, orders, k, 'message')).toBeCloseTo(expected, 9);
+        expect(openingBits(sequence, orders, k, 'running')).toBe(0);
+      }),
+    );
+  });
+});

@@ -1,0 +1,71 @@
+import { describe, expect, it } from 'vitest';
+import type { Comparison } from '../../src/compare/compare-cells.ts';
+import { runRecordSchema } from '../../src/harness/run-record.ts';
+import { entropyScreen } from '../../src/report/entropy-screen.ts';
+import { runScreen } from '../../src/report/run-screen.ts';
+import { tryScreen } from '../../src/report/try-screen.ts';
+import { linesRecord, wholeRecord } from './sample-record.ts';
+
+/** Layout is held by kept text; the figures in it come from a record made up by hand. */
+
+const comparison = (a: string, b: string, low: number): Comparison => ({
+  corpus: 'events',
+  a: `events/${a}`,
+  b: `events/${b}`,
+  difference: low + 0.004,
+  low,
+  high: low + 0.008,
+  units: 250,
+  unit: 'blocks of messages',
+  decided: low > 0,
+});
+
+const comparisons = [
+  comparison('arith:order=1@learned/never', 'arith:order=1@shipped/message', -0.001),
+  comparison('arith:order=1@learned/never', 'arith:order=1@learned/message', 2.6),
+];
+
+const screens: [name: string, make: (columns: number) => string][] = [
+  [
+    'try',
+    (columns) =>
+      tryScreen(wholeRecord, {
+        columns,
+        caution:
+          'These rates hold for ONE long message. If the product sends packets, ask again with its messages.',
+        next: 'bitassay try uplink.bin --messages every=192',
+      }),
+  ],
+  [
+    'run',
+    (columns) =>
+      runScreen(linesRecord, { columns, comparisons, next: 'bitassay entropy plan.yaml' }),
+  ],
+  [
+    'entropy',
+    (columns) =>
+      entropyScreen(wholeRecord.corpora[0], wholeRecord.entropy, {
+        columns,
+        withoutCeilings: false,
+        sentenceOf: () => 'One sentence on what is estimable and what is useful.',
+        next: 'bitassay try uplink.bin',
+      }),
+  ],
+];
+
+describe.each([100, 80])('screens at %i columns', (columns) => {
+  it.each(screens)('%s', async (name, make) => {
+    const text = make(columns);
+    for (const line of text.split('\n'))
+      expect([...line].length, line).toBeLessThanOrEqual(columns);
+    // biome-ignore lint/suspicious/noControlCharactersInRegex: the escape that starts a colour
+    expect(text).not.toMatch(/\u001b/);
+    await expect(text).toMatchFileSnapshot(`screens/${name}-${columns}.txt`);
+  });
+});
+
+describe('the sample records', () => {
+  it.each([wholeRecord, linesRecord])('are run records', (record) => {
+    expect(runRecordSchema.safeParse(record).error?.issues).toBeUndefined();
+  });
+});
