@@ -82,7 +82,10 @@ function createBlock(values: ParameterValues): Coder {
         });
       }
       const { alphabetSize } = setup;
-      if (alphabetSize > declaration.maxAlphabetSize || ngramSpace(alphabetSize, n) > Number.MAX_SAFE_INTEGER) {
+      if (
+        alphabetSize > declaration.maxAlphabetSize ||
+        ngramSpace(alphabetSize, n) > Number.MAX_SAFE_INTEGER
+      ) {
         throw new InputError(`blocks of ${n} from ${alphabetSize} symbols are too many to number`, {
           coder: 'block-huffman',
           key: 'n',

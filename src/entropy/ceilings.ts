@@ -72,24 +72,33 @@ function verifiedRate(coder: Coder, sequence: SymbolSequence): number {
     align: 8,
   };
   coder.check?.(setup);
-  const encoder = coder.encoder(setup);
-  encoder.push(sequence);
-  const coded = encoder.finish();
-  verify(coder, setup, coded, sequence);
+  const coded = encode(coder, setup, sequence);
+  verify(decode(coder, setup, coded, sequence), coder, sequence);
   const { idealBits } = coder.price!(sequence, setup);
   const { tableBits, indexBits } = coded.account;
   return (idealBits + tableBits + indexBits) / sequence.symbols.length;
 }
 
-function verify(coder: Coder, setup: Setup, coded: Coded, sequence: SymbolSequence): void {
-  const { symbols, messageEnds } = sequence;
+// Encoder and decoder each have a function of their own, so that the model of one can be freed before the next grows.
+function encode(coder: Coder, setup: Setup, sequence: SymbolSequence): Coded {
+  const encoder = coder.encoder(setup);
+  encoder.push(sequence);
+  return encoder.finish();
+}
+
+function decode(
+  coder: Coder,
+  setup: Setup,
+  coded: Coded,
+  { symbols, messageEnds }: SymbolSequence,
+) {
   const symbolCounts = messageEnds.map((end, m) => end - (m === 0 ? 0 : messageEnds[m - 1]));
-  const decoder = coder.decoder(setup, { maxSymbols: symbols.length });
-  const decoded: Decoded = decoder.decode({
-    bytes: coded.bytes,
-    messageCount: messageEnds.length,
-    symbolCounts,
-  });
+  return coder
+    .decoder(setup, { maxSymbols: symbols.length })
+    .decode({ bytes: coded.bytes, messageCount: messageEnds.length, symbolCounts });
+}
+
+function verify(decoded: Decoded, coder: Coder, { symbols, messageEnds }: SymbolSequence): void {
   const symbolIndex = firstDifference(decoded.sequence.symbols, symbols);
   if (symbolIndex >= 0) {
     throw new PromiseError('the decoder gave back other symbols than were coded', {

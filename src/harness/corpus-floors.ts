@@ -73,10 +73,12 @@ export class CorpusFloors {
 
   /**
    * Counts entropies on the test part, gathers the ceilings and sets the floors, for the contexts that the cells have.
+   * @param run    also run the adaptive coders that always stand among the ceilings
    * @param pause  awaited between steps; may throw to stop
    */
   async buildForCells(
     results: readonly (CellBits | CellFailure)[],
+    run: boolean,
     pause: () => Promise<void>,
   ): Promise<void> {
     const scopes = new Set(results.map((r) => scopeOf(r.cell, this.#corpus)));
@@ -87,7 +89,7 @@ export class CorpusFloors {
       }
     }
     const ceilings = [...ceilingsOf(results, this.#corpus)];
-    await this.build({ scopes, upto, useful: false, ceilings, run: true }, pause);
+    await this.build({ scopes, upto, useful: false, ceilings, run }, pause);
   }
 
   /**

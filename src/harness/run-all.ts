@@ -92,12 +92,13 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
       partial = true;
     }
     try {
-      await floors.buildForCells(results, pauseFor(`${corpus.name}: entropy`));
+      if (!partial) await floors.buildForCells(results, true, pauseFor(`${corpus.name}: entropy`));
     } catch (error) {
       if (!(error instanceof Interrupted)) throw error;
       partial = true;
-      continue;
     }
+    // What was coded is kept: the floor is then held by the cells themselves, without coders run for it alone.
+    if (partial) await floors.buildForCells(results, false, async () => {});
     entropy.push(...floors.records());
     for (const result of results) {
       const speed = speeds.get(result.cell.id);

@@ -1,4 +1,5 @@
 import fc from 'fast-check';
+import seedrandom from 'seedrandom';
 import { describe, expect, test } from 'vitest';
 import type { Corpus, CorpusFile } from '../../src/corpus/corpus.ts';
 import { decideSplit, type SplitRule } from '../../src/corpus/decide-split.ts';
@@ -104,6 +105,9 @@ describe('splitCorpus', () => {
         ] as const) {
           messagesOf(part).forEach((piece, i) => {
             gathered[indexes[i]].push(...piece);
+            // Only an empty message gives an empty piece, and it gives one.
+            expect(piece.length === 0).toBe(whole[indexes[i]].length === 0);
+            if (piece.length === 0) expect(seen.has(indexes[i])).toBe(false);
             seen.add(indexes[i]);
           });
         }
@@ -175,6 +179,12 @@ describe('splitCorpus', () => {
     ]);
     expect([...parts.trainMessageIndexes]).toEqual([0, 1]);
     expect([...parts.testMessageIndexes]).toEqual([1, 2]);
+  });
+
+  test('by block, an empty message at the cut goes with the block that begins there', () => {
+    const parts = split(corpusOf([[0, 2, 0, 2, 0]]), { by: 'block', order: 'in_time', train: 0.5 });
+    expect([...parts.trainMessageIndexes]).toEqual([0, 1]);
+    expect([...parts.testMessageIndexes]).toEqual([2, 3, 4]);
   });
 
   test('by block, at random, 64 equal blocks are dealt and neighbours of one side stay joined', () => {
@@ -256,6 +266,26 @@ describe('repeated messages', () => {
         expect([...repeatedMessages(sequenceOf(train), sequenceOf(other))]).toEqual(expected);
       }),
     );
+  });
+
+  test('are not mistaken for one another where hashes meet', () => {
+    // 2 · 10⁵ distinct messages on each side, none on both: of the 4 · 10¹⁰ pairs about nine share a 32-bit hash.
+    const count = 200_000;
+    const next = seedrandom('hashes');
+    const noise = Uint16Array.from({ length: 4 * count }, () => next() * 0x10000);
+    // The first two symbols number the message; the others are noise.
+    const side = (first: number): SymbolSequence => ({
+      alphabetSize: 65536,
+      symbols: Uint16Array.from({ length: 4 * count }, (_, i) => {
+        const message = first + Math.floor(i / 4);
+        if (i % 4 > 1) return noise[(2 * message + (i % 4)) % noise.length];
+        return i % 4 === 0 ? message & 0xffff : message >>> 16;
+      }),
+      messageEnds: Uint32Array.from({ length: count }, (_, i) => 4 * (i + 1)),
+    });
+    expect(repeatedMessages(side(0), side(count)).includes(1)).toBe(false);
+    const half = repeatedMessages(side(0), side(count / 2));
+    expect(half.filter((r) => r === 1)).toHaveLength(count / 2);
   });
 
   test('give the share', () => {

@@ -41,9 +41,8 @@ describe('code lengths without a binding limit', () => {
   });
 
   it('are exact where weights and indices do not share a double, near 2^53', () => {
-    const weights = [2 ** 52, 2 ** 51, 2 ** 50 + 1, 2 ** 50 - 3, 1, 1];
+    const weights = [2 ** 52, 2 ** 51, 2 ** 50 + 1, 2 ** 50 - 5, 1, 1];
     expect(totalOf(weights, codeLengths(weights, 32))).toBe(sumOfMergedWeights(weights));
-    // One more in the third weight moves nothing but the total.
     expect(Array.from(codeLengths(weights, 32))).toEqual([1, 2, 3, 4, 5, 5]);
   });
 

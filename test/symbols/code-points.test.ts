@@ -92,6 +92,30 @@ describe('codepoints', () => {
     );
   });
 
+  test('agree with the platform on every first and second byte', () => {
+    const decoder = new TextDecoder('utf-8', { fatal: true, ignoreBOM: true });
+    for (let first = 0x80; first < 0x100; first++) {
+      for (let second = 0; second < 0x100; second++) {
+        for (const rest of [[], [0x80], [0xbf, 0xbf]]) {
+          const bytes = Uint8Array.of(first, second, ...rest);
+          let expected: string | undefined;
+          try {
+            expected = decoder.decode(bytes);
+          } catch {
+            expected = undefined;
+          }
+          let found: string | undefined;
+          try {
+            found = String.fromCodePoint(...codePointsOf(bytes));
+          } catch (error) {
+            if (!(error instanceof InputError)) throw error;
+          }
+          if (found !== expected) expect.fail(`${bytes}: ${found} instead of ${expected}`);
+        }
+      }
+    }
+  });
+
   test('say at which byte the text breaks', () => {
     const bytes = Buffer.from('61c3a9ff62', 'hex');
     expect(() => codePointsOf(bytes)).toThrow(

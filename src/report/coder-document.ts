@@ -1,0 +1,54 @@
+import type { Declaration } from '../coders/contract.ts';
+import type { ParameterDeclaration } from '../coders/parameters.ts';
+
+function parameterRow(parameter: ParameterDeclaration): string {
+  const values =
+    parameter.kind === 'integer'
+      ? `${parameter.min} … ${parameter.max}`
+      : parameter.words.map((word) => `\`${word}\``).join(', ');
+  const standard =
+    parameter.standard !== undefined
+      ? `\`${parameter.standard}\``
+      : parameter.kind === 'integer' && parameter.optional
+        ? 'chosen by the coder'
+        : 'must be given';
+  return `| \`${parameter.key}\` | ${values} | ${standard} | ${parameter.summary} |`;
+}
+
+function section(declaration: Declaration): string[] {
+  const list = (words: readonly string[]): string => words.map((word) => `\`${word}\``).join(', ');
+  return [
+    `## ${declaration.name}${declaration.reference ? ' (reference)' : ''}`,
+    '',
+    declaration.summary,
+    '',
+    `- tables: ${list(declaration.policies)}`,
+    `- resets: ${list(declaration.resets)}`,
+    `- largest alphabet: ${declaration.maxAlphabetSize}`,
+    `- holds a whole message before its first bit: ${declaration.needsWholeMessage ? 'yes' : 'no'}`,
+    `- worst case: ${declaration.worstCase}`,
+    `- memory: ${declaration.memory}`,
+    `- source: ${declaration.source}`,
+    '',
+    ...(declaration.parameters.length === 0
+      ? ['No parameters.']
+      : [
+          '| key | values | default | what it sets |',
+          '|---|---|---|---|',
+          ...declaration.parameters.map(parameterRow),
+        ]),
+    '',
+  ];
+}
+
+/** The project's table of all coder names and keys, as Markdown, made from what the coders declare. */
+export function coderDocument(declarations: readonly Declaration[]): string {
+  return [
+    '# Coders, their keys and policies',
+    '',
+    'Made from the registry by `npm run docs`; do not edit. A candidate is written `name` or `name:key=value,key=value`; a whole',
+    'number may be a range, `arith:order=0..4`.',
+    '',
+    ...declarations.flatMap(section),
+  ].join('\n');
+}

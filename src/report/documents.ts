@@ -1,0 +1,14 @@
+import { coderEntries } from '../coders/registry.ts';
+import { planJsonSchema } from '../corpus/plan-schema.ts';
+import { runRecordJsonSchema } from '../harness/run-record.ts';
+import { coderDocument } from './coder-document.ts';
+
+/** The files of `docs/` that are made from the code, by name. */
+export function documents(): ReadonlyMap<string, string> {
+  const json = (schema: unknown): string => `${JSON.stringify(schema, null, 2)}\n`;
+  return new Map([
+    ['coders.md', coderDocument(coderEntries.map((entry) => entry.declaration))],
+    ['plan.schema.json', json(planJsonSchema())],
+    ['run-record.schema.json', json(runRecordJsonSchema())],
+  ]);
+}
