@@ -1,6 +1,6 @@
 import { parseCandidate } from '../coders/candidate.ts';
 import type { Coded, Coder, Decoded, Setup } from '../coders/contract.ts';
-import { BitassayError, PromiseError } from '../errors/errors.ts';
+import { BitassayError, LimitError, PromiseError } from '../errors/errors.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { Ceiling } from './floor.ts';
 
@@ -25,9 +25,12 @@ export interface Ceilings {
   readonly without: readonly NoCeiling[];
 }
 
+/** Largest sequence that is coded and decoded for its ceilings, in bytes of symbols: beside models it is held three times. */
+export const LARGEST_CEILING_BYTES = 64 * 2 ** 20;
+
 /**
  * Rates that adaptive coders of orders 0 … `upto` reach on the whole sequence, learning from nothing and never reset. Each
- * is encoded, decoded and compared; only then its ideal + tables + index bits count.
+ * is encoded, decoded and compared; only then its payload + tables + index bits count.
  *
  * A coder that meets a limit, or fails, is listed and does not stop the others. An equal-length code is always among the
  * ceilings: it needs no run to be known.
@@ -62,7 +65,10 @@ function equalLengths(alphabetSize: number): Ceiling {
   return { name: 'fixed', bitsPerSymbol: width };
 }
 
-/** Ideal, table and index bits per symbol, after the decode gave back the input. */
+/**
+ * Payload, table and index bits per symbol, after the decode gave back the input. An arithmetic payload exceeds the ideal by
+ * some bits per million symbols only, and needs no pass over the data of its own.
+ */
 function verifiedRate(coder: Coder, sequence: SymbolSequence): number {
   const setup: Setup = {
     policy: 'learned',
@@ -71,12 +77,18 @@ function verifiedRate(coder: Coder, sequence: SymbolSequence): number {
     lengths: 'known',
     align: 8,
   };
+  if (sequence.symbols.byteLength > LARGEST_CEILING_BYTES) {
+    throw new LimitError('these data are too large to be coded for a ceiling', {
+      expected: `at most ${LARGEST_CEILING_BYTES} bytes of symbols`,
+      got: `${sequence.symbols.byteLength} bytes`,
+      advice: 'Take a part of the data.',
+    });
+  }
   coder.check?.(setup);
   const coded = encode(coder, setup, sequence);
   verify(decode(coder, setup, coded, sequence), coder, sequence);
-  const { idealBits } = coder.price!(sequence, setup);
   const { tableBits, indexBits } = coded.account;
-  return (idealBits + tableBits + indexBits) / sequence.symbols.length;
+  return (coded.payloadBits + tableBits + indexBits) / sequence.symbols.length;
 }
 
 // Encoder and decoder each have a function of their own, so that the model of one can be freed before the next grows.

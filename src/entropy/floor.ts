@@ -29,7 +29,9 @@ type FloorOrder = Pick<OrderEntropy, 'k' | 'corrected' | 'low' | 'estimable'>;
 /**
  * The floor by its rule: high is the lowest ceiling; the point is the least of high and the corrected entropy at the
  * largest estimable order; low is the least low end of the intervals of estimable orders, and never above the point.
- * Where no order is estimable nothing is known from below: the point is the ceiling and low is 0.
+ * Where no order is estimable the point is the ceiling. There, and where the ceiling lies below the corrected entropy,
+ * the intervals of estimable orders say nothing of how far down the rate may lie: those of all orders counted stand in,
+ * which too few data can only pull down.
  * @param ceilings  at least one; a code of equal lengths always exists
  */
 export function floorOf({
@@ -47,7 +49,7 @@ export function floorOf({
   if (largest === undefined) {
     return {
       point: high,
-      low: 0,
+      low: leastLow(orders, high),
       high,
       method: `what ${lowest.name} reaches, since no order is estimable`,
       cut: false,
@@ -58,7 +60,7 @@ export function floorOf({
   const point = Math.min(high, largest.corrected);
   return {
     point,
-    low: estimable.reduce((least, order) => Math.min(least, order.low), point),
+    low: leastLow(cut ? orders : estimable, point),
     high,
     method: cut
       ? `what ${lowest.name} reaches, below the corrected entropy of order ${largest.k}`
@@ -66,6 +68,10 @@ export function floorOf({
     cut,
     order: largest.k,
   };
+}
+
+function leastLow(orders: readonly FloorOrder[], point: number): number {
+  return orders.reduce((least, order) => Math.min(least, order.low), point);
 }
 
 /**

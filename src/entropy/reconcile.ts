@@ -29,5 +29,5 @@ export function reconcileSentence(
   if (useful > estimable) {
     return `Order ${useful} still saves bits on data held out, but these data are enough to state an entropy only up to order ${estimable}: a coder may profit from an order whose entropy cannot be stated.`;
   }
-  return `These data are enough to state an entropy up to order ${estimable}, but no order tested above ${useful} saves bits on data held out: the context beyond it tells a coder nothing.`;
+  return `These data are enough to state an entropy up to order ${estimable}, but what the first half teaches of orders above ${useful} saves no bits on the second.`;
 }

@@ -72,7 +72,8 @@ export function usefulOrders(sequence: SymbolSequence, options: UsefulOptions): 
 
 function savingText(order: number, rate: number, error: number): string {
   const from = order === 0 ? 'equal lengths' : `order ${order - 1}`;
-  return `${rate.toFixed(4)} bits/symbol less than ${from} on held-out data, standard error ${error.toFixed(4)}`;
+  const change = `${Math.abs(rate).toFixed(4)} bits/symbol ${rate < 0 ? 'more' : 'less'}`;
+  return `${change} than ${from} on held-out data, standard error ${error.toFixed(4)}`;
 }
 
 function backOffCoder(order: number): Coder {

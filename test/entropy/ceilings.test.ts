@@ -1,7 +1,8 @@
 import { describe, expect, it } from 'vitest';
 import type { Coder, Decoded } from '../../src/coders/contract.ts';
-import { adaptiveCeilings } from '../../src/entropy/ceilings.ts';
+import { adaptiveCeilings, LARGEST_CEILING_BYTES } from '../../src/entropy/ceilings.ts';
 import { LimitError, PromiseError } from '../../src/errors/errors.ts';
+import { SeededGenerator } from '../../src/statistics/generator.ts';
 import { oneMessage } from '../../src/symbols/sequence.ts';
 import { addOneCoder } from './stand-in-coder.ts';
 
@@ -86,5 +87,46 @@ describe('adaptiveCeilings', () => {
       ceilings: [{ name: 'fixed', bitsPerSymbol: 0 }],
       without: [],
     });
+  });
+
+  it('codes only the orders asked for', () => {
+    const { ceilings } = adaptiveCeilings(input, { from: 2, upto: 3, coderOf: addOneCoder });
+    expect(ceilings.map((c) => c.name)).toEqual(['fixed', 'arith:order=2', 'arith:order=3']);
+  });
+
+  it('refuses one byte more than the largest sequence, before it codes anything', () => {
+    const tooLarge = oneMessage(new Uint8Array(LARGEST_CEILING_BYTES + 1), 2);
+    const unused = (): Coder => ({ ...addOneCoder(0), encoder: () => expect.fail() });
+    const { ceilings, without } = adaptiveCeilings(tooLarge, { upto: 0, coderOf: unused });
+    expect(ceilings).toHaveLength(1);
+    expect(without[0].error).toBeInstanceOf(LimitError);
+    const reached: number[] = [];
+    const noting = (): Coder => ({
+      ...addOneCoder(0),
+      encoder: () => {
+        reached.push(1);
+        throw new LimitError('far enough');
+      },
+    });
+    for (const size of [LARGEST_CEILING_BYTES, LARGEST_CEILING_BYTES - 1]) {
+      adaptiveCeilings(oneMessage(tooLarge.symbols.subarray(0, size), 2), {
+        upto: 0,
+        coderOf: noting,
+      });
+    }
+    expect(reached).toEqual([1, 1]);
+  });
+
+  it('lies between the entropy of the source and a little more, with the coder it takes by itself', () => {
+    // A fair four-sided source: 2 bits a symbol is its entropy rate, and learning m = 4 frequencies of order 0 costs at
+    // most some (m − 1)/2 · log2 n + escapes, far below 100 bits (Rissanen 1984).
+    const generator = new SeededGenerator(8);
+    const symbols = Uint8Array.from({ length: 20_000 }, () => generator.integer(0, 3));
+    const { ceilings, without } = adaptiveCeilings(oneMessage(symbols, 4), { upto: 1 });
+    expect(without).toEqual([]);
+    const zero = ceilings.find((c) => c.name === 'arith:order=0')!.bitsPerSymbol;
+    // The draw's own plug-in entropy lies within 0.002 of 2: five times (m − 1)/(2n ln 2), and its spread.
+    expect(zero).toBeGreaterThan(2 - 0.002);
+    expect(zero).toBeLessThan(2 + 100 / 20_000);
   });
 });

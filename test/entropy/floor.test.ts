@@ -27,10 +27,10 @@ describe('floorOf', () => {
     });
   });
 
-  it('is cut by a ceiling below it, and its low end with it', () => {
+  it('is cut by a ceiling below it; then all orders counted say how far down it may lie', () => {
     expect(floorOf({ orders, ceilings: [{ name: 'arith:order=4', bitsPerSymbol: 2 }] })).toEqual({
       point: 2,
-      low: 2,
+      low: 0.9,
       high: 2,
       method: 'what arith:order=4 reaches, below the corrected entropy of order 2',
       cut: true,
@@ -38,11 +38,11 @@ describe('floorOf', () => {
     });
   });
 
-  it('is the ceiling, with nothing known below, where no order is estimable', () => {
+  it('is the ceiling where no order is estimable, above the least of what was counted', () => {
     const unknown = [order(0, 4, 3.9, false)];
     expect(floorOf({ orders: unknown, ceilings: [{ name: 'fixed', bitsPerSymbol: 8 }] })).toEqual({
       point: 8,
-      low: 0,
+      low: 3.9,
       high: 8,
       method: 'what fixed reaches, since no order is estimable',
       cut: false,
