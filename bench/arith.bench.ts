@@ -70,7 +70,13 @@ const candidates = process.argv.slice(2).length
       'order=4',
     ];
 
-const bench = new Bench({ iterations: 3, time: 0, warmup: true, warmupIterations: 1, warmupTime: 0 });
+const bench = new Bench({
+  iterations: 3,
+  time: 0,
+  warmup: true,
+  warmupIterations: 1,
+  warmupTime: 0,
+});
 const deflated = deflateRawSync(text, { strategy: constants.Z_HUFFMAN_ONLY });
 bench.add('zlib encode', () => {
   kept += deflateRawSync(text, { strategy: constants.Z_HUFFMAN_ONLY }).length;
@@ -105,8 +111,12 @@ function medianOf(name: string): number {
 
 const zlibEncode = medianOf('zlib encode');
 const zlibDecode = medianOf('zlib decode');
-console.log(`zlib, Huffman only: ${(SIZE / 1e3 / zlibEncode).toFixed(0)} MB/s encode, ${(SIZE / 1e3 / zlibDecode).toFixed(0)} decode`);
-console.log('candidate                          coded bytes   encode  ÷ zlib   decode  ÷ zlib   (MB/s)');
+console.log(
+  `zlib, Huffman only: ${(SIZE / 1e3 / zlibEncode).toFixed(0)} MB/s encode, ${(SIZE / 1e3 / zlibDecode).toFixed(0)} decode`,
+);
+console.log(
+  'candidate                          coded bytes   encode  ÷ zlib   decode  ÷ zlib   (MB/s)',
+);
 for (const [name, bytes] of sizes) {
   const encodeTime = medianOf(`${name} encode`);
   const decodeTime = medianOf(`${name} decode`);

@@ -1,7 +1,8 @@
 /**
- * `huffman` against zlib's own Huffman-only coding, on 8 MiB of text as one message: encode with `sent` tables (counting, code
- * lengths and table included) against deflateRaw with Z_HUFFMAN_ONLY, decode against inflateRaw of the same.
- * Then the same coder in 32-byte messages with shipped tables. Speeds are ratios: above 1 is faster than zlib.
+ * `huffman` against zlib's own Huffman-only coding, on 8 MiB of text as one message: encode with
+ * `sent` tables (counting, code lengths and table included) against deflateRaw with Z_HUFFMAN_ONLY,
+ * decode against inflateRaw of the same. Then the same coder in 32-byte messages with shipped
+ * tables. Speeds are ratios: above 1 is faster than zlib.
  */
 import { readFileSync } from 'node:fs';
 import { join } from 'node:path';

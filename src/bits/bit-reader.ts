@@ -1,12 +1,15 @@
 import { CorruptStreamError, PromiseError } from '../errors/errors.ts';
 
 /**
- * Reads bits, most significant first, from `bytes`, up to a limit that moves from message to message.
+ * Reads bits, most significant first, from `bytes`, up to a limit that moves from message to
+ * message.
  *
- * Reading past the limit yields zeros, called phantom bits; they are counted, and more than `phantomBitsAllowed` of them
- * is a {@link CorruptStreamError}, so that a cut stream can never decode without end.
+ * Reading past the limit yields zeros, called phantom bits; they are counted, and more than
+ * `phantomBitsAllowed` of them is a {@link CorruptStreamError}, so that a cut stream can never
+ * decode without end.
  *
- * Kernels that cannot afford a call per symbol read `bytes` themselves from `position` and give it back with {@link seek}.
+ * Kernels that cannot afford a call per symbol read `bytes` themselves from `position` and give it
+ * back with {@link seek}.
  */
 export class BitReader {
   readonly bytes: Uint8Array;

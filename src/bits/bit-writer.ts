@@ -3,10 +3,12 @@ import { BugError, PromiseError } from '../errors/errors.ts';
 /**
  * Writes bits, most significant first, into a growing byte buffer.
  *
- * `finish()` is the only way to get the bytes, and it can be called once. Positions are plain numbers, exact to 2^53 bits.
+ * `finish()` is the only way to get the bytes, and it can be called once. Positions are plain
+ * numbers, exact to 2^53 bits.
  *
- * Kernels that cannot afford a call per symbol take the state into locals between {@link reserve} and {@link adopt}:
- * `bytes`, `byteLength`, and `pending`, the low `pendingBits` (0 … 7) bits not yet stored.
+ * Kernels that cannot afford a call per symbol take the state into locals between {@link reserve}
+ * and {@link adopt}: `bytes`, `byteLength`, and `pending`, the low `pendingBits` (0 … 7) bits not
+ * yet stored.
  */
 export class BitWriter {
   bytes: Uint8Array;

@@ -9,7 +9,8 @@ const TABLE = (() => {
 })();
 
 /**
- * CRC-32 (polynomial 0x04C11DB7, reflected, initial and final value all ones), as in ISO-HDLC and ITU-T V.42.
+ * CRC-32 (polynomial 0x04C11DB7, reflected, initial and final value all ones), as in ISO-HDLC and
+ * ITU-T V.42.
  * @param before  the CRC of the bytes so far, 0 at the start
  */
 export function crc32(bytes: Uint8Array, before = 0): number {

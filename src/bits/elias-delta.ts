@@ -3,7 +3,8 @@ import type { BitReader } from './bit-reader.ts';
 import type { BitWriter } from './bit-writer.ts';
 
 /**
- * Elias delta code of v + 1, the one code in which every count and length is written here, whatever the candidate.
+ * Elias delta code of v + 1, the one code in which every count and length is written here, whatever
+ * the candidate.
  * Source: P. Elias, IEEE Trans. Inf. Theory 21(2), 1975, section "The code δ". Values 0 … 2^53 − 2.
  */
 

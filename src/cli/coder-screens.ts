@@ -46,6 +46,7 @@ function valuesText(parameter: ParameterDeclaration): string {
   if (parameter.kind === 'word') {
     return `${parameter.words.join(' | ')}; usually ${parameter.standard}`;
   }
+  if (parameter.kind === 'text') return `${parameter.form}; nothing unless given`;
   const range = `${parameter.min} to ${parameter.max}`;
   if (parameter.standard !== undefined) return `${range}; usually ${parameter.standard}`;
   return parameter.optional === true ? `${range}; the coder chooses` : `${range}; must be given`;
@@ -57,6 +58,7 @@ function otherValue(parameter: ParameterDeclaration): string {
     const word = parameter.words.find((w) => w !== parameter.standard) ?? parameter.standard;
     return word.replace(/:X$/, ':1/16');
   }
+  if (parameter.kind === 'text') return parameter.example;
   const { min, max, standard } = parameter;
   if (isRequired(parameter)) return String(Math.min(max, min + 2));
   // The power of two at or below the middle of the range.
@@ -80,7 +82,9 @@ export function candidateExamples(declaration: Declaration): string[] {
   const texts = [write(base)];
   for (const parameter of parameters) {
     if (needed.includes(parameter)) continue;
-    texts.push(write([...base, `${parameter.key}=${otherValue(parameter)}`]));
+    const value = otherValue(parameter);
+    const isBare = parameter.kind === 'word' && parameter.bare === true;
+    texts.push(write([...base, isBare ? value : `${parameter.key}=${value}`]));
   }
   const ranged = parameters.find(({ kind }) => kind === 'integer');
   if (ranged?.kind === 'integer') {

@@ -1,6 +1,5 @@
 import { BitWriter } from '../bits/bit-writer.ts';
 import { BugError } from '../errors/errors.ts';
-import { IntervalTape } from '../models/interval.ts';
 import { PairTree } from '../models/pair-tree.ts';
 import { roundCount, writeSentTable } from '../models/sent-table.ts';
 import { StaticModel } from '../models/static-model.ts';
@@ -9,7 +8,7 @@ import type { SymbolModel } from '../models/symbol-model.ts';
 import { RangeEncoder } from '../stages/range-encoder.ts';
 import type { SymbolArray } from '../symbols/sequence.ts';
 import type { ArithSettings } from './arith-settings.ts';
-import { adaptiveModelFor, BLOCK_SYMBOLS, startsAtMessages, tablesFor } from './arith-tables.ts';
+import { adaptiveModelFor, startsAtMessages, tablesFor } from './arith-tables.ts';
 import type { Encoder, Lengths, Setup } from './contract.ts';
 import { writeSymbolCount } from './message-frame.ts';
 import { MessageLedger } from './message-ledger.ts';
@@ -29,7 +28,6 @@ export class ArithMessages implements PieceSink {
   readonly #settings: ArithSettings;
   readonly #setup: Setup;
   readonly #stage: RangeEncoder;
-  readonly #tape: IntervalTape;
   readonly #ownPairs: PairTree | undefined;
   #model: SymbolModel | undefined;
   #tableIsDue = false;
@@ -39,7 +37,6 @@ export class ArithMessages implements PieceSink {
     this.#setup = setup;
     this.ledger = new MessageLedger(setup.align);
     this.#stage = new RangeEncoder(this.writer, settings.rangeBits);
-    this.#tape = new IntervalTape(BLOCK_SYMBOLS * (settings.order + 2));
     if (setup.policy === 'shipped') {
       this.#model = new StaticModel(tablesFor(setup, 'shipped').table);
     } else if (setup.policy !== 'sent') {
@@ -64,11 +61,7 @@ export class ArithMessages implements PieceSink {
   take(symbols: SymbolArray, from: number, to: number): void {
     const model = this.#model;
     if (model === undefined) throw new BugError('arith was to code without a model');
-    const tape = this.#tape;
-    for (let at = from; at < to; at += BLOCK_SYMBOLS) {
-      model.encode(symbols, at, Math.min(to, at + BLOCK_SYMBOLS), tape);
-      this.#stage.putTape(tape);
-    }
+    model.encode(symbols, from, to, this.#stage);
   }
 
   end(): void {

@@ -1,5 +1,4 @@
 import { empiricalLengthBits } from '../models/empirical-length.ts';
-import { IntervalTape } from '../models/interval.ts';
 import { PairTree } from '../models/pair-tree.ts';
 import { StaticModel } from '../models/static-model.ts';
 import { compileTable } from '../models/static-table.ts';
@@ -7,7 +6,7 @@ import type { SymbolModel } from '../models/symbol-model.ts';
 import { Meter } from '../stages/meter.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { ArithSettings } from './arith-settings.ts';
-import { adaptiveModelFor, BLOCK_SYMBOLS, startsAtMessages, tablesFor } from './arith-tables.ts';
+import { adaptiveModelFor, startsAtMessages, tablesFor } from './arith-tables.ts';
 import type { Price, Setup } from './contract.ts';
 
 /**
@@ -18,7 +17,6 @@ export function arithPrice(settings: ArithSettings, sequence: SymbolSequence, se
   const { symbols, messageEnds, alphabetSize } = sequence;
   const { order } = settings;
   const meter = new Meter();
-  const tape = new IntervalTape(BLOCK_SYMBOLS * (order + 2));
   const ownPairs =
     setup.policy === 'sent' && setup.reset === 'message'
       ? new PairTree(alphabetSize, order)
@@ -36,10 +34,7 @@ export function arithPrice(settings: ArithSettings, sequence: SymbolSequence, se
     } else if (startsAtMessages(setup)) {
       model!.reset();
     }
-    for (let at = from; at < to; at += BLOCK_SYMBOLS) {
-      model!.encode(symbols, at, Math.min(to, at + BLOCK_SYMBOLS), tape);
-      meter.putTape(tape);
-    }
+    model!.encode(symbols, from, to, meter);
     messageIdealBits[i] = meter.takeBits();
     idealBits += messageIdealBits[i];
     from = to;

@@ -1,14 +1,10 @@
 import { BugError } from '../errors/errors.ts';
-import { IntervalTape } from '../models/interval.ts';
+import type { IntervalSink } from '../models/interval.ts';
 import { PairTrainer, type PairTree } from '../models/pair-tree.ts';
 import { compileTable, type StaticTable } from '../models/static-table.ts';
 import type { AdaptiveModel } from '../models/symbol-model.ts';
-import type { SymbolChunk } from '../symbols/sequence.ts';
 import type { ArithSettings } from './arith-settings.ts';
 import type { Setup, Tables, Trainer } from './contract.ts';
-
-/** Symbols whose intervals are on a tape at once. */
-export const BLOCK_SYMBOLS = 1024;
 
 /** What `arith` is trained to. */
 export type ArithTables =
@@ -55,25 +51,21 @@ export function arithTrainer(settings: ArithSettings, setup: Setup): Trainer {
   };
 }
 
+/** Training needs no code. */
+const nowhere: IntervalSink = { put() {} };
+
 /** Runs the model over the train split without a stage. */
 function primedTrainer(settings: ArithSettings, setup: Setup): Trainer {
   const model = settings.newModel(setup.alphabetSize);
-  const tape = new IntervalTape(BLOCK_SYMBOLS * model.intervalsPerSymbol);
-  const learn = (chunk: SymbolChunk, from: number, to: number) => {
-    for (let at = from; at < to; at += BLOCK_SYMBOLS) {
-      model.encode(chunk.symbols, at, Math.min(to, at + BLOCK_SYMBOLS), tape);
-      tape.clear();
-    }
-  };
   return {
     push(chunk) {
       let from = 0;
       for (const to of chunk.messageEnds) {
-        learn(chunk, from, to);
+        model.encode(chunk.symbols, from, to, nowhere);
         if (setup.reset === 'message') model.startContexts();
         from = to;
       }
-      learn(chunk, from, chunk.symbols.length);
+      model.encode(chunk.symbols, from, chunk.symbols.length, nowhere);
     },
     finish: (): ArithTables => ({ coder: 'arith', policy: 'primed', model }),
   };

@@ -38,7 +38,9 @@ export class BlockReader {
     return this.#blocks.shortestWordBits;
   }
 
-  /** Takes the table of the n-grams; `escapeEntry` is the number of the escape's word, −1 for none. */
+  /**
+   * Takes the table of the n-grams; `escapeEntry` is the number of the escape's word, −1 for none.
+   */
   setBlocks(table: PrefixTable, escapeEntry: number, expectedBlocks: number): void {
     const { count } = table;
     if (count > this.#ids.length)

@@ -86,7 +86,10 @@ export class BlockWords {
   }
 }
 
-/** One pair of tables for the whole unit; under `sent` each is written in the first message that needs it. */
+/**
+ * One pair of tables for the whole unit; under `sent` each is written in the first message that
+ * needs it.
+ */
 export function unitEncoder(
   setup: Setup,
   n: number,

@@ -10,7 +10,10 @@ const DIRECT_SPACE = 2 ** 20;
 /** n-grams handed over at once. */
 const BATCH = 4096;
 
-/** m^n, the number of possible n-grams: exact below 2^53, which a power function need not be on every engine. */
+/**
+ * m^n, the number of possible n-grams: exact below 2^53, which a power function need not be on
+ * every engine.
+ */
 export function ngramSpace(alphabetSize: number, n: number): number {
   let space = 1;
   for (let i = 0; i < n; i++) space *= alphabetSize;
@@ -18,11 +21,12 @@ export function ngramSpace(alphabetSize: number, n: number): number {
 }
 
 /**
- * Distinct n-grams with their counts. An n-gram is one exact integer, its key: the symbols as digits in base m, first symbol highest, below
- * m^n < 2^53. Entries are numbered in order of first sight.
+ * Distinct n-grams with their counts. An n-gram is one exact integer, its key: the symbols as
+ * digits in base m, first symbol highest, below m^n < 2^53. Entries are numbered in order of first
+ * sight.
  *
- * Memory: 16 bytes an entry and 4 bytes a slot, with a slot for each possible n-gram up to 2^20, else at least 2 slots an entry
- * (open addressing, linear probing).
+ * Memory: 16 bytes an entry and 4 bytes a slot, with a slot for each possible n-gram up to 2^20,
+ * else at least 2 slots an entry (open addressing, linear probing).
  */
 export class NgramIndex {
   keys = new Float64Array(64);
@@ -115,8 +119,8 @@ export class NgramIndex {
 }
 
 /**
- * Cuts messages, handed over in pieces, into n-grams from their first symbol on. What is left at the end, fewer than n symbols, is
- * the message's tail.
+ * Cuts messages, handed over in pieces, into n-grams from their first symbol on. What is left at
+ * the end, fewer than n symbols, is the message's tail.
  */
 export class NgramCutter {
   /** The symbols since the last whole n-gram: at a message's end its tail. */

@@ -74,9 +74,10 @@ function fittedCosts(whole: BlockCounts): BlockCosts {
 }
 
 /**
- * Price of `block-huffman`: the distributions behind its words. `shipped`: count / (total with escape), an n-gram never trained at p(escape) × 1/mⁿ;
- * `sent`: the frequencies of what each table was fitted to. fit: the empirical code length of the non-overlapping n-grams, with
- * that of the tails beside it.
+ * Price of `block-huffman`: the distributions behind its words. `shipped`: count / (total with
+ * escape), an n-gram never trained at p(escape) × 1/mⁿ; `sent`: the frequencies of what each table
+ * was fitted to. fit: the empirical code length of the non-overlapping n-grams, with that of the
+ * tails beside it.
  */
 export function priceBlocks(sequence: SymbolSequence, setup: Setup, n: number): Price {
   const { messageEnds } = sequence;

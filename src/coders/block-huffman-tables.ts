@@ -8,7 +8,10 @@ import { SymbolCounts } from './huffman-counts.ts';
 import { HuffmanFit } from './huffman-tables.ts';
 import { MessagePieces } from './message-pieces.ts';
 
-/** What `block-huffman` learns: how often each n-gram occurs, and each symbol of a message's last, shorter block. */
+/**
+ * What `block-huffman` learns: how often each n-gram occurs, and each symbol of a message's last,
+ * shorter block.
+ */
 export interface BlockTables extends Tables {
   readonly coder: 'block-huffman';
   readonly n: number;
@@ -20,7 +23,10 @@ export interface BlockTables extends Tables {
   readonly tailCounts: Float64Array;
 }
 
-/** The tables of a setup. Throws BugError when they are missing or were made for another n or alphabet. */
+/**
+ * The tables of a setup. Throws BugError when they are missing or were made for another n or
+ * alphabet.
+ */
 export function blockTables(setup: Setup, n: number): BlockTables {
   const tables = setup.tables as BlockTables | undefined;
   if (
@@ -64,8 +70,8 @@ export function blockTrainer(setup: Setup, n: number): Trainer {
 }
 
 /**
- * Weight of the escape beside the counts of a shipped table: as much as all n-grams seen once, and at least 1. None when every possible n-gram
- * was seen: then there is nothing to escape to.
+ * Weight of the escape beside the counts of a shipped table: as much as all n-grams seen once, and
+ * at least 1. None when every possible n-gram was seen: then there is nothing to escape to.
  */
 export function escapeWeight(tables: BlockTables): number {
   if (tables.keys.length === ngramSpace(tables.tailCounts.length, tables.n)) return 0;
@@ -132,7 +138,10 @@ export class BlockFit {
   }
 }
 
-/** Lines for a person: how many n-grams, how long their words, what the tables cost where they are sent. */
+/**
+ * Lines for a person: how many n-grams, how long their words, what the tables cost where they are
+ * sent.
+ */
 export function describeBlocks(
   tables: BlockTables,
   setup: Setup,

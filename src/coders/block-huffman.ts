@@ -29,18 +29,18 @@ const declaration: Declaration = {
   maxAlphabetSize: 2 ** 24,
   worstCase:
     'an escape of maxbits bits and n · ⌈log2 m⌉ bits for each block; a whole table with sent ones',
-  memory: `about 100 bytes a distinct block, at most ${MOST_NGRAMS} of them; 12 bytes a symbol of the alphabet`,
+  memory: `about 100 bytes a distinct block, at most ${MOST_NGRAMS} of them; 12 bytes a symbol`,
   source:
-    'D. A. Huffman, Proc. IRE 40(9), 1952; C. E. Shannon, Bell Syst. Tech. J. 27, 1948, section 9 (coding of blocks)',
+    'D. A. Huffman, Proc. IRE 40(9), 1952; blocks: C. E. Shannon, Bell Syst. Tech. J. 27, 1948, s. 9',
 };
 
 /**
- * Huffman coding of non-overlapping blocks of n symbols, from the first symbol of each message on. The last r < n symbols of a message are coded singly
- * with a second code.
+ * Huffman coding of non-overlapping blocks of n symbols, from the first symbol of each message on.
+ * The last r < n symbols of a message are coded singly with a second code.
  *
- * `shipped`: a block never trained is an escape, then its n symbols in ⌈log2 m⌉ bits each; the second code gives each symbol
- * count + 1/2. `sent`: each table stands in the first message that needs it (under reset `message` in each), before its
- * words: no last symbols, no second table.
+ * `shipped`: a block never trained is an escape, then its n symbols in ⌈log2 m⌉ bits each; the
+ * second code gives each symbol count + 1/2. `sent`: each table stands in the first message that
+ * needs it (under reset `message` in each), before its words: no last symbols, no second table.
  */
 export const blockHuffman: CoderEntry = { declaration, create: (values) => createBlock(values) };
 

@@ -1,20 +1,30 @@
 import { InputError } from '../errors/errors.ts';
 import { nearestWord } from '../errors/nearest.ts';
+import { parseTransformChain } from '../transforms/chain.ts';
 import type { Coder, CoderEntry, Declaration } from './contract.ts';
 import { type ParameterValues, resolveParameters, writeParameters } from './parameters.ts';
 import { coderEntries } from './registry.ts';
+import { stored } from './stored.ts';
+import { transformed } from './transformed.ts';
 
 /** A coder with all parameters set, and its stable name. */
 export interface Candidate {
-  /** `name` or `name:key=value,…`, parameters in declared order, defaults left out. */
+  /**
+   * `name` or `name:key=value,…`, parameters in declared order, defaults left out; then `stored=on` and, last, `after=`.
+   */
   readonly id: string;
+  /** Of this very coder: its parameters can narrow what the registry's entry declares. */
   readonly declaration: Declaration;
+  /** The coder's parameters, and the keys that every coder takes where they are given. */
   readonly values: ParameterValues;
   create(): Coder;
 }
 
+/** Keys that every coder takes, besides its own: raw messages where they are shorter, and steps before the coder. */
+const COMMON_KEYS = ['stored', 'after'];
+
 /** Names of keys that a later version will understand, for every coder. */
-const LATER_KEYS = ['after', 'stored', 'tables_in_set', 'stage', 'lanes', 'refresh', 'position'];
+const LATER_KEYS = ['tables_in_set', 'stage', 'lanes', 'refresh', 'position'];
 
 /** The registry entry of that name. Throws InputError with the nearest name. */
 export function coderEntryOf(name: string): CoderEntry {
@@ -28,9 +38,19 @@ export function coderEntryOf(name: string): CoderEntry {
   });
 }
 
-function splitPairs(text: string, name: string, pairs: string): [string, string][] {
+/** The parameter that is given by this word alone. */
+function bareParameterOf(declaration: Declaration, word: string): string | undefined {
+  return declaration.parameters.find(
+    (p) => p.kind === 'word' && p.bare === true && p.words.includes(word),
+  )?.key;
+}
+
+function splitPairs(text: string, declaration: Declaration, pairs: string): [string, string][] {
+  const { name } = declaration;
   const result: [string, string][] = [];
-  for (const pair of pairs.split(',')) {
+  for (const written of pairs.split(',')) {
+    const bareKey = bareParameterOf(declaration, written.trim());
+    const pair = bareKey === undefined ? written : `${bareKey}=${written}`;
     const at = pair.indexOf('=');
     const key = at < 0 ? pair.trim() : pair.slice(0, at).trim();
     if (at < 1 || key === '') {
@@ -66,7 +86,7 @@ export function parseCandidates(text: string): Candidate[] {
   const name = (colon < 0 ? text : text.slice(0, colon)).trim();
   const entry = coderEntryOf(name);
   const declaration = entry.declaration;
-  const pairs = colon < 0 ? [] : splitPairs(text, name, text.slice(colon + 1));
+  const pairs = colon < 0 ? [] : splitPairs(text, declaration, text.slice(colon + 1));
   if (countCandidates(text) > 100_000) {
     throw new InputError(
       `the candidate ${JSON.stringify(text)} stands for ${countCandidates(text)} candidates`,
@@ -100,9 +120,7 @@ export function parseCandidates(text: string): Candidate[] {
     }
     choices = choices.flatMap((choice) => values.map((v) => ({ ...choice, [key]: v })));
   }
-  return choices.map((given) =>
-    candidateOf(entry, resolveParameters(name, declaration.parameters, given)),
-  );
+  return choices.map((given) => candidateOf(entry, given));
 }
 
 /** The one candidate behind a text without ranges. Throws InputError when there are several. */
@@ -119,13 +137,41 @@ export function parseCandidate(text: string): Candidate {
   return candidates[0];
 }
 
-function candidateOf(entry: CoderEntry, values: ParameterValues): Candidate {
-  const declaration = entry.declaration;
-  const parameters = writeParameters(declaration.parameters, values);
-  return {
-    id: parameters === '' ? declaration.name : `${declaration.name}:${parameters}`,
-    declaration,
-    values,
-    create: () => entry.create(values),
+/** The candidate of an entry and the texts of its keys. */
+function candidateOf(entry: CoderEntry, given: Readonly<Record<string, string>>): Candidate {
+  const { name, parameters } = entry.declaration;
+  const { after, stored: storedText, ...own } = given;
+  const values = resolveParameters(name, parameters, own, COMMON_KEYS);
+  const chain = after === undefined ? undefined : parseTransformChain(after);
+  const keepsRaw = storedText !== undefined && parseStored(name, storedText);
+  const create = () => {
+    let coder = entry.create(values);
+    if (chain !== undefined) coder = transformed(coder, chain);
+    // Outside of the steps, so that a raw message is the product's own symbols.
+    return keepsRaw ? stored(coder) : coder;
   };
+  const common = {
+    ...(keepsRaw ? { stored: 'on' } : {}),
+    ...(chain === undefined ? {} : { after: chain.name }),
+  };
+  const pairs = [
+    writeParameters(parameters, values),
+    ...Object.entries(common).map(([key, value]) => `${key}=${value}`),
+  ].filter((pair) => pair !== '');
+  return {
+    id: pairs.length === 0 ? name : `${name}:${pairs.join(',')}`,
+    declaration: create().declares,
+    values: { ...values, ...common },
+    create,
+  };
+}
+
+function parseStored(coder: string, text: string): boolean {
+  if (text === 'on' || text === 'off') return text === 'on';
+  throw new InputError(`${coder}: the value of stored is not allowed`, {
+    coder,
+    key: 'stored',
+    expected: 'on | off',
+    got: text,
+  });
 }

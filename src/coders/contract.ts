@@ -1,15 +1,19 @@
+import type { RecordShape } from '../symbols/record.ts';
 import type { SymbolChunk, SymbolSequence } from '../symbols/sequence.ts';
 import type { ParameterDeclaration, ParameterValues } from './parameters.ts';
 
 /** Where a coder's knowledge comes from; `none` for coders that need no tables and keep no state between messages. */
 export type TablePolicy = 'shipped' | 'sent' | 'learned' | 'primed' | 'none';
 
-/** When an adaptive coder forgets and `sent` tables are sent anew, as a plan says it. */
-export type Reset = 'message' | 'file' | 'never';
+/** Resets that a coder declares. */
+export type DeclaredReset = 'message' | 'file' | 'never';
+
+/** When an adaptive coder forgets and `sent` tables are sent anew, as a plan says it; `message*R`: every R messages. */
+export type Reset = DeclaredReset | `message*${number}`;
 
 /**
- * The same as a coder sees it: the harness runs reset `file` as one unit a file, so within a unit there is either a
- * reset at each message or none.
+ * The same as a coder sees it: the harness runs reset `file` as one unit a file and `message*R` as one unit each R messages,
+ * so within a unit there is either a reset at each message or none.
  */
 export type UnitReset = 'message' | 'never';
 
@@ -38,6 +42,10 @@ export interface Setup {
    * them in the first message. `sent` with reset `message`: absent, the encoder fits each message itself.
    */
   readonly tables?: Tables;
+  /** Where the symbols are the bytes of whole records: their shape. */
+  readonly record?: RecordShape;
+  /** What the corpus says of how fields are coded, by field name: see symbols/field-choice.ts. */
+  readonly fields?: Readonly<Record<string, string>>;
 }
 
 /** Exact integers, in bits, summed over messages; `payloadBits` is the one real number (see DESIGN of the account). */
@@ -80,6 +88,12 @@ export interface CodedInput {
   readonly messageEndsBits?: Float64Array;
   /** Only under `known`. */
   readonly symbolCounts?: Uint32Array;
+  /**
+   * Only under `known`, from a coder that wraps this one and puts bits of its own between the messages. Called for each
+   * message in turn, before anything of it is read, with the bit where the message before it ended (0 at first); gives the
+   * bit where this one starts, and may set its entry of `symbolCounts`.
+   */
+  readonly startOf?: (messageIndex: number, endBits: number) => number;
 }
 
 export interface Decoded {
@@ -118,6 +132,14 @@ export type FitClass =
       readonly entropyBits: number;
     };
 
+/** What one field of the record takes. */
+export interface FieldPrice {
+  readonly name: string;
+  readonly idealBits: number;
+  /** How it was coded, as `parseFieldChoice` reads it. */
+  readonly choice: string;
+}
+
 /** Code lengths by the model alone: a pass of its own, never timed, floating point allowed. */
 export interface Price {
   /** −Σ log2 of the probabilities behind the code. */
@@ -129,6 +151,8 @@ export interface Price {
    * cell has (start contexts or run-on). Absent where the class has no best member.
    */
   readonly fit?: { readonly bits: number; readonly of: FitClass };
+  /** Of coders that code a record by its fields; the bits add up to `idealBits`. */
+  readonly perField?: readonly FieldPrice[];
 }
 
 /** A coder's description of itself: what the registry, screens and documents show. */
@@ -139,7 +163,7 @@ export interface Declaration {
   readonly parameters: readonly ParameterDeclaration[];
   readonly policies: readonly TablePolicy[];
   /** Resets in which cells exist for policies other than `shipped` and `none` (these have one cell, at `message`). */
-  readonly resets: readonly Reset[];
+  readonly resets: readonly DeclaredReset[];
   /** The encoder must hold a whole message before its first bit. */
   readonly needsWholeMessage: boolean;
   /** A general-purpose coder shown for scale; never a pick, its bits never gated. */

@@ -1,6 +1,8 @@
 import { BitReader } from '../bits/bit-reader.ts';
 import { BitWriter } from '../bits/bit-writer.ts';
 import { CorruptStreamError } from '../errors/errors.ts';
+import { PrefixDecoder } from '../stages/prefix-decoder.ts';
+import { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import { newSymbolArray } from '../symbols/sequence.ts';
 import type { Coder, CoderEntry, Declaration, Setup } from './contract.ts';
 import { MessageWalk, writeSymbolCount } from './message-frame.ts';
@@ -18,7 +20,7 @@ const declaration: Declaration = {
   reference: false,
   maxAlphabetSize: 2 ** 32,
   worstCase: 'n · ⌈log2 m⌉ bits, always',
-  memory: 'none',
+  memory: '5 bytes a symbol of the alphabet up to 65 536 symbols, none above',
   source: 'common practice, no source',
 };
 
@@ -29,7 +31,20 @@ export function symbolWidth(alphabetSize: number): number {
   return width;
 }
 
-/** A code of equal lengths. One symbol only (m = 1): 0 bits a symbol, the count alone is carried. */
+/** Alphabets up to here go through the kernels of prefix codes, larger ones bit by bit. */
+const KERNEL_ALPHABET = 2 ** 16;
+
+/** Equal lengths make each canonical word the symbol itself. */
+function equalWords(alphabetSize: number): { symbols: Uint32Array; lengths: Uint8Array } {
+  return {
+    symbols: Uint32Array.from({ length: alphabetSize }, (_, i) => i),
+    lengths: new Uint8Array(alphabetSize).fill(symbolWidth(alphabetSize)),
+  };
+}
+
+/**
+ * A code of equal lengths. One symbol only (m = 1): 0 bits a symbol, the count alone is carried.
+ */
 export const fixed: CoderEntry = { declaration, create: () => coder };
 
 const coder: Coder = {
@@ -39,13 +54,19 @@ const coder: Coder = {
     const width = symbolWidth(setup.alphabetSize);
     const writer = new BitWriter();
     const ledger = new MessageLedger(setup.align);
+    let kernel: PrefixEncoder | undefined;
+    if (setup.alphabetSize <= KERNEL_ALPHABET) {
+      const { symbols, lengths } = equalWords(setup.alphabetSize);
+      kernel = new PrefixEncoder(setup.alphabetSize);
+      kernel.setWords(symbols, lengths, setup.alphabetSize);
+    }
     const pieces = new MessagePieces({
       begin(symbolCount) {
         ledger.framingBits += writeSymbolCount(writer, setup, symbolCount);
       },
       take(symbols, from, to) {
-        writer.reserve(Math.ceil(((to - from) * width) / 8) + 1);
-        for (let i = from; i < to; i++) writer.writeBits(symbols[i], width);
+        if (kernel !== undefined) kernel.encode(writer, symbols, from, to);
+        else for (let i = from; i < to; i++) writer.writeBits(symbols[i], width);
         ledger.writtenBits += (to - from) * width;
         ledger.payloadBits += (to - from) * width;
       },
@@ -64,6 +85,12 @@ const coder: Coder = {
 
   decoder(setup, limits) {
     const width = symbolWidth(setup.alphabetSize);
+    let kernel: PrefixDecoder | undefined;
+    if (setup.alphabetSize <= KERNEL_ALPHABET) {
+      const { symbols, lengths } = equalWords(setup.alphabetSize);
+      kernel = new PrefixDecoder(setup.alphabetSize);
+      kernel.setWords(symbols, lengths, setup.alphabetSize, Number.POSITIVE_INFINITY);
+    }
     return {
       decode(input) {
         const reader = new BitReader(input.bytes);
@@ -78,6 +105,11 @@ const coder: Coder = {
             });
           }
           symbols = growSymbols(symbols, setup.alphabetSize, filled, count);
+          if (kernel !== undefined) {
+            filled = kernel.decode(reader, symbols, filled, filled + count);
+            walk.close(reader.position);
+            continue;
+          }
           for (let i = 0; i < count; i++) {
             const symbol = reader.readBits(width);
             if (symbol >= setup.alphabetSize) {

@@ -4,8 +4,8 @@ import type { SymbolArray } from '../symbols/sequence.ts';
 const LANES_PAY_FROM = 2048;
 
 /**
- * Counts of symbols, in buffers that are used again: `counts` by symbol, and the list of those seen, so that a count of a short message
- * costs nothing for the rest of the alphabet.
+ * Counts of symbols, in buffers that are used again: `counts` by symbol, and the list of those
+ * seen, so that a count of a short message costs nothing for the rest of the alphabet.
  */
 export class SymbolCounts {
   /** By symbol; exact to 2^53. */
@@ -40,7 +40,10 @@ export class SymbolCounts {
     this.seenCount = seenCount;
   }
 
-  /** Four bytes a load, each into counters of its own, so that a run of one byte does not wait for itself. */
+  /**
+   * Four bytes a load, each into counters of its own, so that a run of one byte does not wait for
+   * itself.
+   */
   #addLanes(symbols: Uint8Array, from: number, to: number): void {
     const lanes = this.#lanes;
     lanes.fill(0);

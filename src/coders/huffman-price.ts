@@ -4,7 +4,10 @@ import { SymbolCounts } from './huffman-counts.ts';
 import { huffmanTables } from './huffman-tables.ts';
 import type { Rational } from './parameters.ts';
 
-/** Σ c · log2(total / c) over the symbols seen: the shortest code length with one fixed distribution. */
+/**
+ * Σ c · log2(total / c) over the symbols seen: the shortest code length with one fixed
+ * distribution.
+ */
 export function empiricalBits(counts: SymbolCounts): number {
   let bits = 0;
   for (let i = 0; i < counts.seenCount; i++) {
@@ -15,9 +18,9 @@ export function empiricalBits(counts: SymbolCounts): number {
 }
 
 /**
- * Price of `huffman`: the distribution behind the words, before their lengths are rounded to whole bits. `shipped`: (count · q + p) /
- * (n · q + m · p) of the train counts; `sent`: the frequencies of what each table was fitted to. fit: the
- * empirical order-0 code length of the whole sequence.
+ * Price of `huffman`: the distribution behind the words, before their lengths are rounded to whole
+ * bits. `shipped`: (count · q + p) / (n · q + m · p) of the train counts; `sent`: the frequencies
+ * of what each table was fitted to. fit: the empirical order-0 code length of the whole sequence.
  */
 export function priceHuffman(sequence: SymbolSequence, setup: Setup, added: Rational): Price {
   const { symbols, messageEnds } = sequence;

@@ -14,7 +14,10 @@ export interface HuffmanTables extends Tables {
   readonly counts: Float64Array;
 }
 
-/** The tables of a setup, as tables of `huffman`. Throws BugError when they are missing or not of this alphabet. */
+/**
+ * The tables of a setup, as tables of `huffman`. Throws BugError when they are missing or not of
+ * this alphabet.
+ */
 export function huffmanTables(setup: Setup): HuffmanTables {
   const tables = setup.tables as HuffmanTables | undefined;
   if (tables?.coder !== 'huffman' || tables.counts.length !== setup.alphabetSize) {
@@ -43,7 +46,9 @@ export function addedCount(word: string): Rational {
   return added;
 }
 
-/** Fits prefix codes to counts, again and again in the same buffers; the fit lies in {@link table}. */
+/**
+ * Fits prefix codes to counts, again and again in the same buffers; the fit lies in {@link table}.
+ */
 export class HuffmanFit {
   readonly table = new PrefixTable();
   readonly #fitter = new CodeLengthFitter();
@@ -54,7 +59,9 @@ export class HuffmanFit {
     this.#maxBits = maxBits;
   }
 
-  /** Words for the symbols that occur, by how often they do. Brings `counts.seen` into rising order. */
+  /**
+   * Words for the symbols that occur, by how often they do. Brings `counts.seen` into rising order.
+   */
   fitSeen(counts: SymbolCounts): void {
     counts.sort();
     const count = counts.seenCount;
@@ -113,7 +120,10 @@ export class HuffmanFit {
 /** Rows of a screen that shows the most frequent symbols with their words. */
 const ROWS = 8;
 
-/** Lines for a person: how many words, how long, what the table costs where it is sent, and the shortest few. */
+/**
+ * Lines for a person: how many words, how long, what the table costs where it is sent, and the
+ * shortest few.
+ */
 export function describeHuffman(
   tables: HuffmanTables,
   setup: Setup,

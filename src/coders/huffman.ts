@@ -1,22 +1,10 @@
-import { BitReader } from '../bits/bit-reader.ts';
-import { BitWriter } from '../bits/bit-writer.ts';
-import { CorruptStreamError, InputError } from '../errors/errors.ts';
+import { InputError } from '../errors/errors.ts';
 import { PrefixDecoder } from '../stages/prefix-decoder.ts';
 import { PrefixEncoder } from '../stages/prefix-encoder.ts';
-import { PrefixTable } from '../stages/prefix-table.ts';
-import { newSymbolArray } from '../symbols/sequence.ts';
-import type {
-  Coder,
-  CoderEntry,
-  Declaration,
-  DecodeLimits,
-  Decoder,
-  Encoder,
-  Setup,
-  Tables,
-} from './contract.ts';
+import type { Coder, CoderEntry, Declaration, Setup, Tables } from './contract.ts';
 import { symbolWidth } from './fixed.ts';
-import { SymbolCounts } from './huffman-counts.ts';
+import { sentReader, shippedReader } from './huffman-decoder.ts';
+import { messageEncoder, streamEncoder } from './huffman-encoder.ts';
 import { priceHuffman } from './huffman-price.ts';
 import {
   addedCount,
@@ -26,11 +14,7 @@ import {
   huffmanTables,
   huffmanTrainer,
 } from './huffman-tables.ts';
-import { MessageWalk, writeSymbolCount } from './message-frame.ts';
-import { MessageLedger } from './message-ledger.ts';
-import { MessagePieces, wholeMessages } from './message-pieces.ts';
 import type { ParameterValues, Rational } from './parameters.ts';
-import { growSymbols } from './symbol-buffer.ts';
 
 const declaration: Declaration = {
   name: 'huffman',
@@ -59,8 +43,8 @@ const declaration: Declaration = {
   maxAlphabetSize: 2 ** 24,
   worstCase: 'n · maxbits bits for shipped tables; n · ⌈log2 m⌉ bits and the table for sent ones',
   memory:
-    'encoder 5 bytes a symbol of the alphabet (256 KiB more for bytes in long messages), decoder 5 bytes a word and a table of ' +
-    '16 KiB (bytes) or up to 256 KiB; fitting 60 bytes a symbol',
+    'encoder 5 bytes a symbol (256 KiB more for bytes in long messages); decoder 4 bytes a word ' +
+    'and a table of 32 KiB (bytes) or up to 256 KiB; fitting 60 bytes a symbol',
   source:
     'D. A. Huffman, Proc. IRE 40(9), 1952; limit: L. L. Larmore, D. S. Hirschberg, J. ACM 37(3), 1990',
 };
@@ -68,8 +52,9 @@ const declaration: Declaration = {
 /**
  * Huffman coding of single symbols.
  *
- * `sent`: the table stands before the words of the message it was fitted to; under reset `never` in the first message that has symbols.
- * Where only one symbol occurs its word is empty: the table names it, and its repetitions cost nothing.
+ * `sent`: the table stands before the words of the message it was fitted to; under reset `never` in
+ * the first message that has symbols. Where only one symbol occurs its word is empty: the table
+ * names it, and its repetitions cost nothing.
  */
 export const huffman: CoderEntry = { declaration, create: (values) => createHuffman(values) };
 
@@ -169,130 +154,4 @@ function fitTables(
   if (setup.policy === 'shipped') fit.fitSmoothed(tables.counts, added);
   else fit.fitPresent(tables.counts);
   return fit;
-}
-
-/** One code for the whole unit; a `table` is sent in the first message that has symbols. */
-function streamEncoder(
-  setup: Setup,
-  words: PrefixEncoder,
-  table: PrefixTable | undefined,
-  maxBits: number,
-): Encoder {
-  const writer = new BitWriter();
-  const ledger = new MessageLedger(setup.align);
-  let unsent = table;
-  const pieces = new MessagePieces({
-    begin(symbolCount) {
-      ledger.framingBits += writeSymbolCount(writer, setup, symbolCount);
-      if (unsent !== undefined && symbolCount > 0) {
-        ledger.tableBits += unsent.write(writer, setup.alphabetSize, maxBits);
-        unsent = undefined;
-      }
-    },
-    take(symbols, from, to) {
-      const bits = words.encode(writer, symbols, from, to);
-      ledger.writtenBits += bits;
-      ledger.payloadBits += bits;
-    },
-    end() {
-      ledger.close(writer);
-    },
-  });
-  return {
-    push: (chunk) => pieces.push(chunk),
-    finish: () => {
-      pieces.finish();
-      return ledger.finish(writer);
-    },
-  };
-}
-
-/** Fits a code to each message and sends it there. */
-function messageEncoder(setup: Setup, maxBits: number): Encoder {
-  const writer = new BitWriter();
-  const ledger = new MessageLedger(setup.align);
-  const counts = new SymbolCounts(setup.alphabetSize);
-  const fit = new HuffmanFit(maxBits);
-  const words = new PrefixEncoder(setup.alphabetSize);
-  const pieces = wholeMessages((symbols, from, to) => {
-    ledger.framingBits += writeSymbolCount(writer, setup, to - from);
-    if (to > from) {
-      counts.clear();
-      counts.add(symbols, from, to);
-      fit.fitSeen(counts);
-      const { table } = fit;
-      ledger.tableBits += table.write(writer, setup.alphabetSize, maxBits);
-      words.setWords(table.symbols, table.lengths, table.count);
-      const bits = words.encode(writer, symbols, from, to);
-      ledger.writtenBits += bits;
-      ledger.payloadBits += bits;
-    }
-    ledger.close(writer);
-  });
-  return {
-    push: (chunk) => pieces.push(chunk),
-    finish: () => {
-      pieces.finish();
-      return ledger.finish(writer);
-    },
-  };
-}
-
-function shippedReader(setup: Setup, limits: DecodeLimits, words: PrefixDecoder): Decoder {
-  return { decode: (input) => decodeMessages(input, setup, limits, words, () => {}) };
-}
-
-function sentReader(setup: Setup, limits: DecodeLimits, maxBits: number): Decoder {
-  const table = new PrefixTable();
-  const words = new PrefixDecoder(setup.alphabetSize);
-  const each = setup.reset === 'message';
-  return {
-    decode(input) {
-      let known = false;
-      return decodeMessages(input, setup, limits, words, (reader, symbolCount) => {
-        if (known) return;
-        known = !each;
-        // Each symbol that a table names is coded at least once.
-        const most = each ? symbolCount : limits.maxSymbols;
-        table.read(reader, setup.alphabetSize, maxBits, most);
-        words.setWords(table.symbols, table.lengths, table.count, most);
-      });
-    },
-  };
-}
-
-/** Walks the messages; `prepare` is called for each that has symbols, before its words. */
-function decodeMessages(
-  input: Parameters<Decoder['decode']>[0],
-  setup: Setup,
-  limits: DecodeLimits,
-  words: PrefixDecoder,
-  prepare: (reader: BitReader, symbolCount: number) => void,
-): ReturnType<Decoder['decode']> {
-  const reader = new BitReader(input.bytes);
-  const walk = new MessageWalk(reader, setup, input, limits);
-  let symbols = newSymbolArray(setup.alphabetSize, 0);
-  let filled = 0;
-  for (let count = walk.next(); count >= 0; count = walk.next()) {
-    if (count > 0) {
-      prepare(reader, count);
-      if (count * words.shortestWordBits > reader.limit - reader.position) {
-        throw new CorruptStreamError('a message says it holds more symbols than its bits can', {
-          bitOffset: reader.position,
-          got: `${count} symbols of ${words.shortestWordBits} bits or more`,
-        });
-      }
-      symbols = growSymbols(symbols, setup.alphabetSize, filled, count);
-      filled = words.decode(reader, symbols, filled, filled + count);
-    }
-    walk.close(reader.position);
-  }
-  return {
-    sequence: {
-      alphabetSize: setup.alphabetSize,
-      symbols: symbols.subarray(0, filled),
-      messageEnds: walk.messageEnds,
-    },
-    bitsConsumed: reader.position,
-  };
 }

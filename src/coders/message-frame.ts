@@ -82,6 +82,8 @@ export class MessageWalk {
    */
   open(): boolean {
     if (this.#index === this.messageEnds.length) return false;
+    const { startOf } = this.#input;
+    if (startOf !== undefined) this.#reader.seek(startOf(this.#index, this.#reader.position));
     if (this.#setup.lengths === 'link')
       this.#reader.setLimit(this.#input.messageEndsBits![this.#index]);
     return true;

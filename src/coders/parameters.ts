@@ -4,7 +4,9 @@ import { nearestWord } from '../errors/nearest.ts';
 /**
  * How a parameter is declared.
  * - `integer`: min … max; a candidate may give a range `a..b`.
- * - `word`: one of `words`; a word that ends in `:X` takes a positive rational after the colon (`add:1/256`, `add:0.05`).
+ * - `word`: one of `words`; a word that ends in `:X` takes a positive rational after the colon (`add:1/256`, `add:0.05`). A
+ *   `bare` one is written without its key.
+ * - `text`: of a form that the coder reads itself; left out unless given. It holds no comma and no `=`.
  */
 export type ParameterDeclaration =
   | {
@@ -22,6 +24,16 @@ export type ParameterDeclaration =
       readonly kind: 'word';
       readonly words: readonly string[];
       readonly standard: string;
+      readonly bare?: boolean;
+      readonly summary: string;
+    }
+  | {
+      readonly key: string;
+      readonly kind: 'text';
+      /** How it is written, in words. */
+      readonly form: string;
+      readonly example: string;
+      readonly standard?: undefined;
       readonly summary: string;
     };
 
@@ -89,20 +101,19 @@ function checkWord(
 /**
  * Values of every declared parameter from the texts a candidate gives, defaults filled in. A parameter that is `optional`
  * and not given is left out.
+ * @param otherKeys  keys that every coder takes, for the hint when a key is unknown
  * @throws InputError naming the key, what was expected and the nearest key
  */
 export function resolveParameters(
   coder: string,
   declarations: readonly ParameterDeclaration[],
   given: Readonly<Record<string, string>>,
+  otherKeys: readonly string[] = [],
 ): ParameterValues {
   const values: Record<string, ParameterValue> = {};
   for (const key of Object.keys(given)) {
     if (declarations.some((d) => d.key === key)) continue;
-    const near = nearestWord(
-      key,
-      declarations.map((d) => d.key),
-    );
+    const near = nearestWord(key, [...declarations.map((d) => d.key), ...otherKeys]);
     throw new InputError(`${coder} has no parameter ${key}`, {
       coder,
       key,
@@ -113,6 +124,11 @@ export function resolveParameters(
   }
   for (const declaration of declarations) {
     const text = given[declaration.key];
+    if (declaration.kind === 'text') {
+      if (text === '') refuse(coder, declaration.key, declaration.form, 'nothing');
+      if (text !== undefined) values[declaration.key] = text;
+      continue;
+    }
     if (declaration.kind === 'word') {
       values[declaration.key] =
         text === undefined ? declaration.standard : checkWord(coder, declaration, text);
@@ -133,7 +149,10 @@ export function resolveParameters(
   return values;
 }
 
-/** `key=value` of every parameter that differs from its default, in declared order; parameters without default always. */
+/**
+ * `key=value`, or the bare word, of every parameter that differs from its default, in declared order; parameters without
+ * default always.
+ */
 export function writeParameters(
   declarations: readonly ParameterDeclaration[],
   values: ParameterValues,
@@ -142,7 +161,8 @@ export function writeParameters(
   for (const declaration of declarations) {
     const value = values[declaration.key];
     if (value === undefined || value === declaration.standard) continue;
-    parts.push(`${declaration.key}=${value}`);
+    const bare = declaration.kind === 'word' && declaration.bare === true;
+    parts.push(bare ? String(value) : `${declaration.key}=${value}`);
   }
   return parts.join(',');
 }

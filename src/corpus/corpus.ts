@@ -20,6 +20,8 @@ export interface CorpusSpec {
   readonly alphabet?: number;
   /** Quantisation step of a numeric column. */
   readonly step?: number;
+  /** How the candidate `fields` codes each named field of the record: see symbols/field-choice.ts. */
+  readonly fields?: Readonly<Record<string, string>>;
 }
 
 export interface CorpusFile {

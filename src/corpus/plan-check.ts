@@ -1,7 +1,13 @@
 import type { z } from 'zod';
 import { InputError, NotYetError } from '../errors/errors.ts';
 import { nearestWord } from '../errors/nearest.ts';
-import { parseRecordField, type RecordField, type RecordShape } from '../symbols/record.ts';
+import { checkFieldMap } from '../symbols/field-choice.ts';
+import {
+  checkFieldsApart,
+  parseRecordField,
+  type RecordField,
+  type RecordShape,
+} from '../symbols/record.ts';
 import { parseSymbolTaker } from '../symbols/takers/registry.ts';
 import type { CorpusSpec } from './corpus.ts';
 import { checkIntake } from './intake.ts';
@@ -128,10 +134,16 @@ function readCorpusSpec(
     ...(written.lengths === undefined ? {} : { lengths: written.lengths }),
     ...(written.alphabet === undefined ? {} : { alphabet: written.alphabet }),
     ...(written.step === undefined ? {} : { step: written.step }),
+    ...(written.fields === undefined ? {} : { fields: written.fields }),
   };
   const symbolsPath = [...path, 'symbols'];
   collect(document, faults, symbolsPath, () => parseSymbolTaker(spec.symbols));
   collect(document, faults, [...path, 'messages'], () => parseMessageRule(spec.messages));
+  for (const name of Object.keys(written.fields ?? {})) {
+    collect(document, faults, [...path, 'fields', name], () =>
+      checkFieldMap(record, { [name]: written.fields![name] }),
+    );
+  }
   // Only sound parts can be held against each other.
   if (faults.length === before) collect(document, faults, symbolsPath, () => checkIntake(spec));
   return spec;
@@ -151,6 +163,7 @@ function readRecord(
     );
     if (field !== undefined) fields.push(field);
   }
+  collect(document, faults, [...path, 'fields'], () => checkFieldsApart(fields));
   return { bytes: written.bytes, fields };
 }
 

@@ -23,15 +23,10 @@ const LATER: readonly Later[] = [
   { path: 'budget' },
   { path: 'sample', meanwhile: 'Name a smaller part of the data under files.' },
   { path: 'memory' },
-  { path: 'loss' },
   { path: 'damage' },
   { path: 'gate' },
   { path: 'check', when: (value) => value === 'crc32', meanwhile: 'Write check: none.' },
   { path: 'corpora.*.weight' },
-  {
-    path: 'corpora.*.fields',
-    meanwhile: 'Fields of a fixed record are named under record.fields.',
-  },
   {
     path: 'split.by',
     when: (value) => value === 'unit',
@@ -39,20 +34,14 @@ const LATER: readonly Later[] = [
   },
   { path: 'split.folds', meanwhile: 'One split of split.train is made.' },
   {
-    path: 'reset.*',
-    when: (value) => typeof value === 'string' && value.includes('*'),
-    meanwhile: 'Use message, file or never.',
-  },
-  {
     path: 'timing.pacer',
     when: (value) => value !== 'deflate-huffman',
     meanwhile: 'Use deflate-huffman.',
   },
   {
     path: 'candidates.*',
-    when: (value) =>
-      typeof value === 'string' && /[:,]\s*(after|stored|tables_in_set)\s*=/.test(value),
-    meanwhile: 'The keys after, stored and tables_in_set come later.',
+    when: (value) => typeof value === 'string' && /[:,]\s*tables_in_set\s*=/.test(value),
+    meanwhile: 'The key tables_in_set comes later.',
   },
 ];
 

@@ -58,6 +58,7 @@ function keysOf(shape: z.ZodRawShape): string {
 
 const COUNT = wholeNumber(1, 2 ** 31);
 const SHARE = number(0, 1);
+const LOSS = 'a share of messages lost, above 0 and below 1';
 const BYTES = pattern(/^\d+(\.\d+)? ?([kKMGT]i?)?B$/, 'a size such as 512MB');
 const RESET = pattern(
   /^(message|file|never|message\*[1-9]\d{0,9})$/,
@@ -91,7 +92,11 @@ export const corpusSchema = object({
   lengths: oneOf('known', 'link', 'sent').optional(),
   alphabet: wholeNumber(1, MAX_ALPHABET_SIZE).optional(),
   step: positive().optional(),
-  fields: z.record(z.string(), z.string(), { error: 'names of fields' }).optional(),
+  fields: z
+    .record(z.string(), text('transform or transform/context, as in delta/last'), {
+      error: 'names of fields, each with its transform, as in delta/last',
+    })
+    .optional(),
   weight: positive().optional(),
 });
 
@@ -170,7 +175,9 @@ export const planSchema = object({
   budget: object({ cell_seconds: positive().optional(), cell_memory: BYTES.optional() }).optional(),
   sample: object({ every: COUNT, block: BYTES.optional() }).optional(),
   memory: BYTES.optional(),
-  loss: object({ rate: SHARE }).optional(),
+  loss: object({
+    rate: z.number({ error: LOSS }).gt(0, { error: LOSS }).lt(1, { error: LOSS }),
+  }).optional(),
   damage: object({ flip: SHARE, seed: wholeNumber(0, 2 ** 32 - 1).optional() }).optional(),
   gate: object({
     allow: object({ total: GROWTH.optional(), each_file: GROWTH.optional() }),

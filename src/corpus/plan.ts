@@ -23,7 +23,9 @@ export interface Plan {
   /** Line of each candidate in the file. */
   readonly candidateLines: readonly number[];
   readonly tables: readonly ('shipped' | 'sent' | 'learned' | 'primed')[];
-  readonly reset: readonly ('message' | 'file' | 'never')[];
+  readonly reset: readonly ('message' | 'file' | 'never' | `message*${number}`)[];
+  /** Share of messages lost on the way, 0 … 1, where the plan gives one. */
+  readonly lossRate?: number;
   readonly align: 1 | 8 | 16 | 32 | 64;
   readonly check: 'none';
   readonly timing: { readonly repeats: number; readonly pacer: 'deflate-huffman' };
@@ -106,6 +108,7 @@ function planOf(
     tables: written.tables ?? USUAL_TABLES,
     reset: (written.reset ?? ['message']) as Plan['reset'],
     align: written.align ?? 8,
+    ...(written.loss === undefined ? {} : { lossRate: written.loss.rate }),
     check: 'none',
     timing: { repeats: timing.repeats ?? 20, pacer: 'deflate-huffman' },
     chosen,

@@ -1,11 +1,24 @@
 import type { Coder } from '../coders/contract.ts';
-import { type ContextScope, countContexts } from '../models/context-counts.ts';
+import { type ContextScope, countContexts, type OrderCounts } from '../models/context-counts.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
+import { chaoShen } from './chao-shen.ts';
 import { estimableOrders } from './estimable.ts';
-import { simpleInterval } from './interval.ts';
+import { grassberger } from './grassberger.ts';
+import { correctedInterval } from './interval.ts';
+import { trustIntervals } from './interval-trust.ts';
+import { intervalUnits } from './interval-units.ts';
 import { millerMadow } from './miller-madow.ts';
+import { nsbEntropyBits } from './nsb.ts';
 import { plugIn } from './plug-in.ts';
 import { usefulOrders } from './useful.ts';
+
+/** What further estimators say of the same counts, in bits per symbol. */
+export interface FurtherEstimates {
+  readonly grassberger: number;
+  readonly chaoShen: number;
+  /** At order 0 only, with the alphabet's size as the number of cells. */
+  readonly nsb?: number;
+}
 
 /** Entropy given k predecessors. Rates are in bits per symbol. */
 export interface OrderEntropy {
@@ -17,14 +30,21 @@ export interface OrderEntropy {
   readonly plugIn: number;
   /** Plug-in plus the Miller–Madow term. */
   readonly corrected: number;
-  /** 95 % interval around `corrected`; keeps its promise only where the order is estimable. */
+  /** 95 % interval around `corrected`; keeps its promise where it is trusted. */
   readonly low: number;
   readonly high: number;
+  /** How many of what were resampled for it, as in "64 blocks of messages". */
+  readonly intervalUnit: string;
+  readonly intervalTrusted: boolean;
+  /** Half a sentence. */
+  readonly intervalReason: string;
   readonly estimable: boolean;
   readonly estimableReason: string;
   /** Undefined: not tested. */
   readonly useful: boolean | undefined;
   readonly usefulReason: string;
+  /** Only where asked for. */
+  readonly estimates?: FurtherEstimates;
 }
 
 export interface EntropyByOrder {
@@ -40,6 +60,12 @@ export interface EntropyByOrder {
 export interface EntropyOptions {
   readonly upto: number;
   readonly contexts: ContextScope;
+  /** The index one past each file's last symbol; where there are many files, intervals resample them. */
+  readonly fileEnds?: Uint32Array;
+  /** The source is known to change along the data, so that no interval is to be trusted. */
+  readonly changes?: boolean;
+  /** Also the further estimators; they take no second pass over the data. */
+  readonly all?: boolean;
   /** Also test which orders are useful; costs far more time than the rest. */
   readonly useful?: boolean;
   /** For that test; back-off `arith` when absent. */
@@ -54,9 +80,11 @@ export interface EntropyOptions {
  */
 export function entropyByOrder(sequence: SymbolSequence, options: EntropyOptions): EntropyByOrder {
   const { upto, contexts, progress } = options;
+  const units = intervalUnits(sequence, options.fileEnds);
   const counts = countContexts(sequence, {
     upto,
     contexts,
+    blocks: units.ends,
     ...(options.memoryBytes === undefined ? {} : { memoryBytes: options.memoryBytes }),
     progress: (done, total) => progress?.('count', done, total),
   });
@@ -71,20 +99,31 @@ export function entropyByOrder(sequence: SymbolSequence, options: EntropyOptions
           progress: (done, total) => progress?.('useful', done, total),
         })
       : undefined;
+  const intervals = counts.map((c) =>
+    correctedInterval(c, millerMadow.estimate(c), sequence.alphabetSize, units),
+  );
+  const trust = trustIntervals(
+    intervals.map((interval, k) => ({ k, estimable: verdicts[k].estimable, ...interval })),
+    options.changes === true,
+  );
   const orders = counts.map((c, k): OrderEntropy => {
-    const corrected = millerMadow.estimate(c);
+    const { low, high, intervalUnit } = intervals[k];
     return {
       k,
       positions: c.positions,
       contexts: c.contexts,
       pairs: c.pairs,
       plugIn: plugIns[k],
-      corrected,
-      ...simpleInterval(c, corrected, sequence.alphabetSize),
+      corrected: millerMadow.estimate(c),
+      low,
+      high,
+      intervalUnit,
+      ...trust[k],
       estimable: verdicts[k].estimable,
       estimableReason: verdicts[k].reason,
       useful: useful?.[k].useful,
       usefulReason: useful?.[k].reason ?? 'not tested: not asked for',
+      ...(options.all === true ? { estimates: furtherEstimates(c, sequence.alphabetSize) } : {}),
     };
   });
   return {
@@ -93,5 +132,13 @@ export function entropyByOrder(sequence: SymbolSequence, options: EntropyOptions
     alphabetSize: sequence.alphabetSize,
     orders,
     largestEstimable: orders.findLastIndex((order) => order.estimable),
+  };
+}
+
+function furtherEstimates(counts: OrderCounts, alphabetSize: number): FurtherEstimates {
+  return {
+    grassberger: grassberger.estimate(counts),
+    chaoShen: chaoShen.estimate(counts),
+    ...(counts.order === 0 ? { nsb: nsbEntropyBits(counts.pairTallies, alphabetSize) } : {}),
   };
 }

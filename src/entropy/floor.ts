@@ -2,6 +2,7 @@ import { BugError } from '../errors/errors.ts';
 import type { ContextScope } from '../models/context-counts.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { OrderEntropy } from './entropy-by-order.ts';
+import type { MatchLengthEntropy } from './match-lengths.ts';
 
 /** A rate that a real, verified decoder reaches. */
 export interface Ceiling {
@@ -26,48 +27,67 @@ export interface Floor {
 /** What the rule needs of an order. */
 type FloorOrder = Pick<OrderEntropy, 'k' | 'corrected' | 'low' | 'estimable'>;
 
+/** What the rule needs of match lengths. */
+type FloorMatches = Pick<MatchLengthEntropy, 'bitsPerSymbol' | 'low' | 'high' | 'valid'>;
+
 /**
- * The floor by its rule: high is the lowest ceiling; the point is the least of high and the corrected entropy at the
- * largest estimable order; low is the least low end of the intervals of estimable orders, and never above the point.
- * Where no order is estimable the point is the ceiling. There, and where the ceiling lies below the corrected entropy,
- * the intervals of estimable orders say nothing of how far down the rate may lie: those of all orders counted stand in,
- * which too few data can only pull down.
+ * The floor by its rule: high is the lowest ceiling; the point is the least of high, the corrected entropy at the largest
+ * estimable order, and the match-length estimate; low is the least low end of the intervals of estimable orders and of
+ * match lengths, and never above the point.
+ *
+ * Match lengths give the point only where their whole interval lies below the corrected entropy: the least of two
+ * estimates of one thing would else lie below it by chance, and counts are the sharper of the two.
+ * Where high is the point, and no interval reaches below it, nothing says how far down the rate may lie: the intervals of
+ * all orders counted stand in, which too few data can only pull down.
  * @param ceilings  at least one; a code of equal lengths always exists
+ * @param matches   absent or not valid: not used
  */
 export function floorOf({
   orders,
   ceilings,
+  matches,
 }: {
   readonly orders: readonly FloorOrder[];
   readonly ceilings: readonly Ceiling[];
+  readonly matches?: FloorMatches | undefined;
 }): Floor {
   if (ceilings.length === 0) throw new BugError('a floor was asked for without any ceiling');
   const lowest = ceilings.reduce((a, b) => (b.bitsPerSymbol < a.bitsPerSymbol ? b : a));
   const high = lowest.bitsPerSymbol;
   const estimable = orders.filter((order) => order.estimable);
   const largest = estimable.at(-1);
-  if (largest === undefined) {
-    return {
-      point: high,
-      low: leastLow(orders, high),
-      high,
-      method: `what ${lowest.name} reaches, since no order is estimable`,
-      cut: false,
-      order: -1,
-    };
-  }
-  const cut = high < largest.corrected;
-  const point = Math.min(high, largest.corrected);
+  const counted = largest?.corrected ?? Number.POSITIVE_INFINITY;
+  const valid = matches?.valid === true ? matches : undefined;
+  const matched =
+    valid !== undefined && valid.high < counted ? valid.bitsPerSymbol : Number.POSITIVE_INFINITY;
+  const point = Math.min(high, counted, matched);
+  let low = Math.min(leastLow(estimable, point), valid?.low ?? point);
+  if (point === high && low === point) low = leastLow(orders, point);
   return {
     point,
-    low: leastLow(cut ? orders : estimable, point),
+    low,
     high,
-    method: cut
-      ? `what ${lowest.name} reaches, below the corrected entropy of order ${largest.k}`
-      : `corrected entropy of order ${largest.k} (Miller–Madow) with a simple interval`,
-    cut,
-    order: largest.k,
+    method: methodOf(lowest, largest?.k, point, counted, matched),
+    cut: largest !== undefined && high < counted,
+    order: largest?.k ?? -1,
   };
+}
+
+function methodOf(
+  lowest: Ceiling,
+  order: number | undefined,
+  point: number,
+  counted: number,
+  matched: number,
+): string {
+  if (order !== undefined && point === counted) {
+    return `corrected entropy of order ${order} (Miller–Madow)`;
+  }
+  const beyond =
+    order === undefined
+      ? ', since no order is estimable'
+      : `, below the corrected entropy of order ${order}`;
+  return point === matched ? `match lengths${beyond}` : `what ${lowest.name} reaches${beyond}`;
 }
 
 function leastLow(orders: readonly FloorOrder[], point: number): number {

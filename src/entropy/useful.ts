@@ -1,9 +1,10 @@
 import { parseCandidate } from '../coders/candidate.ts';
-import type { Coder, Setup } from '../coders/contract.ts';
+import type { Coder } from '../coders/contract.ts';
 import { BitassayError } from '../errors/errors.ts';
 import type { ContextScope } from '../models/context-counts.ts';
 import { ratioStandardError } from '../statistics/ratio-error.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
+import { cutIntoBlocks, heldOutBits, totalOf } from './held-out.ts';
 
 /** Blocks of each half. */
 const BLOCKS = 64;
@@ -14,6 +15,13 @@ export interface UsefulVerdict {
   readonly useful: boolean | undefined;
   /** What was found, or why nothing was tested; half a sentence. */
   readonly reason: string;
+  /** Bits per symbol that the order saves on held-out data, and the standard error of that; absent where not tested. */
+  readonly saving?: {
+    readonly rate: number;
+    readonly standardError: number;
+    /** Symbols of the half that was priced. */
+    readonly symbols: number;
+  };
 }
 
 export interface UsefulOptions {
@@ -43,25 +51,33 @@ export function usefulOrders(sequence: SymbolSequence, options: UsefulOptions): 
     while (verdicts.length <= upto) verdicts.push({ useful: undefined, reason });
     return verdicts;
   };
-  const halves = cutInHalves(sequence, contexts);
-  if (halves === undefined) return stopWith('not tested: too few symbols for two halves of blocks');
-  const { second, blockSymbols } = halves;
+  const { length } = sequence.symbols;
+  if (length < 2 * BLOCKS) return stopWith('not tested: too few symbols for two halves of blocks');
+  const middle = Math.floor(length / 2);
+  const first = cutIntoBlocks(sequence, 0, middle, BLOCKS, contexts).sequence;
+  const second = cutIntoBlocks(sequence, middle, length, BLOCKS, contexts);
+  const { blockSymbols } = second;
+  const symbols = length - middle;
   const perSymbol = Math.log2(sequence.alphabetSize);
-  let before: Float64Array = blockSymbols.map((symbols) => symbols * perSymbol);
+  let before: Float64Array = blockSymbols.map((count) => count * perSymbol);
   let uselessInRow = 0;
   for (let order = 0; order <= upto; order++) {
     let bits: Float64Array;
     try {
-      bits = heldOutBits(coderOf(order), halves);
+      bits = heldOutBits(coderOf(order), first, second);
     } catch (error) {
       if (!(error instanceof BitassayError)) throw error;
       return stopWith(`not tested: order ${order} cannot be priced, ${error.message}`);
     }
     const saved = before.map((value, b) => value - bits[b]);
-    const rate = total(saved) / second.symbols.length;
+    const rate = totalOf(saved) / symbols;
     const error = ratioStandardError(saved, blockSymbols) ?? Number.POSITIVE_INFINITY;
     const useful = rate > error;
-    verdicts.push({ useful, reason: savingText(order, rate, error) });
+    verdicts.push({
+      useful,
+      reason: savingText(order, rate, error),
+      saving: { rate, standardError: error, symbols },
+    });
     progress?.(order + 1, upto + 1);
     before = bits;
     uselessInRow = useful ? 0 : uselessInRow + 1;
@@ -78,81 +94,4 @@ function savingText(order: number, rate: number, error: number): string {
 
 function backOffCoder(order: number): Coder {
   return parseCandidate(`arith:order=${order}`).create();
-}
-
-function total(values: Float64Array): number {
-  let sum = 0;
-  for (let i = 0; i < values.length; i++) sum += values[i];
-  return sum;
-}
-
-/** Both halves as messages, and which block each message of the second half belongs to. */
-interface Halves {
-  readonly first: SymbolSequence;
-  readonly second: SymbolSequence;
-  readonly blockOf: Uint32Array;
-  /** Symbols of each block of the second half; all above 0. */
-  readonly blockSymbols: Float64Array;
-}
-
-/** Undefined for fewer symbols than blocks. */
-function cutInHalves(sequence: SymbolSequence, contexts: ContextScope): Halves | undefined {
-  const { symbols, alphabetSize, messageEnds } = sequence;
-  const { length } = symbols;
-  if (length < 2 * BLOCKS) return undefined;
-  const blockEnd = (block: number): number => Math.floor(((block + 1) * length) / (2 * BLOCKS));
-  const middle = blockEnd(BLOCKS - 1);
-  const pieces = contexts === 'message' ? messageEnds : new Uint32Array(0);
-  const firstEnds: number[] = [];
-  const secondEnds: number[] = [];
-  const blockOf: number[] = [];
-  const blockSymbols = new Float64Array(BLOCKS);
-  let piece = 0;
-  let from = 0;
-  for (let block = 0; block < 2 * BLOCKS; block++) {
-    const stop = blockEnd(block);
-    while (from < stop) {
-      while (piece < pieces.length && pieces[piece] <= from) piece++;
-      const to = piece < pieces.length ? Math.min(stop, pieces[piece]) : stop;
-      if (block < BLOCKS) firstEnds.push(to);
-      else {
-        secondEnds.push(to - middle);
-        blockOf.push(block - BLOCKS);
-        blockSymbols[block - BLOCKS] += to - from;
-      }
-      from = to;
-    }
-  }
-  return {
-    first: {
-      alphabetSize,
-      symbols: symbols.subarray(0, middle),
-      messageEnds: Uint32Array.from(firstEnds),
-    },
-    second: {
-      alphabetSize,
-      symbols: symbols.subarray(middle),
-      messageEnds: Uint32Array.from(secondEnds),
-    },
-    blockOf: Uint32Array.from(blockOf),
-    blockSymbols,
-  };
-}
-
-/** Ideal code length of each block of the second half, by a model that the first half trained. */
-function heldOutBits(coder: Coder, halves: Halves): Float64Array {
-  const setup: Setup = {
-    policy: 'shipped',
-    alphabetSize: halves.first.alphabetSize,
-    reset: 'message',
-    lengths: 'known',
-    align: 1,
-  };
-  coder.check?.(setup);
-  const trainer = coder.trainer!(setup);
-  trainer.push(halves.first);
-  const { messageIdealBits } = coder.price!(halves.second, { ...setup, tables: trainer.finish() });
-  const bits = new Float64Array(BLOCKS);
-  for (let m = 0; m < messageIdealBits.length; m++) bits[halves.blockOf[m]] += messageIdealBits[m];
-  return bits;
 }

@@ -45,7 +45,7 @@ export class CorruptStreamError extends BitassayError {}
 /** Stopped on purpose at a stated limit (symbols, steps, memory); the result is unknown. */
 export class LimitError extends BitassayError {}
 
-/** The machine is in the way: disk full, no permission, out of memory. */
+/** The machine is in the way: disk full, file system read-only, out of memory. */
 export class EnvironmentError extends BitassayError {}
 
 /** Our own bug: an invariant of this program does not hold. */

@@ -55,7 +55,7 @@ export function listCells(
         const own: readonly Reset[] =
           policy === 'shipped' || policy === 'none' ? ['message'] : resets;
         for (const reset of own) {
-          if (own === resets && !candidate.declaration.resets.includes(reset)) {
+          if (own === resets && !declaresReset(candidate, reset)) {
             undeclared++;
             continue;
           }
@@ -79,6 +79,13 @@ export function listCells(
     }
   }
   return { cells, undeclared };
+}
+
+/** Coders that can run on over message ends at all can also forget every R messages. */
+function declaresReset(candidate: Candidate, reset: Reset): boolean {
+  const declared = candidate.declaration.resets;
+  if (reset === 'message' || reset === 'file' || reset === 'never') return declared.includes(reset);
+  return declared.includes('never');
 }
 
 /** The reset within a unit: the harness runs reset `file` as one unit a file. */

@@ -1,4 +1,5 @@
-import type { Lengths } from '../coders/contract.ts';
+import type { Lengths, Reset } from '../coders/contract.ts';
+import type { RecordShape } from '../symbols/record.ts';
 import { type SymbolSequence, sliceMessages } from '../symbols/sequence.ts';
 
 /** One corpus as cells see it: what trains, what is coded, and what both ends know of it. */
@@ -9,6 +10,10 @@ export interface CorpusData {
   readonly messagesAs: string;
   readonly lengths: Lengths;
   readonly alphabetSize: number;
+  /** Where the symbols are the bytes of records. */
+  readonly record?: RecordShape;
+  /** How the fields of the record are coded, where the plan says so. */
+  readonly fields?: Readonly<Record<string, string>>;
   /** Source bytes behind all symbols, train and test. */
   readonly sourceBytes: number;
   /** Absent where nothing trains: then `test` is all the data. */
@@ -29,9 +34,19 @@ export interface CorpusData {
   readonly repeated?: { readonly share: number; readonly mask: Uint8Array };
 }
 
-/** The pieces of the test part that are coded as one unit each: one a file under reset `file`, else one in all. */
-export function unitsOf(corpus: CorpusData, reset: 'message' | 'file' | 'never'): SymbolSequence[] {
-  if (reset !== 'file') return [corpus.test];
+/**
+ * The pieces of the test part that are coded as one unit each: one a file under reset `file`, R messages under `message*R`,
+ * else one in all.
+ */
+export function unitsOf(corpus: CorpusData, reset: Reset): SymbolSequence[] {
+  if (reset === 'message' || reset === 'never') return [corpus.test];
+  if (reset !== 'file') {
+    const size = Number(reset.slice('message*'.length));
+    const count = corpus.test.messageEnds.length;
+    return Array.from({ length: Math.ceil(count / size) }, (_, i) =>
+      sliceMessages(corpus.test, i * size, Math.min(count, (i + 1) * size)),
+    );
+  }
   const units: SymbolSequence[] = [];
   let from = 0;
   for (const file of corpus.testFiles) {

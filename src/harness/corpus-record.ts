@@ -10,6 +10,7 @@ export function corpusRecordOf(corpus: CorpusData): CorpusRecord {
     messages_as: corpus.messagesAs,
     lengths: corpus.lengths,
     alphabet_size: corpus.alphabetSize,
+    ...(corpus.record === undefined ? {} : { record_bytes: corpus.record.bytes }),
     source_bytes: corpus.sourceBytes,
     symbol_count: corpus.test.symbols.length,
     message_count: corpus.test.messageEnds.length,

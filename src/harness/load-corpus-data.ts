@@ -17,7 +17,7 @@ export async function loadCorpusData(
   if (rule === undefined) {
     const corpus = await loadCorpus(spec, baseFolder);
     const { alphabet } = corpus;
-    const data = { ...factsOf(corpus, corpus.fileEnds), test: corpus.sequence };
+    const data = { ...factsOf(corpus, corpus.fileEnds, spec), test: corpus.sequence };
     if (alphabet.kind !== 'map') return data;
     const writer = new BitWriter();
     const bits = writeAlphabetMap(writer, alphabet.map);
@@ -25,14 +25,19 @@ export async function loadCorpusData(
   }
   const { corpus, parts } = await loadSplitCorpus(spec, baseFolder, rule);
   return {
-    ...factsOf(corpus, parts.testFileEnds),
+    ...factsOf(corpus, parts.testFileEnds, spec),
     train: parts.train,
     test: parts.test,
     repeated: { share: parts.repeatedShare, mask: parts.repeated },
   };
 }
 
-function factsOf(corpus: Corpus, fileEnds: Uint32Array): Omit<CorpusData, 'test'> {
+function factsOf(
+  corpus: Corpus,
+  fileEnds: Uint32Array,
+  spec: CorpusSpec,
+): Omit<CorpusData, 'test'> {
+  const takesBytes = corpus.symbolsAs === 'bytes' && corpus.alphabet.kind === 'natural';
   return {
     name: corpus.name,
     sha256: corpus.sha256,
@@ -40,6 +45,8 @@ function factsOf(corpus: Corpus, fileEnds: Uint32Array): Omit<CorpusData, 'test'
     messagesAs: corpus.messagesAs,
     lengths: corpus.lengths,
     alphabetSize: corpus.sequence.alphabetSize,
+    ...(takesBytes && corpus.record !== undefined ? { record: corpus.record } : {}),
+    ...(spec.fields === undefined ? {} : { fields: spec.fields }),
     sourceBytes: corpus.sourceBytes,
     testFiles: corpus.files.map(({ path, sha256 }, i) => ({
       path,

@@ -48,7 +48,9 @@ export async function requestOf(plan: Plan): Promise<RunRequest> {
     policies: plan.tables,
     resets: plan.reset,
     align: plan.align,
+    ...(plan.lossRate === undefined ? {} : { lossRate: plan.lossRate }),
     split: describeSplit(rule),
+    ageing: rule !== undefined && rule.order === 'in_time',
     timing: { repeats: plan.timing.repeats, seconds: TIMING_SECONDS },
   };
 }

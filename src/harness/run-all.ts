@@ -1,7 +1,8 @@
-import { bitAccount } from '../account/bit-account.ts';
 import type { Candidate } from '../coders/candidate.ts';
 import type { Reset, TablePolicy } from '../coders/contract.ts';
-import { type Cell, decodesAlone, listCells } from './cells.ts';
+import { ageingOf, ageingRecordOf } from './ageing.ts';
+import { cellRecordOf } from './cell-record.ts';
+import { type Cell, listCells } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import { CorpusFloors } from './corpus-floors.ts';
 import { corpusRecordOf } from './corpus-record.ts';
@@ -20,8 +21,12 @@ export interface RunRequest {
   readonly policies: readonly TablePolicy[];
   readonly resets: readonly Reset[];
   readonly align: number;
+  /** Share of messages lost on the way; absent: not asked. */
+  readonly lossRate?: number;
   /** How train and test were parted, in words. */
   readonly split: string;
+  /** Train lies before test in time: say how shipped tables age. */
+  readonly ageing?: boolean;
   /** Absent: nothing is timed. */
   readonly timing?: { readonly repeats: number; readonly seconds: number };
   /** Only the cells whose id contains this text. */
@@ -61,6 +66,7 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
   const messages = new Map<string, MessagePairs>();
   const cellRecords: CellRecord[] = [];
   const entropy: RunRecord['entropy'] = [];
+  const ageing: NonNullable<RunRecord['ageing']> = [];
   let cellsDone = 0;
   let partial = false;
   const pauseFor = (current: string) =>
@@ -102,13 +108,19 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
     entropy.push(...floors.records());
     for (const result of results) {
       const speed = speeds.get(result.cell.id);
-      cellRecords.push(recordOf(result, corpus, floors, speed));
+      cellRecords.push(cellRecordOf(result, corpus, floors, speed, request.lossRate));
       if (!('failure' in result)) {
         messages.set(result.cell.id, {
           bits: result.messageBits,
           symbols: Float64Array.from(symbolCountsOf(corpus.test)),
         });
       }
+    }
+    const shipped = partial || !request.ageing ? undefined : bestShipped(results);
+    if (shipped !== undefined) {
+      hooks.progress?.({ cellsDone, cellsTotal: cells.length, current: `${corpus.name}: ageing` });
+      const found = ageingOf(shipped, corpus, request.align);
+      if (found !== undefined) ageing.push(ageingRecordOf(corpus.name, found));
     }
   }
   hooks.progress?.({ cellsDone, cellsTotal: cells.length, current: '' });
@@ -123,104 +135,26 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
         split: request.split,
         tables: [...request.policies],
         resets: [...request.resets],
+        ...(request.lossRate === undefined ? {} : { loss_rate: request.lossRate }),
       },
       environment: describeEnvironment(),
       corpora: request.corpora.map(corpusRecordOf),
       entropy,
       cells: cellRecords,
+      ...(ageing.length === 0 ? {} : { ageing }),
       undeclared,
       partial,
     },
   };
 }
 
-function quantile(sorted: Float64Array, share: number): number {
-  return sorted[Math.min(sorted.length - 1, Math.max(0, Math.ceil(share * sorted.length) - 1))];
-}
-
-function messageBytes(bits: Float64Array): NonNullable<CellRecord['message_bytes']> {
-  const bytes = Float64Array.from(bits, (b) => b / 8).sort();
-  let sum = 0;
-  for (const value of bytes) sum += value;
-  return {
-    mean: sum / bytes.length,
-    p50: quantile(bytes, 0.5),
-    p95: quantile(bytes, 0.95),
-    p99: quantile(bytes, 0.99),
-    max: bytes[bytes.length - 1],
-  };
-}
-
-function filesOf(bits: CellBits, corpus: CorpusData): NonNullable<CellRecord['files']> {
-  let message = 0;
-  let symbolsBefore = 0;
-  return corpus.testFiles.map((file) => {
-    let carried = 0;
-    for (; message < file.messageEnd; message++) carried += bits.messageBits[message];
-    const symbolEnd = message === 0 ? 0 : corpus.test.messageEnds[message - 1];
-    const symbolCount = symbolEnd - symbolsBefore;
-    symbolsBefore = symbolEnd;
-    return { sha256: file.sha256, symbol_count: symbolCount, coded_bytes: Math.ceil(carried / 8) };
-  });
-}
-
-function rateWithoutRepeats(bits: CellBits, corpus: CorpusData): number | undefined {
-  const { repeated } = corpus;
-  if (repeated === undefined || repeated.share === 0) return undefined;
-  let carried = 0;
-  let symbols = 0;
-  let from = 0;
-  corpus.test.messageEnds.forEach((end, i) => {
-    if (repeated.mask[i] === 0) {
-      carried += bits.messageBits[i];
-      symbols += end - from;
-    }
-    from = end;
-  });
-  return symbols === 0 ? undefined : carried / symbols;
-}
-
-function recordOf(
-  result: CellBits | CellFailure,
-  corpus: CorpusData,
-  floors: CorpusFloors,
-  speed: { encode: Speed; decode: Speed } | undefined,
-): CellRecord {
-  const { cell } = result;
-  const base = {
-    id: cell.id,
-    corpus: cell.corpus,
-    candidate: cell.candidate.id,
-    coder: cell.candidate.declaration.name,
-    params: { ...cell.candidate.values },
-    tables: cell.policy,
-    reset: cell.reset,
-    reference: cell.candidate.declaration.reference,
-    decodes_alone: decodesAlone(cell),
-    messages_as: corpus.messagesAs,
-  };
-  if ('failure' in result) return { ...base, verified: false, failure: result.failure };
-  const symbolCount = corpus.test.symbols.length;
-  const without = rateWithoutRepeats(result, corpus);
-  return {
-    ...base,
-    verified: true,
-    backend: 'ts',
-    symbol_count: symbolCount,
-    message_count: corpus.test.messageEnds.length,
-    coded_bytes: Math.ceil(result.totals.carriedBits / 8),
-    carried_bits: result.totals.carriedBits,
-    rate: symbolCount === 0 ? 0 : result.totals.carriedBits / symbolCount,
-    account: bitAccount(floors.admit(result), floors.shareOf(cell)),
-    ...(result.messageBits.length === 0 ? {} : { message_bytes: messageBytes(result.messageBits) }),
-    ...(without === undefined ? {} : { rate_without_repeats: without }),
-    files: filesOf(result, corpus),
-    ...(speed === undefined
-      ? {}
-      : { encode: speedRecord(speed.encode), decode: speedRecord(speed.decode) }),
-  };
-}
-
-function speedRecord(speed: Speed): NonNullable<CellRecord['encode']> {
-  return { ...speed, seconds: [...speed.seconds] };
+/** The shipped cell of least rate that is no reference. */
+function bestShipped(results: readonly (CellBits | CellFailure)[]): Cell | undefined {
+  let best: CellBits | undefined;
+  for (const result of results) {
+    if ('failure' in result || result.cell.policy !== 'shipped') continue;
+    if (result.cell.candidate.declaration.reference) continue;
+    if (best === undefined || result.totals.carriedBits < best.totals.carriedBits) best = result;
+  }
+  return best?.cell;
 }

@@ -1,5 +1,5 @@
 import type { CodedTotals } from '../account/bit-account.ts';
-import type { Coded, FitClass, Setup } from '../coders/contract.ts';
+import type { Coded, FieldPrice, FitClass, Setup } from '../coders/contract.ts';
 import { BitassayError, BugError } from '../errors/errors.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import { type Cell, unitResetOf } from './cells.ts';
@@ -16,6 +16,8 @@ export interface CellBits {
   readonly messageBits: Float64Array;
   /** Ideal bits of each message; absent for coders without probabilities. */
   readonly messageIdealBits?: Float64Array;
+  /** Ideal bits of each field, for coders that code a record by its fields. */
+  readonly perField?: readonly FieldPrice[];
   /** Carried bits of the alphabet map, padding included, sent once before the messages. */
   readonly mapBits: number;
   /** The units as coded, for timing. */
@@ -50,6 +52,8 @@ function setupOf(cell: Cell, corpus: CorpusData, align: number, unit?: SymbolSeq
     reset: unitResetOf(cell),
     lengths: corpus.lengths,
     align,
+    ...(corpus.record === undefined ? {} : { record: corpus.record }),
+    ...(corpus.fields === undefined ? {} : { fields: corpus.fields }),
   };
   cell.candidate.create().check?.(base);
   let from: SymbolSequence | undefined;
@@ -124,6 +128,7 @@ export async function runCell(
   let idealBits = 0;
   let fitBits: number | undefined;
   let fitOf: FitClass | undefined;
+  let perField: readonly FieldPrice[] | undefined;
   let priced = coder.price !== undefined;
   const messageIdealBits = new Float64Array(corpus.test.messageEnds.length);
   let messageAt = 0;
@@ -156,6 +161,7 @@ export async function runCell(
     const price = guarded(() => coder.price!(sequence, setup));
     if ('failure' in price) return price;
     idealBits += price.idealBits;
+    if (price.perField !== undefined) perField = addFields(perField, price.perField);
     if (price.fit !== undefined && sequences.length === 1) {
       fitBits = price.fit.bits;
       fitOf = price.fit.of;
@@ -192,9 +198,19 @@ export async function runCell(
     ...(fitOf === undefined ? {} : { fitOf }),
     messageBits,
     ...(priced ? { messageIdealBits } : {}),
+    ...(perField === undefined ? {} : { perField }),
     mapBits,
     units,
   };
+}
+
+/** Sums over units, whose fields are the same. */
+function addFields(
+  sum: readonly FieldPrice[] | undefined,
+  more: readonly FieldPrice[],
+): readonly FieldPrice[] {
+  if (sum === undefined) return more;
+  return more.map((field, i) => ({ ...field, idealBits: field.idealBits + sum[i].idealBits }));
 }
 
 function placeOf(error: BitassayError): string {

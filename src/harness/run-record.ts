@@ -42,6 +42,12 @@ const cell = z.strictObject({
   tables: z.string(),
   reset: z.string(),
   reference: z.boolean(),
+  loss: z
+    .strictObject({ share: z.number(), per_lost_message: z.number() })
+    .optional()
+    .describe(
+      'messages that cannot be decoded at the loss rate of the plan, and for each one lost',
+    ),
   decodes_alone: z.boolean().describe('false: needs all earlier messages'),
   messages_as: z.string(),
   verified: z.boolean(),
@@ -70,6 +76,16 @@ const cell = z.strictObject({
       z.strictObject({ sha256: z.string(), symbol_count: z.number(), coded_bytes: z.number() }),
     )
     .optional(),
+  fields: z
+    .array(
+      z.strictObject({
+        name: z.string(),
+        bits: z.number().describe('ideal bits of the field over all records that are coded'),
+        choice: z.string().describe('transform, or transform/context'),
+      }),
+    )
+    .optional()
+    .describe('by coders that code a record by its fields'),
   encode: speed.optional(),
   decode: speed.optional(),
   failure: z.string().optional(),
@@ -82,6 +98,7 @@ const corpus = z.strictObject({
   messages_as: z.string(),
   lengths: z.string(),
   alphabet_size: z.number(),
+  record_bytes: z.number().optional().describe('where the symbols are the bytes of fixed records'),
   source_bytes: z.number(),
   symbol_count: z.number().describe('of the part that is coded'),
   message_count: z.number(),
@@ -105,6 +122,23 @@ const entropy = z.strictObject({
   }),
 });
 
+const ageing = z
+  .strictObject({
+    corpus: z.string(),
+    cell: z.string(),
+    segments: z.array(
+      z.strictObject({
+        distance: z.number().describe('symbols from the end of the train part'),
+        symbol_count: z.number(),
+        rate: z.number().describe('ideal bits per symbol with the shipped tables'),
+        retrained_rate: z.number().describe('the same, trained on all before the segment'),
+      }),
+    ),
+    table_bits: z.number().optional(),
+    pays_after: z.number().optional().describe('symbols by which sending new tables has paid'),
+  })
+  .describe('how the tables of the best shipped cell age');
+
 export const runRecordSchema = z.strictObject({
   record: z.literal(1),
   tool: z.strictObject({ name: z.literal('bitassay'), version: z.string() }),
@@ -114,6 +148,7 @@ export const runRecordSchema = z.strictObject({
     split: z.string().describe('how train and test were parted, or "none"'),
     tables: z.array(z.string()),
     resets: z.array(z.string()),
+    loss_rate: z.number().optional(),
   }),
   environment: z.strictObject({
     node: z.string(),
@@ -126,6 +161,7 @@ export const runRecordSchema = z.strictObject({
   corpora: z.array(corpus),
   entropy: z.array(entropy),
   cells: z.array(cell),
+  ageing: z.array(ageing).optional(),
   undeclared: z
     .number()
     .describe('combinations that gave no cell since the coder does not declare them'),

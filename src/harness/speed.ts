@@ -4,7 +4,7 @@ import type { Coded, Decoder, Setup } from '../coders/contract.ts';
 import { oneMessage, type SymbolSequence } from '../symbols/sequence.ts';
 import type { CellBits, CodedUnit } from './run-cell.ts';
 import { encodeUnit } from './run-cell.ts';
-import { decoderSetup, symbolCountsOf } from './verify.ts';
+import { decoderSetup, symbolCountsOf, trainOn } from './verify.ts';
 
 /** How fast a cell is, as a multiple of the pacer's speed in the same round. */
 export interface Speed {
@@ -125,7 +125,7 @@ export class Pacer {
   time(bits: CellBits, options: SpeedOptions): { encode: Speed; decode: Speed } {
     const encode = interleave(
       () => {
-        for (const unit of bits.units) encodeUnit(bits.cell, unit.setup, unit.sequence);
+        for (const unit of bits.units) encodeUnit(bits.cell, refitted(bits, unit), unit.sequence);
       },
       this.#encode,
       options,
@@ -140,6 +140,13 @@ export class Pacer {
     );
     return { encode, decode };
   }
+}
+
+/** Sent tables are fitted to the unit at the encoder, so fitting them is part of its time. */
+function refitted(bits: CellBits, { setup, sequence }: CodedUnit): Setup {
+  if (bits.cell.policy !== 'sent' || setup.tables === undefined) return setup;
+  const tables = trainOn(bits.cell.candidate, setup, sequence);
+  return tables === undefined ? setup : { ...setup, tables };
 }
 
 function decodeInput(

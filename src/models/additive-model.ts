@@ -1,12 +1,9 @@
 import type { SymbolArray } from '../symbols/sequence.ts';
 import { NODE_FIRST, NODE_SECOND, NODE_SYMBOL, NODE_WORDS } from './context-tree.ts';
-import type { IntervalSource, IntervalTape } from './interval.ts';
+import type { IntervalSink, IntervalSource } from './interval.ts';
 import type { AdaptiveModel } from './symbol-model.ts';
-import { HAS_RUN, SymbolRuns } from './symbol-runs.ts';
-import { WideCounts } from './wide-counts.ts';
-
-/** Above this alphabet size an order-0 model keeps sums instead of a run. */
-const LARGEST_NARROW = 256;
+import { countEntry, HAS_RUN, SymbolRuns } from './symbol-runs.ts';
+import { SymbolSums } from './symbol-sums.ts';
 
 /** Pseudo-count added to every symbol, p / q: 1/2 for Krichevsky–Trofimov, 1 for Laplace. */
 export interface AddedCount {
@@ -19,7 +16,7 @@ export interface AddedCount {
  * (c + p/q) ÷ (n + m·p/q), coded exactly as q·c + p of q·n + p·m.
  *
  * Nothing is initialised for a context: the symbols seen stand first, in the order of their run, then the others in the
- * order of the alphabet (order 0 of alphabets above 256: all in the order of the alphabet). A context is halved, c to
+ * order of the alphabet (order 0: all in the order of the alphabet). A context is halved, c to
  * ⌊c/2⌋, when q·n + p·m passes `halveAt` or a count fills its entry; the total never passes halveAt.
  *
  * Without halving, the code length of a context's symbols is the Dirichlet–multinomial form
@@ -29,13 +26,12 @@ export interface AddedCount {
  * Source: R. Krichevsky, V. Trofimov, IEEE Trans. Inf. Theory 27(2), 1981 (p/q = 1/2); Laplace's rule (1).
  */
 export class AdditiveModel implements AdaptiveModel {
-  readonly intervalsPerSymbol = 1;
   readonly #alphabetSize: number;
   readonly #order: number;
   readonly #added: AddedCount;
   readonly #halveAt: number;
   readonly #runs: SymbolRuns;
-  readonly #wide: WideCounts | undefined;
+  readonly #sums: SymbolSums | undefined;
   #hasResetState = false;
 
   constructor(
@@ -50,10 +46,10 @@ export class AdditiveModel implements AdaptiveModel {
     this.#added = added;
     this.#halveAt = halveAt;
     this.#runs = from ? from.#runs.clone() : new SymbolRuns(alphabetSize, order, 'down');
-    this.#wide = from
-      ? from.#wide?.clone()
-      : order === 0 && alphabetSize > LARGEST_NARROW
-        ? new WideCounts(alphabetSize, 'down')
+    this.#sums = from
+      ? from.#sums?.clone()
+      : order === 0
+        ? new SymbolSums(alphabetSize, 'down')
         : undefined;
   }
 
@@ -63,14 +59,14 @@ export class AdditiveModel implements AdaptiveModel {
 
   markResetState(): void {
     this.#runs.mark();
-    this.#wide?.mark();
+    this.#sums?.mark();
     this.#hasResetState = true;
   }
 
   reset(): void {
     if (this.#hasResetState) {
       this.#runs.restore();
-      this.#wide?.restore();
+      this.#sums?.restore();
     }
     this.#runs.tree.start();
   }
@@ -79,9 +75,9 @@ export class AdditiveModel implements AdaptiveModel {
     this.#runs.tree.start();
   }
 
-  encode(symbols: SymbolArray, from: number, to: number, tape: IntervalTape): void {
-    if (this.#wide !== undefined) {
-      this.#encodeWide(this.#wide, symbols, from, to, tape);
+  encode(symbols: SymbolArray, from: number, to: number, sink: IntervalSink): void {
+    if (this.#sums !== undefined) {
+      this.#encodeEmpty(this.#sums, symbols, from, to, sink);
       return;
     }
     const runs = this.#runs;
@@ -89,19 +85,24 @@ export class AdditiveModel implements AdaptiveModel {
     const contexts = tree.contexts;
     const bits = runs.symbolBits;
     const mask = 2 ** bits - 1;
+    const order = this.#order;
     const { p, q } = this.#added;
     const base = p * this.#alphabetSize;
+    // Up to this total nothing can be due but the count itself.
+    const plainTotal = Math.min(this.#halveAt - q, q * (runs.largestCount - 1));
+    const markedNodes = runs.markedNodes;
+    const { table, width } = tree.longestContexts();
+    let pool = runs.pool;
+    let words = tree.words;
+    let node = contexts[order];
+    let last = tree.last;
     for (let i = from; i < to; i++) {
       const symbol = symbols[i];
-      const node = contexts[this.#order];
-      const words = tree.words;
       const at = node * NODE_WORDS;
       const first = words[at + NODE_FIRST];
       const total = q * words[at + NODE_SECOND] + base;
       if (words[at + NODE_SYMBOL] & HAS_RUN) {
-        const pool = runs.pool;
-        const distinct = pool[first];
-        const end = first + distinct;
+        const end = first + pool[first];
         let counts = 0;
         let position = first + 1;
         while (position <= end && (pool[position] & mask) !== symbol) {
@@ -109,36 +110,53 @@ export class AdditiveModel implements AdaptiveModel {
         }
         if (position <= end) {
           const low = q * counts + p * (position - first - 1);
-          tape.put(low, q * (pool[position] >>> bits) + p, total);
-          runs.increment(node, position);
+          sink.put(low, q * (pool[position] >>> bits) + p, total);
+          if (total <= plainTotal && node >= markedNodes) {
+            words[at + NODE_SECOND]++;
+            countEntry(pool, first, position, bits);
+            const next = table.length > 0 ? table[last * width + symbol] : 0;
+            if (next !== 0) {
+              node = next;
+              last = symbol;
+              continue;
+            }
+          } else {
+            runs.increment(node, position);
+          }
         } else {
           let below = 0;
           for (let j = first + 1; j <= end; j++) if ((pool[j] & mask) < symbol) below++;
-          tape.put(q * counts + p * (distinct + symbol - below), p, total);
+          sink.put(q * counts + p * (end - first + symbol - below), p, total);
           runs.append(node, symbol);
         }
       } else if (first !== 0) {
         const only = first & mask;
         const count = first >>> bits;
         if (only === symbol) {
-          if (this.#alphabetSize > 1) tape.put(0, q * count + p, total);
+          if (this.#alphabetSize > 1) sink.put(0, q * count + p, total);
           runs.incrementOnly(node);
         } else {
-          tape.put(q * count + p * (only < symbol ? symbol : symbol + 1), p, total);
+          sink.put(q * count + p * (only < symbol ? symbol : symbol + 1), p, total);
           runs.append(node, symbol);
         }
       } else {
-        if (this.#alphabetSize > 1) tape.put(p * symbol, p, total);
+        if (this.#alphabetSize > 1) sink.put(p * symbol, p, total);
         runs.append(node, symbol);
       }
-      if (total + q > this.#halveAt) this.#settle(node);
+      if (total > plainTotal) this.#settle(node);
+      tree.moveTo(last, node);
       tree.advance(symbol);
+      node = contexts[order];
+      last = symbol;
+      words = tree.words;
+      pool = runs.pool;
     }
+    tree.moveTo(last, node);
   }
 
   decode(source: IntervalSource, symbols: SymbolArray, from: number, to: number): void {
-    if (this.#wide !== undefined) {
-      this.#decodeWide(this.#wide, source, symbols, from, to);
+    if (this.#sums !== undefined) {
+      this.#decodeEmpty(this.#sums, source, symbols, from, to);
       return;
     }
     const runs = this.#runs;
@@ -195,26 +213,27 @@ export class AdditiveModel implements AdaptiveModel {
     while (q * words[at] + p * this.#alphabetSize > this.#halveAt) this.#runs.halve(node);
   }
 
-  #encodeWide(
-    wide: WideCounts,
+  #encodeEmpty(
+    sums: SymbolSums,
     symbols: SymbolArray,
     from: number,
     to: number,
-    tape: IntervalTape,
+    sink: IntervalSink,
   ): void {
     const { p, q } = this.#added;
     const base = p * this.#alphabetSize;
     for (let i = from; i < to; i++) {
       const symbol = symbols[i];
-      const low = q * wide.sumBelow(symbol) + p * symbol;
-      tape.put(low, q * wide.counts[symbol] + p, q * wide.sum + base);
-      wide.increment(symbol);
-      while (q * wide.sum + base > this.#halveAt) wide.halve();
+      const total = q * sums.sum + base;
+      const weight = q * sums.counts[symbol] + p;
+      const low = q * sums.increment(symbol) + p * symbol;
+      if (this.#alphabetSize > 1) sink.put(low, weight, total);
+      while (q * sums.sum + base > this.#halveAt) sums.halve();
     }
   }
 
-  #decodeWide(
-    wide: WideCounts,
+  #decodeEmpty(
+    sums: SymbolSums,
     source: IntervalSource,
     symbols: SymbolArray,
     from: number,
@@ -223,11 +242,14 @@ export class AdditiveModel implements AdaptiveModel {
     const { p, q } = this.#added;
     const base = p * this.#alphabetSize;
     for (let i = from; i < to; i++) {
-      const symbol = wide.weighed(source.target(q * wide.sum + base), q, p);
-      source.take(q * wide.sumBelow(symbol) + p * symbol, q * wide.counts[symbol] + p);
+      let symbol = 0;
+      if (this.#alphabetSize > 1) {
+        symbol = sums.holding(source.target(q * sums.sum + base), q, p);
+        const weight = q * sums.counts[symbol] + p;
+        source.take(q * sums.increment(symbol) + p * symbol, weight);
+      }
       symbols[i] = symbol;
-      wide.increment(symbol);
-      while (q * wide.sum + base > this.#halveAt) wide.halve();
+      while (q * sums.sum + base > this.#halveAt) sums.halve();
     }
   }
 }

@@ -6,13 +6,15 @@ import {
   NODE_SYMBOL,
   NODE_WORDS,
 } from './context-tree.ts';
-import type { IntervalSource, IntervalTape } from './interval.ts';
+import type { IntervalSink, IntervalSource } from './interval.ts';
 import type { AdaptiveModel } from './symbol-model.ts';
-import { HAS_RUN, SymbolRuns } from './symbol-runs.ts';
-import { WideCounts } from './wide-counts.ts';
+import { countEntry, HAS_RUN, SymbolRuns } from './symbol-runs.ts';
+import { SymbolSums } from './symbol-sums.ts';
 
-/** Above this alphabet size the empty context is kept as sums instead of a run. */
-const LARGEST_NARROW = 256;
+/** Contexts from this order on keep runs; the empty one keeps sums. */
+const LOWEST_RUN = 1;
+
+const NOT_CODED = -1;
 
 /**
  * Adaptive order-k model that backs off by escape: method C with exclusion and update exclusion.
@@ -36,15 +38,15 @@ const LARGEST_NARROW = 256;
  * Trans. Communications 32(4), 1984 (exclusion); J. G. Cleary, W. J. Teahan, Computer Journal 40(2/3), 1997 (q kept).
  */
 export class BackOffModel implements AdaptiveModel {
-  readonly intervalsPerSymbol: number;
   readonly #alphabetSize: number;
   readonly #order: number;
   readonly #halveAt: number;
   readonly #runs: SymbolRuns;
   readonly #tree: ContextTree;
-  /** The empty context of a large alphabet; then runs begin at order 1. */
-  readonly #wide: WideCounts | undefined;
-  readonly #lowestRun: number;
+  /** The empty context. */
+  readonly #sums: SymbolSums;
+  /** Up to this n + q nothing is due after a symbol but its count. */
+  readonly #plainTotal: number;
   #hasResetState = false;
 
   /** A symbol is excluded when its stamp is the present one. */
@@ -54,18 +56,14 @@ export class BackOffModel implements AdaptiveModel {
   #excludedCount = 0;
 
   constructor(alphabetSize: number, order: number, halveAt: number, from?: BackOffModel) {
-    this.intervalsPerSymbol = order + 2;
     this.#alphabetSize = alphabetSize;
     this.#order = order;
     this.#halveAt = halveAt;
     this.#runs = from ? from.#runs.clone() : new SymbolRuns(alphabetSize, order, 'up');
     this.#tree = this.#runs.tree;
-    this.#wide = from
-      ? from.#wide?.clone()
-      : alphabetSize > LARGEST_NARROW
-        ? new WideCounts(alphabetSize, 'up')
-        : undefined;
-    this.#lowestRun = this.#wide === undefined ? 0 : 1;
+    // With one symbol nothing is ever coded: no shortcut for it.
+    this.#plainTotal = alphabetSize === 1 ? 0 : Math.min(halveAt, this.#runs.largestCount) - 1;
+    this.#sums = from ? from.#sums.clone() : new SymbolSums(alphabetSize, 'up');
     this.#stamps = new Int32Array(alphabetSize);
     this.#excluded = new Uint32Array(alphabetSize);
   }
@@ -76,14 +74,14 @@ export class BackOffModel implements AdaptiveModel {
 
   markResetState(): void {
     this.#runs.mark();
-    this.#wide?.mark();
+    this.#sums.mark();
     this.#hasResetState = true;
   }
 
   reset(): void {
     if (this.#hasResetState) {
       this.#runs.restore();
-      this.#wide?.restore();
+      this.#sums.restore();
     }
     this.#tree.start();
   }
@@ -92,127 +90,253 @@ export class BackOffModel implements AdaptiveModel {
     this.#tree.start();
   }
 
-  encode(symbols: SymbolArray, from: number, to: number, tape: IntervalTape): void {
+  encode(symbols: SymbolArray, from: number, to: number, sink: IntervalSink): void {
+    if (this.#order < LOWEST_RUN) {
+      this.#excludedCount = 0;
+      for (let i = from; i < to; i++) this.#encodeBelowRuns(symbols[i], sink);
+      return;
+    }
     const runs = this.#runs;
     const tree = this.#tree;
     const contexts = tree.contexts;
     const bits = runs.symbolBits;
     const mask = 2 ** bits - 1;
-    const lowestRun = this.#lowestRun;
+    const longest = this.#order;
+    const plainTotal = this.#plainTotal;
+    const markedNodes = runs.markedNodes;
+    const { table, width } = tree.longestContexts();
+    let pool = runs.pool;
+    let words = tree.words;
+    let node = contexts[longest];
+    let last = tree.last;
     for (let i = from; i < to; i++) {
       const symbol = symbols[i];
-      const words = tree.words;
-      let order = this.#order;
-      while (order >= lowestRun && words[contexts[order] * NODE_WORDS + NODE_SECOND] === 0) order--;
-      if (order < lowestRun) {
-        this.#clearExclusion();
-        this.#encodeBelowRuns(symbol, tape);
-      } else {
-        const node = contexts[order];
-        const at = node * NODE_WORDS;
-        const first = words[at + NODE_FIRST];
-        const sum = words[at + NODE_SECOND];
-        if (!(words[at + NODE_SYMBOL] & HAS_RUN)) {
-          if ((first & mask) === symbol) {
-            if (this.#alphabetSize > 1) tape.put(0, sum, sum + 1);
-            runs.incrementOnly(node);
-            this.#settle(node, 1);
-            this.#appendAbove(order, symbol);
-          } else {
-            tape.put(sum, 1, sum + 1);
-            this.#clearExclusion();
-            this.#exclude(first & mask);
-            this.#encodeEscaped(order - 1, symbol, tape);
-          }
-        } else {
-          const pool = runs.pool;
-          const distinct = pool[first];
-          const end = first + distinct;
-          const total = distinct === this.#alphabetSize ? sum : sum + distinct;
-          let low = 0;
-          let position = first + 1;
-          while (position <= end && (pool[position] & mask) !== symbol) {
-            low = (low + (pool[position++] >>> bits)) | 0;
-          }
-          if (position <= end) {
-            tape.put(low, pool[position] >>> bits, total);
-            runs.increment(node, position);
-            this.#settle(node, distinct);
-            this.#appendAbove(order, symbol);
-          } else {
-            tape.put(sum, distinct, total);
-            this.#clearExclusion();
-            for (let j = first + 1; j <= end; j++) this.#exclude(pool[j] & mask);
-            this.#encodeEscaped(order - 1, symbol, tape);
-          }
+      const at = node * NODE_WORDS;
+      const first = words[at + NODE_FIRST];
+      const sum = words[at + NODE_SECOND];
+      let isCoded = false;
+      if (words[at + NODE_SYMBOL] & HAS_RUN) {
+        const distinct = pool[first];
+        const end = first + distinct;
+        const total = distinct === this.#alphabetSize ? sum : sum + distinct;
+        let low = 0;
+        let position = first + 1;
+        while (position <= end && (pool[position] & mask) !== symbol) {
+          low = (low + (pool[position++] >>> bits)) | 0;
         }
+        if (position <= end && sum + distinct <= plainTotal && node >= markedNodes) {
+          sink.put(low, pool[position] >>> bits, total);
+          words[at + NODE_SECOND]++;
+          countEntry(pool, first, position, bits);
+          isCoded = true;
+        }
+      } else if ((first & mask) === symbol && sum > 0 && sum < plainTotal && node >= markedNodes) {
+        sink.put(0, sum, sum + 1);
+        words[at + NODE_FIRST] += 1 << bits;
+        words[at + NODE_SECOND]++;
+        isCoded = true;
+      }
+      if (isCoded) {
+        const next = table.length > 0 ? table[last * width + symbol] : 0;
+        if (next !== 0) {
+          node = next;
+          last = symbol;
+          continue;
+        }
+        tree.moveTo(last, node);
+      } else {
+        tree.moveTo(last, node);
+        this.#encodeAny(symbol, sink);
       }
       tree.advance(symbol);
+      node = contexts[longest];
+      last = symbol;
+      words = tree.words;
+      pool = runs.pool;
     }
+    tree.moveTo(last, node);
   }
 
   decode(source: IntervalSource, symbols: SymbolArray, from: number, to: number): void {
+    if (this.#order < LOWEST_RUN) {
+      this.#excludedCount = 0;
+      for (let i = from; i < to; i++) symbols[i] = this.#decodeBelowRuns(source);
+      return;
+    }
     const runs = this.#runs;
     const tree = this.#tree;
     const contexts = tree.contexts;
     const bits = runs.symbolBits;
     const mask = 2 ** bits - 1;
-    const lowestRun = this.#lowestRun;
+    const longest = this.#order;
+    const plainTotal = this.#plainTotal;
+    const markedNodes = runs.markedNodes;
+    const { table, width } = tree.longestContexts();
+    let pool = runs.pool;
+    let words = tree.words;
+    let node = contexts[longest];
+    let last = tree.last;
     for (let i = from; i < to; i++) {
-      const words = tree.words;
-      let symbol: number;
-      let order = this.#order;
-      while (order >= lowestRun && words[contexts[order] * NODE_WORDS + NODE_SECOND] === 0) order--;
-      if (order < lowestRun) {
-        this.#clearExclusion();
-        symbol = this.#decodeBelowRuns(source);
-      } else {
-        const node = contexts[order];
-        const at = node * NODE_WORDS;
-        const first = words[at + NODE_FIRST];
-        const sum = words[at + NODE_SECOND];
-        if (!(words[at + NODE_SYMBOL] & HAS_RUN)) {
-          if (this.#alphabetSize === 1 || source.target(sum + 1) < sum) {
-            symbol = first & mask;
-            if (this.#alphabetSize > 1) source.take(0, sum);
-            runs.incrementOnly(node);
-            this.#settle(node, 1);
-            this.#appendAbove(order, symbol);
-          } else {
-            source.take(sum, 1);
-            this.#clearExclusion();
-            this.#exclude(first & mask);
-            symbol = this.#decodeEscaped(order - 1, source);
+      const at = node * NODE_WORDS;
+      const first = words[at + NODE_FIRST];
+      const sum = words[at + NODE_SECOND];
+      let symbol = NOT_CODED;
+      if (words[at + NODE_SYMBOL] & HAS_RUN && node >= markedNodes) {
+        const distinct = pool[first];
+        const total = distinct === this.#alphabetSize ? sum : sum + distinct;
+        const target = sum + distinct <= plainTotal ? source.target(total) : sum;
+        if (target < sum) {
+          let low = 0;
+          let position = first + 1;
+          let count = pool[position] >>> bits;
+          while (((low + count) | 0) <= target) {
+            low = (low + count) | 0;
+            count = pool[++position] >>> bits;
           }
-        } else {
-          const pool = runs.pool;
-          const distinct = pool[first];
-          const total = distinct === this.#alphabetSize ? sum : sum + distinct;
-          const target = source.target(total);
-          if (target < sum) {
-            let low = 0;
-            let position = first + 1;
-            let count = pool[position] >>> bits;
-            while (low + count <= target) {
-              low = (low + count) | 0;
-              count = pool[++position] >>> bits;
-            }
-            source.take(low, count);
-            symbol = pool[position] & mask;
-            runs.increment(node, position);
-            this.#settle(node, distinct);
-            this.#appendAbove(order, symbol);
-          } else {
-            source.take(sum, distinct);
-            this.#clearExclusion();
-            for (let j = first + 1; j <= first + distinct; j++) this.#exclude(pool[j] & mask);
-            symbol = this.#decodeEscaped(order - 1, source);
-          }
+          source.take(low, count);
+          symbol = pool[position] & mask;
+          words[at + NODE_SECOND]++;
+          countEntry(pool, first, position, bits);
+        }
+      } else if (sum > 0 && sum < plainTotal && node >= markedNodes) {
+        if (source.target(sum + 1) < sum) {
+          source.take(0, sum);
+          symbol = first & mask;
+          words[at + NODE_FIRST] += 1 << bits;
+          words[at + NODE_SECOND]++;
         }
       }
-      symbols[i] = symbol;
+      if (symbol !== NOT_CODED) {
+        symbols[i] = symbol;
+        const next = table.length > 0 ? table[last * width + symbol] : 0;
+        if (next !== 0) {
+          node = next;
+          last = symbol;
+          continue;
+        }
+        tree.moveTo(last, node);
+      } else {
+        tree.moveTo(last, node);
+        symbol = this.#decodeAny(source);
+        symbols[i] = symbol;
+      }
       tree.advance(symbol);
+      node = contexts[longest];
+      last = symbol;
+      words = tree.words;
+      pool = runs.pool;
     }
+    tree.moveTo(last, node);
+  }
+
+  /** Codes a symbol in whatever contexts it takes. The loop of `encode` is the shortcut of this for the commonest case. */
+  #encodeAny(symbol: number, sink: IntervalSink): void {
+    this.#clearExclusion();
+    const runs = this.#runs;
+    const words = this.#tree.words;
+    const order = this.#longestInUse();
+    if (order < LOWEST_RUN) {
+      this.#encodeBelowRuns(symbol, sink);
+      return;
+    }
+    const bits = runs.symbolBits;
+    const mask = 2 ** bits - 1;
+    const node = this.#tree.contexts[order];
+    const at = node * NODE_WORDS;
+    const first = words[at + NODE_FIRST];
+    const sum = words[at + NODE_SECOND];
+    if (!(words[at + NODE_SYMBOL] & HAS_RUN)) {
+      const only = first & mask;
+      if (only === symbol) {
+        if (this.#alphabetSize > 1) sink.put(0, sum, sum + 1);
+        runs.incrementOnly(node);
+        this.#settle(node, 1);
+        this.#appendAbove(order, symbol);
+        return;
+      }
+      sink.put(sum, 1, sum + 1);
+      this.#exclude(only);
+    } else {
+      const pool = runs.pool;
+      const distinct = pool[first];
+      const end = first + distinct;
+      const total = distinct === this.#alphabetSize ? sum : sum + distinct;
+      let low = 0;
+      for (let position = first + 1; position <= end; position++) {
+        const other = pool[position] & mask;
+        if (other === symbol) {
+          sink.put(low, pool[position] >>> bits, total);
+          runs.increment(node, position);
+          this.#settle(node, distinct);
+          this.#appendAbove(order, symbol);
+          return;
+        }
+        low = (low + (pool[position] >>> bits)) | 0;
+        this.#exclude(other);
+      }
+      sink.put(sum, distinct, total);
+    }
+    this.#encodeEscaped(order - 1, symbol, sink);
+  }
+
+  #decodeAny(source: IntervalSource): number {
+    this.#clearExclusion();
+    const runs = this.#runs;
+    const words = this.#tree.words;
+    const order = this.#longestInUse();
+    if (order < LOWEST_RUN) return this.#decodeBelowRuns(source);
+    const bits = runs.symbolBits;
+    const mask = 2 ** bits - 1;
+    const node = this.#tree.contexts[order];
+    const at = node * NODE_WORDS;
+    const first = words[at + NODE_FIRST];
+    const sum = words[at + NODE_SECOND];
+    if (!(words[at + NODE_SYMBOL] & HAS_RUN)) {
+      const only = first & mask;
+      if (this.#alphabetSize === 1 || source.target(sum + 1) < sum) {
+        if (this.#alphabetSize > 1) source.take(0, sum);
+        runs.incrementOnly(node);
+        this.#settle(node, 1);
+        this.#appendAbove(order, only);
+        return only;
+      }
+      source.take(sum, 1);
+      this.#exclude(only);
+    } else {
+      const pool = runs.pool;
+      const distinct = pool[first];
+      const end = first + distinct;
+      const target = source.target(distinct === this.#alphabetSize ? sum : sum + distinct);
+      if (target < sum) {
+        let low = 0;
+        let position = first + 1;
+        let count = pool[position] >>> bits;
+        while (low + count <= target) {
+          low = (low + count) | 0;
+          count = pool[++position] >>> bits;
+        }
+        const symbol = pool[position] & mask;
+        source.take(low, count);
+        runs.increment(node, position);
+        this.#settle(node, distinct);
+        this.#appendAbove(order, symbol);
+        return symbol;
+      }
+      source.take(sum, distinct);
+      for (let position = first + 1; position <= end; position++) {
+        this.#exclude(pool[position] & mask);
+      }
+    }
+    return this.#decodeEscaped(order - 1, source);
+  }
+
+  /** The longest order whose context has seen anything; 0 or less where no run has. */
+  #longestInUse(): number {
+    const words = this.#tree.words;
+    const contexts = this.#tree.contexts;
+    let order = this.#order;
+    while (order >= LOWEST_RUN && words[contexts[order] * NODE_WORDS + NODE_SECOND] === 0) order--;
+    return order;
   }
 
   #clearExclusion(): void {
@@ -237,28 +361,29 @@ export class BackOffModel implements AdaptiveModel {
   /** Adds the symbol to every context longer than the one of `order` that coded it. */
   #appendAbove(order: number, symbol: number): void {
     const contexts = this.#tree.contexts;
-    for (let j = Math.max(order + 1, this.#lowestRun); j <= this.#order; j++) {
+    for (let j = order + 1; j <= this.#order; j++) {
       this.#runs.append(contexts[j], symbol);
       const sum = this.#tree.words[contexts[j] * NODE_WORDS + NODE_SECOND];
       if (2 * sum > this.#halveAt) this.#settle(contexts[j], this.#runs.distinct(contexts[j]));
     }
-    if (order < 0 && this.#wide !== undefined) this.#countWide(symbol);
   }
 
-  #countWide(symbol: number): void {
-    const wide = this.#wide!;
-    wide.increment(symbol);
-    if (wide.sum + wide.distinct > this.#halveAt && wide.sum >= 2 * wide.distinct) wide.halve();
+  /** Counts a symbol in the empty context; returns the counts of all smaller symbols before that. */
+  #countEmpty(symbol: number): number {
+    const sums = this.#sums;
+    const low = sums.increment(symbol);
+    if (sums.sum + sums.distinct > this.#halveAt && sums.sum >= 2 * sums.distinct) sums.halve();
+    return low;
   }
 
   /** Codes a symbol in the contexts of `from` and shorter, with what is excluded by now. */
-  #encodeEscaped(from: number, symbol: number, tape: IntervalTape): void {
+  #encodeEscaped(from: number, symbol: number, sink: IntervalSink): void {
     const runs = this.#runs;
     const words = this.#tree.words;
     const pool = runs.pool;
     const bits = runs.symbolBits;
     const mask = 2 ** bits - 1;
-    for (let order = from; order >= this.#lowestRun; order--) {
+    for (let order = from; order >= LOWEST_RUN; order--) {
       const node = this.#tree.contexts[order];
       const at = node * NODE_WORDS;
       // A suffix of a context that has seen something else than what was coded has seen at least as much.
@@ -286,15 +411,15 @@ export class BackOffModel implements AdaptiveModel {
       if (this.#excludedCount === before) continue;
       const total = this.#excludedCount === this.#alphabetSize ? sum : sum + distinct;
       if (found !== 0) {
-        if (frequency < total) tape.put(low, frequency, total);
+        if (frequency < total) sink.put(low, frequency, total);
         runs.increment(node, found);
         this.#settle(node, distinct);
         this.#appendAbove(order, symbol);
         return;
       }
-      tape.put(sum, distinct, total);
+      sink.put(sum, distinct, total);
     }
-    this.#encodeBelowRuns(symbol, tape);
+    this.#encodeBelowRuns(symbol, sink);
   }
 
   #decodeEscaped(from: number, source: IntervalSource): number {
@@ -303,7 +428,7 @@ export class BackOffModel implements AdaptiveModel {
     const pool = runs.pool;
     const bits = runs.symbolBits;
     const mask = 2 ** bits - 1;
-    for (let order = from; order >= this.#lowestRun; order--) {
+    for (let order = from; order >= LOWEST_RUN; order--) {
       const node = this.#tree.contexts[order];
       const at = node * NODE_WORDS;
       const first = words[at + NODE_FIRST];
@@ -347,91 +472,64 @@ export class BackOffModel implements AdaptiveModel {
     return this.#decodeBelowRuns(source);
   }
 
-  /** Codes a symbol in the empty context of a large alphabet, and below the empty context. */
-  #encodeBelowRuns(symbol: number, tape: IntervalTape): void {
-    const wide = this.#wide;
-    if (wide === undefined) {
-      const left = this.#alphabetSize - this.#excludedCount;
-      if (left > 1) tape.put(symbol - this.#excludedBelow(symbol), 1, left);
-      this.#appendAbove(-1, symbol);
-      return;
-    }
-    const fresh = wide.distinct - this.#excludedCount;
-    if (fresh > 0) {
-      this.#takeExcludedOut();
-      const sum = wide.sum;
-      const total = wide.distinct === this.#alphabetSize ? sum : sum + wide.distinct;
-      const seen = wide.hasSeen(symbol);
-      const low = seen ? wide.sumBelow(symbol) : sum;
-      this.#putExcludedBack();
-      if (seen) {
-        if (wide.counts[symbol] < total) tape.put(low, wide.counts[symbol], total);
-        this.#countWide(symbol);
+  /** Codes a symbol in the empty context, and below it; what is excluded was seen there too. */
+  #encodeBelowRuns(symbol: number, sink: IntervalSink): void {
+    const sums = this.#sums;
+    const { distinct } = sums;
+    const excluded = this.#excluded;
+    if (distinct > this.#excludedCount) {
+      let sum = sums.sum;
+      let excludedBelow = 0;
+      for (let i = 0; i < this.#excludedCount; i++) {
+        const count = sums.counts[excluded[i]];
+        sum -= count;
+        if (excluded[i] < symbol) excludedBelow += count;
+      }
+      const total = distinct === this.#alphabetSize ? sum : sum + distinct;
+      if (sums.hasSeen(symbol)) {
+        const frequency = sums.counts[symbol];
+        const low = this.#countEmpty(symbol) - excludedBelow;
+        if (frequency < total) sink.put(low, frequency, total);
         this.#appendAbove(0, symbol);
         return;
       }
-      tape.put(low, wide.distinct, total);
+      sink.put(sum, distinct, total);
     }
-    const left = this.#alphabetSize - wide.distinct;
-    if (left > 1) tape.put(symbol - wide.seenBelow(symbol), 1, left);
-    this.#appendAbove(-1, symbol);
+    const left = this.#alphabetSize - distinct;
+    if (left > 1) sink.put(symbol - sums.seenBelow(symbol), 1, left);
+    this.#countEmpty(symbol);
+    this.#appendAbove(0, symbol);
   }
 
   #decodeBelowRuns(source: IntervalSource): number {
-    const wide = this.#wide;
-    const excluded = wide === undefined ? this.#excludedCount : wide.distinct;
-    if (wide !== undefined && wide.distinct > this.#excludedCount) {
-      const fresh = wide.distinct - this.#excludedCount;
-      this.#takeExcludedOut();
-      const sum = wide.sum;
-      const total = wide.distinct === this.#alphabetSize ? sum : sum + wide.distinct;
-      const certain = fresh === 1 && total === sum;
+    const sums = this.#sums;
+    const { distinct } = sums;
+    if (distinct > this.#excludedCount) {
+      for (let i = 0; i < this.#excludedCount; i++) sums.takeOut(this.#excluded[i]);
+      const { sum } = sums;
+      const total = distinct === this.#alphabetSize ? sum : sum + distinct;
+      const certain = total === sum && distinct === this.#excludedCount + 1;
       const target = certain ? 0 : source.target(total);
-      const symbol = target < sum ? wide.atSum(target) : -1;
-      const low = symbol < 0 ? sum : wide.sumBelow(symbol);
-      this.#putExcludedBack();
+      const symbol = target < sum ? sums.holding(target, 1, 0) : -1;
+      const low = symbol < 0 ? sum : sums.sumBelow(symbol);
+      for (let i = 0; i < this.#excludedCount; i++) sums.putBack(this.#excluded[i]);
       if (symbol >= 0) {
-        if (!certain) source.take(low, wide.counts[symbol]);
-        this.#countWide(symbol);
+        if (!certain) source.take(low, sums.counts[symbol]);
+        this.#countEmpty(symbol);
         this.#appendAbove(0, symbol);
         return symbol;
       }
-      source.take(low, wide.distinct);
+      source.take(low, distinct);
     }
-    const left = this.#alphabetSize - excluded;
+    const left = this.#alphabetSize - distinct;
     let rank = 0;
     if (left > 1) {
       rank = source.target(left);
       source.take(rank, 1);
     }
-    const symbol = wide === undefined ? this.#notExcludedAt(rank) : wide.unseenAt(rank);
-    this.#appendAbove(-1, symbol);
+    const symbol = sums.unseenAt(rank);
+    this.#countEmpty(symbol);
+    this.#appendAbove(0, symbol);
     return symbol;
-  }
-
-  #takeExcludedOut(): void {
-    for (let i = 0; i < this.#excludedCount; i++) this.#wide!.takeOut(this.#excluded[i]);
-  }
-
-  #putExcludedBack(): void {
-    for (let i = 0; i < this.#excludedCount; i++) this.#wide!.putBack(this.#excluded[i]);
-  }
-
-  #excludedBelow(symbol: number): number {
-    let below = 0;
-    for (let i = 0; i < this.#excludedCount; i++) if (this.#excluded[i] < symbol) below++;
-    return below;
-  }
-
-  /** The symbol not excluded that has `rank` such symbols below it. */
-  #notExcludedAt(rank: number): number {
-    let symbol = rank;
-    for (let shift = 0; ; ) {
-      let upTo = 0;
-      for (let i = 0; i < this.#excludedCount; i++) if (this.#excluded[i] <= symbol) upTo++;
-      if (upTo === shift) return symbol;
-      shift = upTo;
-      symbol = rank + shift;
-    }
   }
 }

@@ -2,13 +2,16 @@
 export interface CountingBlocks {
   /** How many; at most 256. */
   readonly count: number;
-  /** Symbols in each but the last. */
-  readonly length: number;
+  /** Shape [count]: the index one past each block's last symbol. Never falls; the last is the number of symbols. */
+  readonly ends: Uint32Array;
 }
 
-/** `count` blocks over `symbolCount` symbols; the last ones may be short or empty. */
+/** `count` blocks of one length over `symbolCount` symbols; the last ones may be short or empty. */
 export function countingBlocks(symbolCount: number, count: number): CountingBlocks {
-  return { count, length: Math.max(1, Math.ceil(symbolCount / count)) };
+  const length = Math.max(1, Math.ceil(symbolCount / count));
+  const ends = new Uint32Array(count);
+  for (let b = 0; b < count; b++) ends[b] = Math.min(symbolCount, (b + 1) * length);
+  return { count, ends };
 }
 
 /**
@@ -23,11 +26,12 @@ export function positionsByBlock(
 ): Float64Array {
   const positions = new Float64Array(blocks.count);
   let from = 0;
+  let block = 0;
   for (let m = 0; m < ends.length; m++) {
     const to = ends[m] - order;
     for (let at = from; at < to; ) {
-      const block = Math.floor(at / blocks.length);
-      const stop = Math.min(to, (block + 1) * blocks.length);
+      while (blocks.ends[block] <= at) block++;
+      const stop = Math.min(to, blocks.ends[block]);
       positions[block] += stop - at;
       at = stop;
     }

@@ -47,7 +47,7 @@ export function countDense(
     }
   }
   const blockBits = new Float64Array(blocks.count);
-  sumLengths(symbols, rankOf, ends, order, distinct, lengths, blocks.length, blockBits);
+  sumLengths(symbols, rankOf, ends, order, distinct, lengths, blocks.ends, blockBits);
   return { contextTallies: contexts.finish(), pairTallies: pairs.finish(), blockBits };
 }
 
@@ -83,11 +83,12 @@ function sumLengths(
   order: number,
   distinct: number,
   lengths: Float32Array,
-  blockLength: number,
+  blockEnds: Uint32Array,
   blockBits: Float64Array,
 ): void {
   const oldest = distinct ** order;
   let from = 0;
+  let block = 0;
   for (let m = 0; m < ends.length; m++) {
     const to = ends[m];
     if (to - from > order) {
@@ -95,8 +96,8 @@ function sumLengths(
       for (let i = from; i < from + order; i++) context = context * distinct + rankOf[symbols[i]];
       let i = from + order;
       while (i < to) {
-        const block = Math.floor((i - order) / blockLength);
-        const stop = Math.min(to, (block + 1) * blockLength + order);
+        while (blockEnds[block] <= i - order) block++;
+        const stop = Math.min(to, blockEnds[block] + order);
         let bits = 0;
         for (; i < stop; i++) {
           const pair = context * distinct + rankOf[symbols[i]];

@@ -45,11 +45,17 @@ export function sortWindows(
   const shared = new Uint8Array(spare.buffer, 0, count);
   const room = new Uint8Array(spare.buffer, count, count);
   const block = new Uint8Array(spare.buffer, 2 * count, count);
+  const blockAt = new Uint8Array(spare.buffer, 3 * count, count);
+  let from = 0;
+  blocks.ends.forEach((end, b) => {
+    blockAt.fill(b, from, end);
+    from = end;
+  });
   shareWithPrevious(ranks, positions, width, shared);
   for (let j = 0; j < count; j++) {
     const position = positions[j];
     room[j] = roomAt[position];
-    block[j] = Math.floor(position / blocks.length);
+    block[j] = blockAt[position];
   }
   return { shared, room, block };
 }

@@ -1,6 +1,6 @@
-import { InputError } from '../errors/errors.ts';
+import { BugError, InputError } from '../errors/errors.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
-import { countingBlocks, positionsByBlock } from './context-counts-blocks.ts';
+import { type CountingBlocks, countingBlocks, positionsByBlock } from './context-counts-blocks.ts';
 import { type CountedOrder, countDense } from './context-counts-dense.ts';
 import {
   COUNTING_MEMORY_BYTES,
@@ -36,8 +36,8 @@ export interface CountingOptions {
   /** Highest order, 0 … {@link HIGHEST_COUNTED_ORDER}. */
   readonly upto: number;
   readonly contexts: ContextScope;
-  /** Contiguous blocks, 1 … 256; 64 when absent. */
-  readonly blocks?: number;
+  /** Contiguous blocks of one length, 1 … 256, or where each ends; 64 when absent. */
+  readonly blocks?: number | Uint32Array;
   /** Memory for the sequence and its counting together, in bytes; {@link COUNTING_MEMORY_BYTES} when absent. */
   readonly memoryBytes?: number;
   /** Called after each order. */
@@ -45,6 +45,9 @@ export interface CountingOptions {
 }
 
 export const HIGHEST_COUNTED_ORDER = 32;
+
+/** Most blocks: a block's number is kept in one byte a symbol. */
+export const MOST_COUNTED_BLOCKS = 256;
 
 /**
  * Counts contexts and pairs of orders 0 … `upto`, exactly.
@@ -57,9 +60,8 @@ export const HIGHEST_COUNTED_ORDER = 32;
  */
 export function countContexts(sequence: SymbolSequence, options: CountingOptions): OrderCounts[] {
   const { symbols } = sequence;
-  const { upto, contexts, blocks: blockCount = 64, progress } = options;
+  const { upto, contexts, progress } = options;
   checkRange('the highest order', upto, 0, HIGHEST_COUNTED_ORDER);
-  checkRange('the number of blocks', blockCount, 1, 256);
   const ends = contexts === 'message' ? sequence.messageEnds : Uint32Array.of(symbols.length);
   const ranked = rankSymbols(symbols);
   const { distinct } = ranked;
@@ -70,7 +72,7 @@ export function countContexts(sequence: SymbolSequence, options: CountingOptions
     upto,
     memoryBytes: options.memoryBytes ?? COUNTING_MEMORY_BYTES,
   });
-  const blocks = countingBlocks(symbols.length, blockCount);
+  const blocks = blocksOf(options.blocks ?? 64, symbols.length);
   let windows: SortedWindows | undefined;
   const orders: OrderCounts[] = [];
   for (let order = 0; order <= upto; order++) {
@@ -92,6 +94,18 @@ export function countContexts(sequence: SymbolSequence, options: CountingOptions
     progress?.(order + 1, upto + 1);
   }
   return orders;
+}
+
+function blocksOf(blocks: number | Uint32Array, symbolCount: number): CountingBlocks {
+  const count = typeof blocks === 'number' ? blocks : blocks.length;
+  checkRange('the number of blocks', count, 1, MOST_COUNTED_BLOCKS);
+  if (typeof blocks === 'number') return countingBlocks(symbolCount, blocks);
+  for (let b = 1; b < count; b++) {
+    if (blocks[b] < blocks[b - 1]) throw new BugError('the ends of counting blocks fall');
+  }
+  if (blocks[count - 1] !== symbolCount)
+    throw new BugError('counting blocks do not end with the data');
+  return { count, ends: blocks };
 }
 
 function checkRange(what: string, value: number, least: number, most: number): void {

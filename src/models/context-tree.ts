@@ -85,8 +85,42 @@ export class ContextTree {
   /** Moves every context on by one symbol; strings never met become nodes whose two words are 0. */
   advance(symbol: number): void {
     const contexts = this.contexts;
-    for (let j = this.depth; j >= 1; j--) contexts[j] = this.#child(contexts[j - 1], symbol, j);
+    let j = this.depth;
+    if (j === 0) return;
+    const two = this.#two;
+    for (const lowest = two.length > 0 ? 2 : 1; j > lowest; j--) {
+      contexts[j] = this.#hashedChild(contexts[j - 1], symbol);
+    }
+    if (j === 2) {
+      const known = two[this.#last * (this.alphabetSize + 1) + symbol];
+      contexts[2] = known !== 0 ? known : this.#child(contexts[1], symbol, 2);
+    }
+    const known = this.#one[symbol];
+    contexts[1] = known !== 0 ? known : this.#child(ROOT, symbol, 1);
     this.#last = symbol;
+  }
+
+  /**
+   * For kernels that follow the longest context alone: node after `symbol` is `table[last · width + symbol]`, or not made
+   * yet where that is 0. An empty table: the depth is not 1 or 2, or the alphabet too large. After following it,
+   * {@link moveTo} brings the tree's own contexts up to date.
+   */
+  longestContexts(): { readonly table: Uint32Array; readonly width: number } {
+    if (this.depth === 1) return { table: this.#one, width: 0 };
+    return { table: this.depth === 2 ? this.#two : NO_WORDS, width: this.alphabetSize + 1 };
+  }
+
+  /** The last symbol, or the start value. */
+  get last(): number {
+    return this.#last;
+  }
+
+  /** Sets the contexts to those after `last`, the longest of which is `node`. */
+  moveTo(last: number, node: number): void {
+    const contexts = this.contexts;
+    contexts[contexts.length - 1] = node;
+    if (this.#two.length > 0 && this.depth === 2) contexts[1] = this.#one[last];
+    this.#last = last;
   }
 
   /** The node of `parent` with `symbol` added, or 0 when that string was never met. */
@@ -165,6 +199,10 @@ export class ContextTree {
       this.#two[index] = node;
       return node;
     }
+    return this.#hashedChild(parent, symbol);
+  }
+
+  #hashedChild(parent: number, symbol: number): number {
     const slot = this.#slotOf(parent, symbol);
     const known = this.#slots[slot];
     if (known !== 0) return known;

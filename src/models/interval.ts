@@ -1,7 +1,7 @@
 /**
  * What passes between a model and a coding stage: intervals [low, low + frequency) of total, all integers.
  *
- * Promises of every model, checked by {@link checkInterval} where speed allows:
+ * Promises of every model ({@link checkInterval} holds them to it in tests; kernels trust them):
  * 1. 0 ≤ low, 1 ≤ frequency, low + frequency ≤ total;
  * 2. total ≤ {@link LARGEST_TOTAL} where a stage codes it (a meter takes any total below 2^53);
  * 3. an interval that is certain (frequency = total) is not handed over at all: it carries nothing, and a stage would lose
@@ -14,7 +14,12 @@ import { PromiseError } from '../errors/errors.ts';
 /** Largest total that a stage divides its range by, at either precision. */
 export const LARGEST_TOTAL = 2 ** 22;
 
-/** The encoder's side: takes intervals one by one. */
+/**
+ * The encoder's side: takes intervals one by one.
+ *
+ * Models call it from their inner loops. There are few classes of it in a process (a range encoder, a meter), and they
+ * must stay few: a call site that has seen more than four is a third slower.
+ */
 export interface IntervalSink {
   put(low: number, frequency: number, total: number): void;
 }
@@ -37,35 +42,4 @@ export function checkInterval(low: number, frequency: number, total: number): vo
     expected: `0 ≤ low, 1 ≤ frequency, low + frequency ≤ total ≤ ${LARGEST_TOTAL}`,
     got: `low ${low}, frequency ${frequency}, total ${total}`,
   });
-}
-
-/**
- * Intervals on their way from a model to a stage, three words each.
- *
- * Models write whole blocks of symbols to a tape and a stage then reads it in one loop of its own: both loops keep their
- * state in registers, and neither has a call site that sees many classes.
- */
-export class IntervalTape implements IntervalSink {
-  /** low, frequency, total of one interval after the other. */
-  readonly words: Float64Array;
-  /** Words in use: three times the intervals. */
-  length = 0;
-
-  /** @param capacity  in intervals; the caller empties the tape before it would overflow */
-  constructor(capacity: number) {
-    this.words = new Float64Array(3 * capacity);
-  }
-
-  put(low: number, frequency: number, total: number): void {
-    const at = this.length;
-    const words = this.words;
-    words[at] = low;
-    words[at + 1] = frequency;
-    words[at + 2] = total;
-    this.length = at + 3;
-  }
-
-  clear(): void {
-    this.length = 0;
-  }
 }

@@ -18,7 +18,7 @@ import { childrenOf, suffixesOf } from './static-table.ts';
  * - The symbols that follow a string are among those that follow it without its oldest symbol (the whole alphabet for the
  *   empty string). Their number is written, then which ones: while at least one candidate in 16 is wanted, one yes or no
  *   each, of exactly the odds that remain; else the number of candidates skipped.
- * - A count is written as its bit length, in the context of the length that the same symbol's count had last, and about
+ * - A count is written as its bit length, in the context of the length that the same symbol's count had last, and less than
  *   half of its further bits: what is cut costs a fraction of a bit in the code lengths, and saves more in the table.
  *
  * Everything goes through small adaptive models and the range coder, in a code string of its own.
@@ -27,8 +27,8 @@ import { childrenOf, suffixesOf } from './static-table.ts';
 /** Candidates for one wanted, from which on gaps are shorter than single decisions. */
 const SPARSE = 16;
 
-/** Bits kept below the leading 1 of a count of `length` bits. */
-const keptBits = (length: number): number => Math.max(0, length >> 1) - (length > 3 ? 1 : 0);
+/** Bits kept below the leading 1 of a count of `length` bits: swept on five files at orders 0 to 3. */
+const keptBits = (length: number): number => Math.max(0, ((length - 1) >> 1) - 2);
 
 /** The count that the decoder sees: the middle of the counts that share the bits kept. */
 export function roundCount(count: number): number {

@@ -1,6 +1,6 @@
 import { CorruptStreamError, PromiseError } from '../errors/errors.ts';
 import type { SymbolArray } from '../symbols/sequence.ts';
-import type { IntervalSource, IntervalTape } from './interval.ts';
+import type { IntervalSink, IntervalSource } from './interval.ts';
 import type { StaticTable } from './static-table.ts';
 import type { SymbolModel } from './symbol-model.ts';
 
@@ -12,25 +12,23 @@ const NONE = -1;
  * With a table of exact weights it drives a meter only: its totals may pass what a stage can code.
  */
 export class StaticModel implements SymbolModel {
-  readonly intervalsPerSymbol: number;
   readonly #table: StaticTable;
   #context: number;
 
   constructor(table: StaticTable) {
     this.#table = table;
     this.#context = table.startContext;
-    this.intervalsPerSymbol = table.unseen === 'escape' ? table.order + 2 : 1;
   }
 
   reset(): void {
     this.#context = this.#table.startContext;
   }
 
-  encode(symbols: SymbolArray, from: number, to: number, tape: IntervalTape): void {
+  encode(symbols: SymbolArray, from: number, to: number, sink: IntervalSink): void {
     const escapes = this.#table.unseen === 'escape';
     for (let i = from; i < to; i++) {
-      if (escapes) this.#encodeEscaping(symbols[i], tape);
-      else this.#encodeAtOrder(symbols[i], tape);
+      if (escapes) this.#encodeEscaping(symbols[i], sink);
+      else this.#encodeAtOrder(symbols[i], sink);
     }
   }
 
@@ -41,7 +39,7 @@ export class StaticModel implements SymbolModel {
     }
   }
 
-  #encodeEscaping(symbol: number, tape: IntervalTape): void {
+  #encodeEscaping(symbol: number, sink: IntervalSink): void {
     const { totals, unseenFrom, suffix, lows, frequencies, next } = this.#table;
     let context = this.#context;
     for (;;) {
@@ -49,17 +47,17 @@ export class StaticModel implements SymbolModel {
       if (total > 0) {
         const entry = this.#find(context, symbol);
         if (entry !== NONE) {
-          if (frequencies[entry] < total) tape.put(lows[entry], frequencies[entry], total);
+          if (frequencies[entry] < total) sink.put(lows[entry], frequencies[entry], total);
           this.#context = next[entry];
           return;
         }
-        tape.put(unseenFrom[context], total - unseenFrom[context], total);
+        sink.put(unseenFrom[context], total - unseenFrom[context], total);
       }
       if (context === 0) break;
       context = suffix[context];
     }
     const size = this.#table.alphabetSize;
-    if (size > 1) tape.put(symbol, 1, size);
+    if (size > 1) sink.put(symbol, 1, size);
     this.#context = 0;
   }
 
@@ -92,14 +90,14 @@ export class StaticModel implements SymbolModel {
     return symbol;
   }
 
-  #encodeAtOrder(symbol: number, tape: IntervalTape): void {
+  #encodeAtOrder(symbol: number, sink: IntervalSink): void {
     const { totals, unseenFrom, unseenFrequency, lows, frequencies, next, entryStart } =
       this.#table;
     const context = this.#context;
     const total = totals[context];
     const entry = this.#find(context, symbol);
     if (entry !== NONE && total > 0) {
-      if (frequencies[entry] < total) tape.put(lows[entry], frequencies[entry], total);
+      if (frequencies[entry] < total) sink.put(lows[entry], frequencies[entry], total);
       this.#context = next[entry];
       return;
     }
@@ -110,11 +108,11 @@ export class StaticModel implements SymbolModel {
     }
     const size = this.#table.alphabetSize;
     if (total === 0) {
-      if (size > 1) tape.put(symbol, 1, size);
+      if (size > 1) sink.put(symbol, 1, size);
     } else {
       const rank = symbol - (this.#firstFrom(context, symbol) - entryStart[context]);
       const frequency = unseenFrequency[context];
-      tape.put(unseenFrom[context] + rank * frequency, frequency, total);
+      sink.put(unseenFrom[context] + rank * frequency, frequency, total);
     }
     this.#context = this.#after(context, symbol);
   }

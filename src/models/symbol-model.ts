@@ -1,5 +1,5 @@
 import type { SymbolArray } from '../symbols/sequence.ts';
-import type { IntervalSource, IntervalTape } from './interval.ts';
+import type { IntervalSink, IntervalSource } from './interval.ts';
 
 /**
  * A probability model of symbols, the same at both ends: what it does for a symbol depends only on the symbols before.
@@ -7,12 +7,10 @@ import type { IntervalSource, IntervalTape } from './interval.ts';
  * The intervals it gives keep the promises of interval.ts.
  */
 export interface SymbolModel {
-  /** Most intervals that one symbol takes: the room the tape must have for each. */
-  readonly intervalsPerSymbol: number;
   /** Begins a reset unit: the trained or empty state, and the contexts of a message's start. */
   reset(): void;
-  /** Appends the intervals of `symbols[from … to − 1]` to the tape. */
-  encode(symbols: SymbolArray, from: number, to: number, tape: IntervalTape): void;
+  /** Gives the intervals of `symbols[from … to − 1]` to the sink. */
+  encode(symbols: SymbolArray, from: number, to: number, sink: IntervalSink): void;
   /** Decodes `symbols[from … to − 1]`. */
   decode(source: IntervalSource, symbols: SymbolArray, from: number, to: number): void;
 }

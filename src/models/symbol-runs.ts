@@ -4,6 +4,26 @@ import { MemoryBound, MODEL_MEMORY_BYTES } from './memory-bound.ts';
 /** Set in a node's symbol word when it has two symbols or more, and so a run. */
 export const HAS_RUN = 0x20000;
 
+/**
+ * Adds one to the count of the entry at `position` of a run; it changes places with the one before when that is smaller.
+ * For kernels, which add to the node's sum themselves; elsewhere {@link SymbolRuns.increment}.
+ */
+export function countEntry(
+  pool: Uint32Array,
+  run: number,
+  position: number,
+  symbolBits: number,
+): void {
+  const entry = (pool[position] + (1 << symbolBits)) >>> 0;
+  const before = pool[position - 1];
+  if (entry >>> symbolBits > before >>> symbolBits && position - 1 > run) {
+    pool[position] = before;
+    pool[position - 1] = entry;
+  } else {
+    pool[position] = entry;
+  }
+}
+
 const SMALLEST_BLOCK = 4;
 const NO_WORDS = new Uint32Array(0);
 
@@ -39,8 +59,8 @@ export class SymbolRuns {
   /** First free block of SMALLEST_BLOCK << class words; each free block holds the offset of the next. */
   readonly #free = new Uint32Array(20);
 
-  /** Nodes below this are saved before they change. */
-  #markedNodes = 0;
+  /** Nodes below this are saved before they change: {@link countEntry} is not for them. */
+  markedNodes = 0;
   #markedPoolEnd = SMALLEST_BLOCK;
   #stamps: Uint32Array = NO_WORDS;
   #stamp = 0;
@@ -119,7 +139,7 @@ export class SymbolRuns {
 
   /** Counts the one symbol of a node without a run. */
   incrementOnly(node: number): void {
-    if (node < this.#markedNodes) this.#save(node);
+    if (node < this.markedNodes) this.#save(node);
     const words = this.tree.words;
     const at = node * NODE_WORDS;
     words[at + NODE_FIRST] += 1 << this.symbolBits;
@@ -129,21 +149,13 @@ export class SymbolRuns {
 
   /** Counts the entry at offset `position` of the pool, in the node's run. */
   increment(node: number, position: number): void {
-    if (node < this.#markedNodes) this.#save(node);
+    if (node < this.markedNodes) this.#save(node);
     const words = this.tree.words;
-    const pool = this.pool;
     const at = node * NODE_WORDS;
-    const bits = this.symbolBits;
-    const entry = (pool[position] + (1 << bits)) >>> 0;
+    const count = (this.pool[position] >>> this.symbolBits) + 1;
     words[at + NODE_SECOND]++;
-    const before = pool[position - 1];
-    if (position - 1 > words[at + NODE_FIRST] && entry >>> bits > before >>> bits) {
-      pool[position] = before;
-      pool[position - 1] = entry;
-    } else {
-      pool[position] = entry;
-    }
-    if (entry >>> bits === this.largestCount) this.halve(node);
+    countEntry(this.pool, words[at + NODE_FIRST], position, this.symbolBits);
+    if (count === this.largestCount) this.halve(node);
   }
 
   /** Halves all counts of the node: c becomes ⌈c/2⌉ or ⌊c/2⌋. */
@@ -175,11 +187,11 @@ export class SymbolRuns {
 
   /** Makes the present state the one that {@link restore} returns to. */
   mark(): void {
-    this.#markedNodes = this.tree.nodeCount;
+    this.markedNodes = this.tree.nodeCount;
     this.#markedPoolEnd = this.#poolEnd;
     // A free block of the marked state would have to be saved too; new ones are taken instead.
     this.#free.fill(0);
-    this.#stamps = this.#memory.grow(NO_WORDS, this.#markedNodes);
+    this.#stamps = this.#memory.grow(NO_WORDS, this.markedNodes);
     this.#stamp = 1;
     this.#journalLength = 0;
   }
@@ -203,7 +215,7 @@ export class SymbolRuns {
       }
     }
     this.#journalLength = 0;
-    this.tree.truncate(this.#markedNodes);
+    this.tree.truncate(this.markedNodes);
     this.#poolEnd = this.#markedPoolEnd;
     this.#free.fill(0);
     if (++this.#stamp === 2 ** 32) {
@@ -213,7 +225,7 @@ export class SymbolRuns {
   }
 
   #save(node: number): void {
-    if (node >= this.#markedNodes || this.#stamps[node] === this.#stamp) return;
+    if (node >= this.markedNodes || this.#stamps[node] === this.#stamp) return;
     this.#stamps[node] = this.#stamp;
     const words = this.tree.words;
     const at = node * NODE_WORDS;

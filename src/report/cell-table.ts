@@ -74,6 +74,13 @@ function columnsFor(cells: readonly CellRecord[], options: CellTableOptions): Co
       text: (c) => c.message_bytes?.mean.toFixed(1) ?? '',
     });
   }
+  if (cells.some((c) => c.loss !== undefined)) {
+    columns.push(
+      always(['% lost', 'msgs'], true, (c) =>
+        c.loss === undefined ? '' : (c.loss.share * 100).toPrecision(2),
+      ),
+    );
+  }
   if (cells.some((c) => c.encode !== undefined)) {
     for (const end of ['encode', 'decode'] as const) {
       columns.push({

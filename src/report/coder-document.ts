@@ -5,13 +5,17 @@ function parameterRow(parameter: ParameterDeclaration): string {
   const values =
     parameter.kind === 'integer'
       ? `${parameter.min} … ${parameter.max}`
-      : parameter.words.map((word) => `\`${word}\``).join(', ');
+      : parameter.kind === 'text'
+        ? parameter.form
+        : parameter.words.map((word) => `\`${word}\``).join(', ');
   const standard =
     parameter.standard !== undefined
       ? `\`${parameter.standard}\``
       : parameter.kind === 'integer' && parameter.optional
         ? 'chosen by the coder'
-        : 'must be given';
+        : parameter.kind === 'text'
+          ? 'not given'
+          : 'must be given';
   return `| \`${parameter.key}\` | ${values} | ${standard} | ${parameter.summary} |`;
 }
 

@@ -1,5 +1,6 @@
-import type { CorpusRecord, EntropyRecord, RunRecord } from '../harness/run-record.ts';
+import type { CellRecord, CorpusRecord, EntropyRecord, RunRecord } from '../harness/run-record.ts';
 import { cellTable } from './cell-table.ts';
+import { fieldLines } from './field-lines.ts';
 import {
   countText,
   decimalsFor,
@@ -148,7 +149,18 @@ function remarks(record: RunRecord, corpus: CorpusRecord): string[] {
   return notes;
 }
 
-/** One corpus on a terminal: head, table of cells, remarks. */
+/** Which field costs what, of the best cell that was coded by fields. */
+function bestFieldLines(
+  cells: readonly CellRecord[],
+  corpus: CorpusRecord,
+  columns: number,
+): string[] {
+  const best = bestCell(cells.filter((cell) => cell.fields !== undefined));
+  if (best === undefined || corpus.record_bytes === undefined) return [];
+  return [...fieldLines(best, corpus.record_bytes, columns), ''];
+}
+
+/** One corpus on a terminal: head, table of cells, the fields of a record, remarks. */
 export function corpusSection(
   record: RunRecord,
   corpus: CorpusRecord,
@@ -167,6 +179,7 @@ export function corpusSection(
       ...(options.markOf === undefined ? {} : { markOf: (cell) => options.markOf!(cell.id) }),
     }),
     '',
+    ...bestFieldLines(cells, corpus, columns),
     ...remarks(record, corpus).flatMap((note) => wrapText(note, columns - 1, ' ')),
   ];
 }

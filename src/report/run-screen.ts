@@ -1,7 +1,7 @@
 import type { Comparison } from '../compare/compare-cells.ts';
 import type { RunRecord } from '../harness/run-record.ts';
 import { corpusSection } from './corpus-section.ts';
-import { countText, rateText, symbolNoun, wrapText } from './figures.ts';
+import { countText, rateText, sizeText, symbolNoun, wrapText } from './figures.ts';
 import { cellPhrase } from './floor-lines.ts';
 
 export interface RunScreenOptions {
@@ -35,6 +35,28 @@ function comparisonLines(record: RunRecord, corpus: string, options: RunScreenOp
   return lines.flatMap((line) => wrapText(line, options.columns - 1, ' '));
 }
 
+/** How the tables of the best shipped cell age, in one paragraph. */
+function ageingLines(record: RunRecord, corpus: string, columns: number): string[] {
+  const ageing = record.ageing?.find((a) => a.corpus === corpus);
+  const cell = record.cells.find((c) => c.id === ageing?.cell);
+  if (ageing === undefined || cell === undefined || ageing.segments.length < 2) return [];
+  const noun = symbolNoun(record.corpora.find((c) => c.name === corpus)?.symbols_as ?? '');
+  const first = ageing.segments[0];
+  const last = ageing.segments[ageing.segments.length - 1];
+  const tables = ageing.table_bits === undefined ? '' : ` (${sizeText(ageing.table_bits / 8)})`;
+  const verdict =
+    ageing.table_bits === undefined
+      ? ''
+      : ageing.pays_after === undefined
+        ? ` Sending new tables${tables} would not pay within these data.`
+        : ` Sending new tables${tables} pays within ${countText(ageing.pays_after)} symbols.`;
+  return wrapText(
+    `Ageing of ${cellPhrase(cell)}: ideal ${rateText(first.rate)} bits/${noun} right after the train part, ${rateText(last.rate)} at a distance of ${countText(last.distance)} symbols; retrained on all before, ${rateText(last.retrained_rate)} there.${verdict}`,
+    columns - 1,
+    ' ',
+  );
+}
+
 /** The screen of `bitassay run`: a section a corpus, then what the list left out. */
 export function runScreen(record: RunRecord, options: RunScreenOptions): string {
   const lines: string[] = [` ${record.plan.title}`, ''];
@@ -49,6 +71,7 @@ export function runScreen(record: RunRecord, options: RunScreenOptions): string 
         markOf: (id) => (equal.has(id) ? '=' : ' '),
       }),
       ...comparisonLines(record, corpus.name, options),
+      ...ageingLines(record, corpus.name, options.columns),
       '',
     );
   }
@@ -56,6 +79,11 @@ export function runScreen(record: RunRecord, options: RunScreenOptions): string 
   if (record.cells.some((c) => c.encode !== undefined)) {
     notes.push(
       'Speed is the time of the pacer (deflate-huffman on the whole test part) by that of the cell, in the same round; above ×1 is faster.',
+    );
+  }
+  if (record.plan.loss_rate !== undefined) {
+    notes.push(
+      `With ${Number((record.plan.loss_rate * 100).toPrecision(3))} % of the messages lost on the way, independently: % lost counts all messages that cannot be decoded then. Losses in bursts spoil fewer for each one lost. Whether that is tolerable, your link's own protection and standards decide.`,
     );
   }
   if (record.undeclared > 0) {

@@ -1,19 +1,24 @@
-/** Low part of a weight held in two 32-bit integers: a package of words up to 32 bits can weigh 32 · 2^53. */
+/**
+ * Low part of a weight held in two 32-bit integers: a package of words up to 32 bits can weigh 32 ·
+ * 2^53.
+ */
 const LOW_BITS = 30;
 const LOW_SIZE = 2 ** LOW_BITS;
 
 /**
  * How many words of each length an optimal code of at most `maxBits` bits has, by package-merge.
  *
- * A word of length l buys one coin at each of the levels 1 … l. From the deepest level up, neighbours in the sorted list of a level
- * are packed into one coin of the level above. The 2k − 2 lightest coins of level 1 are an optimal purchase; only the number
- * of single coins among those bought at each level is needed, and one bit a coin remembers which are single.
+ * A word of length l buys one coin at each of the levels 1 … l. From the deepest level up,
+ * neighbours in the sorted list of a level are packed into one coin of the level above. The 2k − 2
+ * lightest coins of level 1 are an optimal purchase; only the number of single coins among those
+ * bought at each level is needed, and one bit a coin remembers which are single.
  *
  * @param weights  sorted, lightest first; positive integers with a sum below 2^53; exact
  * @param count    k, 2 … 2^maxBits
  * @returns index l: number of words of l bits, l = 1 … maxBits
  * Cost: O(k · maxBits) time, 32 k + k · maxBits / 4 bytes.
- * Source: L. L. Larmore, D. S. Hirschberg, "A fast algorithm for optimal length-limited Huffman codes", J. ACM 37(3), 1990.
+ * Source: L. L. Larmore, D. S. Hirschberg, "A fast algorithm for optimal length-limited Huffman
+ * codes", J. ACM 37(3), 1990.
  */
 export function limitedLengthCounts(
   weights: Float64Array,
@@ -69,7 +74,8 @@ export function limitedLengthCounts(
     [low, nextLow] = [nextLow, low];
   }
 
-  // The symbols with a word of at least j bits are the lightest ones, as many as single coins at the j-th fullest level.
+  // The symbols with a word of at least j bits are the lightest ones, as many as single coins at
+  // the j-th fullest level.
   const bought = new Float64Array(maxBits);
   let take = 2 * count - 2;
   for (let level = 1; level <= maxBits; level++) {

@@ -7,16 +7,17 @@ export const ABSENT = 255;
 /** Longest word that any coder here may use, in bits: a word fits one unsigned 32-bit integer. */
 export const LONGEST_WORD_BITS = 32;
 
-/** Depths of an unlimited code: a total below 2^53 cannot reach the 80th Fibonacci number. */
+/** No unlimited code is deeper: 80 levels need the 80th Fibonacci number as total, above 2^53. */
 const DEPTHS = 96;
 
 /**
- * Fits code lengths of minimum redundancy, again and again, in buffers of its own, so that a coder that fits each
- * message allocates nothing.
+ * Fits code lengths of minimum redundancy, again and again, in buffers of its own, so that a coder
+ * that fits each message allocates nothing.
  *
- * Cost: O(k log k) for k weights, and O(k · maxBits) more when the limit binds; 40 to 60 bytes of memory a weight.
- * Source: D. A. Huffman, Proc. IRE 40(9), 1952; linear after sorting with two queues: J. van Leeuwen, ICALP 1976. Limit: see
- * code-lengths-limited.ts.
+ * Cost: O(k log k) for k weights, and O(k · maxBits) more when the limit binds; 40 to 60 bytes of
+ * memory a weight.
+ * Source: D. A. Huffman, Proc. IRE 40(9), 1952; linear after sorting with two queues: J. van
+ * Leeuwen, ICALP 1976. Limit: see code-lengths-limited.ts.
  */
 export class CodeLengthFitter {
   #capacity = 0;
@@ -31,11 +32,13 @@ export class CodeLengthFitter {
   /**
    * Code lengths of `weights[0 … count − 1]` into `lengths`.
    *
-   * Promises: the same on every machine; among equal weights the lower index has the shorter or the same length; the Kraft sum
-   * is exactly 1 for count ≥ 2. A lone weight gets length 0: its word carries nothing.
+   * Promises: the same on every machine; among equal weights the lower index has the shorter or the
+   * same length; the Kraft sum is exactly 1 for count ≥ 2. A lone weight gets length 0: its word
+   * carries nothing.
    * @param weights  positive integers, their sum below 2^53
    * @param maxBits  longest word, ⌈log2 count⌉ … 32 bits
-   * @throws PromiseError for a weight that is not a positive integer; InputError when the sum is too large or the limit too low
+   * @throws PromiseError for a weight that is not a positive integer; InputError when the sum is
+   *   too large or the limit too low
    */
   fit(weights: Float64Array, count: number, maxBits: number, lengths: Uint8Array): void {
     if (count === 0) return;
@@ -61,7 +64,10 @@ export class CodeLengthFitter {
     }
   }
 
-  /** Lightest first; among equals the higher index first, so that the lower one ends up nearer to the root. */
+  /**
+   * Lightest first; among equals the higher index first, so that the lower one ends up nearer to
+   * the root.
+   */
   #sort(weights: Float64Array, count: number): void {
     if (count > this.#capacity) this.#grow(count);
     let total = 0;
@@ -132,7 +138,8 @@ export class CodeLengthFitter {
     const root = count - 2;
     depths[root] = 0;
     let longest = 1;
-    // A node at depth d has two children at depth d + 1; those that are nodes themselves are no leaves.
+    // A node at depth d has two children at depth d + 1; those that are nodes themselves are no
+    // leaves.
     lengthCounts[1] = 2;
     for (let node = root - 1; node >= 0; node--) {
       const depth = depths[parents[node]] + 1;
@@ -169,7 +176,8 @@ function insertionSort(keys: Float64Array, count: number): void {
 }
 
 /**
- * Code lengths of a minimum-redundancy prefix code, limited to `maxBits`: {@link CodeLengthFitter} for one use.
+ * Code lengths of a minimum-redundancy prefix code, limited to `maxBits`: {@link CodeLengthFitter}
+ * for one use.
  *
  * @param weights  shape [m], integers ≥ 0, their sum below 2^53
  * @param maxBits  1 … 32; 2^maxBits ≥ number of non-zero weights

@@ -1,4 +1,4 @@
-import type { IntervalSink, IntervalTape } from '../models/interval.ts';
+import type { IntervalSink } from '../models/interval.ts';
 
 /** Far above the smallest double, so that one more ratio of 2^−53 cannot reach denormals. */
 const SMALL = 2 ** -900;
@@ -16,16 +16,6 @@ export class Meter implements IntervalSink {
   put(_low: number, frequency: number, total: number): void {
     this.#product *= frequency / total;
     if (this.#product < SMALL) this.#settle();
-  }
-
-  /** Weighs and clears a tape. */
-  putTape(tape: IntervalTape): void {
-    const { words, length } = tape;
-    for (let i = 0; i < length; i += 3) {
-      this.#product *= words[i + 1] / words[i + 2];
-      if (this.#product < SMALL) this.#settle();
-    }
-    tape.clear();
   }
 
   /** The bits since the last call. */

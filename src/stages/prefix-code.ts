@@ -5,11 +5,14 @@ import { ABSENT, LONGEST_WORD_BITS } from './code-lengths.ts';
 export const LENGTH_SLOTS = LONGEST_WORD_BITS + 1;
 
 /**
- * Code words by length alone, in canonical order: shortest first, among equal lengths in the order listed; each word is
- * the one before plus 1, shifted to its own length. So the lengths say every word.
+ * Code words by length alone, in canonical order: shortest first, among equal lengths in the order
+ * listed; each word is the one before plus 1, shifted to its own length. So the lengths say every
+ * word.
  *
- * Sources: E. S. Schwartz, B. Kallick, Comm. ACM 7(3), 1964; as in RFC 1951, section 3.2.2 (P. Deutsch, 1996).
- * Examples of lengths: 1 2 2 is complete; 1 2 is under-full (the word 11 is nobody's); 1 1 2 is over-full and refused.
+ * Sources: E. S. Schwartz, B. Kallick, Comm. ACM 7(3), 1964; as in RFC 1951, section 3.2.2 (P.
+ * Deutsch, 1996).
+ * Examples of lengths: 1 2 2 is complete; 1 2 is under-full (the word 11 is nobody's); 1 1 2 is
+ * over-full and refused.
  */
 export class LengthTally {
   /** Words of each length; index 0 counts empty words. */

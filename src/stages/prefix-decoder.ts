@@ -3,7 +3,10 @@ import { CorruptStreamError } from '../errors/errors.ts';
 import type { SymbolArray } from '../symbols/sequence.ts';
 import { LENGTH_SLOTS, LengthTally } from './prefix-code.ts';
 
-/** Bits that the look-up table of a byte alphabet sees at once; its entries hold up to three symbols. */
+/**
+ * Bits that the look-up table of a byte alphabet sees at once; its entries hold up to three
+ * symbols.
+ */
 const BYTE_TABLE_BITS = 12;
 /** The same for larger alphabets, with one symbol an entry. */
 const WIDE_TABLE_BITS = 16;
@@ -13,9 +16,10 @@ const SYMBOL_SPAN = 2 ** 27;
 /**
  * Reads symbols that PrefixEncoder wrote.
  *
- * One look at the next bits gives up to three symbols of a byte alphabet, or one of a larger; words longer than the table's index
- * are found by their canonical first words, length by length. Bits are loaded 32 at a time past the message's own end,
- * which is harmless: a word that lies within the message does not depend on what follows, and one that does not is refused.
+ * One look at the next bits gives up to three symbols of a byte alphabet, or one of a larger; words
+ * longer than the table's index are found by their canonical first words, length by length. Bits
+ * are loaded 32 at a time past the message's own end, which is harmless: a word that lies within
+ * the message does not depend on what follows, and one that does not is refused.
  */
 export class PrefixDecoder {
   readonly #byteAlphabet: boolean;
@@ -47,7 +51,8 @@ export class PrefixDecoder {
 
   /**
    * Takes a new code, as `PrefixEncoder.setWords` does, and makes its tables.
-   * @param expectedSymbols  about how many will be decoded with it; a guide for the size of the table
+   * @param expectedSymbols  about how many will be decoded with it; a guide for the size of the
+   *   table
    */
   setWords(
     symbols: Float64Array | Uint32Array,
@@ -118,7 +123,8 @@ export class PrefixDecoder {
   }
 
   /**
-   * Decodes into `out[from … to − 1]`, from the reader's position, which moves on; a `stop` symbol ends the decoding early.
+   * Decodes into `out[from … to − 1]`, from the reader's position, which moves on; a `stop` symbol
+   * ends the decoding early.
    * @returns index past the last symbol decoded: `to`, or one past the first `stop`
    * @throws CorruptStreamError for a word that no symbol has, or one that passes the reader's limit
    */
@@ -154,7 +160,8 @@ export class PrefixDecoder {
     let at = (reader.position - bit) / 8;
     let filled = from;
 
-    // Two look-ups take at most 24 of the 25 bits loaded and give at most 6 symbols; the second store covers 7.
+    // Two look-ups take at most 24 of the 25 bits loaded and give at most 6 symbols; the second
+    // store covers 7.
     const lastTriple = to - 7;
     while (filled <= lastTriple && at <= lastLoad) {
       const window = view.getInt32(at) << bit;

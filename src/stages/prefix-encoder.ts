@@ -10,15 +10,19 @@ const BLOCK = 4096;
 /** Symbols after which a table of pairs has paid for its making. */
 const PAIRS_PAY_FROM = 32_768;
 
-/** A word, or a pair of words, of at most this many bits goes out at once beside 7 pending bits: 31 bits in all. */
+/**
+ * A word, or a pair of words, of at most this many bits goes out at once beside 7 pending bits: 31
+ * bits in all.
+ */
 const WORD_BITS_AT_ONCE = 24;
 
 /**
  * Writes symbols as words of a canonical prefix code, most significant bit first.
  *
- * The state is a 32-bit accumulator whose pending bits stand at the top; each word is or-ed in below them and the whole
- * accumulator stored, so that no branch depends on how many bytes are complete. Byte alphabets in long messages look up two symbols
- * at once in a table of 65 536 pairs (256 KiB); the bits are the same either way.
+ * The state is a 32-bit accumulator whose pending bits stand at the top; each word is or-ed in
+ * below them and the whole accumulator stored, so that no branch depends on how many bytes are
+ * complete. Byte alphabets in long messages look up two symbols at once in a table of 65 536 pairs
+ * (256 KiB); the bits are the same either way.
  */
 export class PrefixEncoder {
   readonly #alphabetSize: number;
@@ -43,8 +47,8 @@ export class PrefixEncoder {
   }
 
   /**
-   * Takes a new code: `symbols[i]` has a word of `lengths[i]` bits, i = 0 … count − 1, in canonical order of the list. All other symbols
-   * have none.
+   * Takes a new code: `symbols[i]` has a word of `lengths[i]` bits, i = 0 … count − 1, in canonical
+   * order of the list. All other symbols have none.
    */
   setWords(symbols: Float64Array | Uint32Array, lengths: Uint8Array, count: number): void {
     const tally = this.#tally;
@@ -108,7 +112,8 @@ export class PrefixEncoder {
     const view = this.#view;
     let at = writer.byteLength;
     let bits = writer.pendingBits;
-    // A shift by 32 would be a shift by 0: without pending bits `pending` is 0 and the shift does no harm.
+    // A shift by 32 would be a shift by 0: without pending bits `pending` is 0 and the shift does
+    // no harm.
     let accumulator = writer.pending << (32 - bits);
     for (let i = from; i < to; i++) {
       const symbol = symbols[i];
@@ -173,7 +178,10 @@ export class PrefixEncoder {
     if (i < to) this.#encodeSingles(writer, symbols, i, to);
   }
 
-  /** Entry of first symbol + 256 × second: both words and, in the low 5 bits, their length; 0 where they do not go at once. */
+  /**
+   * Entry of first symbol + 256 × second: both words and, in the low 5 bits, their length; 0 where
+   * they do not go at once.
+   */
   #pairTable(): Uint32Array {
     this.#pairs ??= new Uint32Array(65536);
     const pairs = this.#pairs;

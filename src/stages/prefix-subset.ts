@@ -3,13 +3,14 @@ import type { BitWriter } from '../bits/bit-writer.ts';
 import { CorruptStreamError } from '../errors/errors.ts';
 
 /**
- * Sets of integers below 2^53 − 1, for the tables of prefix codes: which symbols have words, and which of these have words of one length.
- * Two ways to write a sorted set of known size. `interpolative` writes the middle member first, within the room that the others
- * leave it, then both halves; close to log2 of the number of such sets, less where members cluster, nothing where all are in.
- * `gaps` writes the distances; cheaper for a few members in clusters.
+ * Sets of integers below 2^53 − 1, for the tables of prefix codes: which symbols have words, and
+ * which of these have words of one length. Two ways to write a sorted set of known size.
+ * `interpolative` writes the middle member first, within the room that the others leave it, then
+ * both halves; close to log2 of the number of such sets, less where members cluster, nothing where
+ * all are in. `gaps` writes the distances; cheaper for a few members in clusters.
  *
- * Sources: A. Moffat, L. Stuiver, Information Retrieval 3(1), 2000 (interpolative); P. Elias, IEEE Trans. Inf. Theory 21(2), 1975
- * (the code γ, for gaps).
+ * Sources: A. Moffat, L. Stuiver, Information Retrieval 3(1), 2000 (interpolative); P. Elias, IEEE
+ * Trans. Inf. Theory 21(2), 1975 (the code γ, for gaps).
  */
 
 /** Number of bits of v ≥ 1, up to 2^53. */
@@ -34,7 +35,8 @@ function readWide(reader: BitReader, width: number): number {
 }
 
 /**
- * Minimal binary (truncated binary) code of `value` in 0 … size − 1: the lower values have the shorter words.
+ * Minimal binary (truncated binary) code of `value` in 0 … size − 1: the lower values have the
+ * shorter words.
  * @param writer  undefined: only count
  * @returns bits, ⌊log2 size⌋ or ⌈log2 size⌉
  */
@@ -84,7 +86,9 @@ export function writeSubset(
   );
 }
 
-/** Reads what {@link writeSubset} wrote into `members[from … to − 1]`; needs to − from ≤ high − low. */
+/**
+ * Reads what {@link writeSubset} wrote into `members[from … to − 1]`; needs to − from ≤ high − low.
+ */
 export function readSubset(
   reader: BitReader,
   members: Members,
@@ -107,7 +111,10 @@ export function readSubset(
   readSubset(reader, members, middle + 1, to, value + 1, high);
 }
 
-/** First of the values that get the shorter words: those in the middle of the room, where the middle member mostly lies. */
+/**
+ * First of the values that get the shorter words: those in the middle of the room, where the middle
+ * member mostly lies.
+ */
 function shortStart(room: number): number {
   if (room <= 1) return 0;
   const short = 2 ** bitLengthOf(room - 1) - room;
@@ -142,7 +149,9 @@ export function writeGaps(writer: BitWriter | undefined, members: Members, count
   return bits;
 }
 
-/** Reads what {@link writeGaps} wrote. Throws CorruptStreamError when a member is `high` or above. */
+/**
+ * Reads what {@link writeGaps} wrote. Throws CorruptStreamError when a member is `high` or above.
+ */
 export function readGaps(reader: BitReader, members: Members, count: number, high: number): void {
   let next = 0;
   for (let i = 0; i < count; i++) {

@@ -13,14 +13,18 @@ import {
 } from './prefix-subset.ts';
 
 /**
- * The table of a complete prefix code as it is sent: which of `range` symbols have words, and how long.
+ * The table of a complete prefix code as it is sent: which of `range` symbols have words, and how
+ * long.
  *
- * 1. k − 1 as a count (Elias delta), k symbols present; where k is all of the range, no more about which.
- * 2. One bit: 0 for the set as `interpolative`, 1 as `gaps` (prefix-subset.ts), whichever is shorter.
- * 3. For k ≥ 2, how many words each length has, from 1 bit up. What Kraft's equality and `maxBits` leave possible is often one
- *    number, written in no bits; the last length is always implied. So no table that can be read is incomplete.
- * 4. For each length from the longest down, which of the symbols still without a length have it, as an interpolative set; the shortest is
- *    what remains.
+ * 1. k − 1 as a count (Elias delta), k symbols present; where k is all of the range, no more about
+ *    which.
+ * 2. One bit: 0 for the set as `interpolative`, 1 as `gaps` (prefix-subset.ts), whichever is
+ *    shorter.
+ * 3. For k ≥ 2, how many words each length has, from 1 bit up. What Kraft's equality and `maxBits`
+ *    leave possible is often one number, written in no bits; the last length is always implied. So
+ *    no table that can be read is incomplete.
+ * 4. For each length from the longest down, which of the symbols still without a length have it, as
+ *    an interpolative set; the shortest is what remains.
  */
 export class PrefixTable {
   /** Symbols with words, rising; the first {@link count} entries count. */
@@ -100,7 +104,8 @@ export class PrefixTable {
 
   /**
    * Reads what {@link write} wrote.
-   * @param mostSymbols  more symbols than this cannot be present (each one present is coded at least once)
+   * @param mostSymbols  more symbols than this cannot be present (each one present is coded at
+   *   least once)
    * @throws CorruptStreamError
    */
   read(reader: BitReader, range: number, maxBits: number, mostSymbols: number): void {
@@ -162,8 +167,9 @@ export class PrefixTable {
 /**
  * How many words of each length a complete code of k words can still have, length by length.
  *
- * Invariant, with N nodes at the present length and `left` words yet to place there or deeper: N ≤ left ≤ N · 2^(maxBits − length). x of the
- * nodes go on as inner nodes, the other N − x are words; each inner node holds 2 to 2^(maxBits − length) words.
+ * Invariant, with N nodes at the present length and `left` words yet to place there or deeper: N ≤
+ * left ≤ N · 2^(maxBits − length). x of the nodes go on as inner nodes, the other N − x are words;
+ * each inner node holds 2 to 2^(maxBits − length) words.
  */
 class LengthRoom {
   length = 1;

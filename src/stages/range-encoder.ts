@@ -1,6 +1,6 @@
 import type { BitWriter } from '../bits/bit-writer.ts';
 import { BugError } from '../errors/errors.ts';
-import { checkInterval, type IntervalSink, type IntervalTape } from '../models/interval.ts';
+import type { IntervalSink } from '../models/interval.ts';
 import {
   endingByZeros,
   endingForAny,
@@ -34,6 +34,9 @@ export class RangeEncoder implements IntervalSink {
   payloadBits = 0;
 
   readonly #precision: RangePrecision;
+  readonly #top: number;
+  readonly #shiftBelow: number;
+  readonly #perShift: number;
   readonly #writer: BitWriter;
   /** The writer's own buffer while the message starts on a byte, else bytes kept until its end. */
   #bytes: Uint8Array;
@@ -47,12 +50,16 @@ export class RangeEncoder implements IntervalSink {
   constructor(writer: BitWriter, bits: RangeBits) {
     this.#writer = writer;
     this.#precision = rangePrecision(bits);
+    this.#top = this.#precision.top;
+    this.#shiftBelow = this.#precision.shiftBelow;
+    this.#perShift = 1 / this.#shiftBelow;
     this.#bytes = writer.bytes;
   }
 
-  /** Lower end and width of the interval; with the bytes shifted out, the whole state. */
-  get interval(): { readonly low: number; readonly range: number } {
-    return { low: this.#low, range: this.#range };
+  /** The coding interval: bytes shifted out so far, and low and range of what follows them. For tests and screens. */
+  state(): { readonly shifted: Uint8Array; readonly low: number; readonly range: number } {
+    const shifted = this.#bytes.slice(this.#start, this.#at);
+    return { shifted, low: this.#low, range: this.#range };
   }
 
   /** Starts a message at the writer's position; the writer is not to be used until {@link end}. */
@@ -65,52 +72,26 @@ export class RangeEncoder implements IntervalSink {
     this.#range = this.#precision.initialRange;
   }
 
-  /** Codes one interval. Throws PromiseError when the model breaks a promise. */
+  /** Codes one interval; trusts the model's promises. */
   put(low: number, frequency: number, total: number): void {
-    checkInterval(low, frequency, total);
-    this.#makeRoom(BYTES_PER_INTERVAL);
+    if (this.#at + BYTES_PER_INTERVAL > this.#bytes.length) this.#makeRoom();
     const step = Math.floor(this.#range / total);
-    this.#low += step * low;
-    this.#range = step * frequency;
-    if (this.#low >= this.#precision.top) this.#carry();
-    while (this.#range < this.#precision.shiftBelow) {
-      const byte = Math.floor(this.#low / this.#precision.shiftBelow);
+    let lowest = this.#low + step * low;
+    let range = step * frequency;
+    if (lowest >= this.#top) {
+      lowest -= this.#top;
+      this.#carry();
+    }
+    const shiftBelow = this.#shiftBelow;
+    while (range < shiftBelow) {
+      // The factor is a power of two: as exact as the quotient, and faster.
+      const byte = Math.floor(lowest * this.#perShift);
       this.#bytes[this.#at++] = byte;
-      this.#low = (this.#low - byte * this.#precision.shiftBelow) * 256;
-      this.#range *= 256;
+      lowest = (lowest - byte * shiftBelow) * 256;
+      range *= 256;
     }
-  }
-
-  /** Codes and clears a tape: the same bytes as {@link put} for each of its intervals, unchecked and faster. */
-  putTape(tape: IntervalTape): void {
-    const { words, length } = tape;
-    this.#makeRoom((length / 3) * BYTES_PER_INTERVAL);
-    const { top, shiftBelow } = this.#precision;
-    const bytes = this.#bytes;
-    let at = this.#at;
-    let low = this.#low;
-    let range = this.#range;
-    for (let i = 0; i < length; i += 3) {
-      const step = Math.floor(range / words[i + 2]);
-      low += step * words[i];
-      range = step * words[i + 1];
-      if (low >= top) {
-        this.#low = low;
-        this.#at = at;
-        this.#carry();
-        low = this.#low;
-      }
-      while (range < shiftBelow) {
-        const byte = Math.floor(low / shiftBelow);
-        bytes[at++] = byte;
-        low = (low - byte * shiftBelow) * 256;
-        range *= 256;
-      }
-    }
-    this.#at = at;
-    this.#low = low;
+    this.#low = lowest;
     this.#range = range;
-    tape.clear();
   }
 
   /**
@@ -132,7 +113,10 @@ export class RangeEncoder implements IntervalSink {
     this.#low = byZeros
       ? Math.floor((this.#low + this.#range - 1) / unit) * unit
       : Math.ceil(this.#low / unit) * unit;
-    if (this.#low >= precision.top) this.#carry();
+    if (this.#low >= precision.top) {
+      this.#low -= precision.top;
+      this.#carry();
+    }
     const writer = this.#writer;
     if (this.#direct) writer.adopt(this.#at, 0, 0);
     else writer.writeBytes(this.#bytes, 0, this.#at);
@@ -145,22 +129,21 @@ export class RangeEncoder implements IntervalSink {
     }
   }
 
-  #makeRoom(count: number): void {
-    if (this.#at + count <= this.#bytes.length) return;
+  #makeRoom(): void {
+    const more = Math.max(1024, this.#at - this.#start);
     if (this.#direct) {
-      // The writer counts from its byteLength; what this message holds so far is handed over for the copy.
+      // The writer copies up to its byteLength: what this message holds so far is handed over first.
       this.#writer.adopt(this.#at, 0, 0);
-      this.#writer.reserve(count);
+      this.#writer.reserve(more);
       this.#bytes = this.#writer.bytes;
     } else {
-      this.#kept = new Uint8Array(Math.max(1024, this.#at + count, 2 * this.#kept.length));
+      this.#kept = new Uint8Array(this.#at + more);
       this.#kept.set(this.#bytes.subarray(0, this.#at));
       this.#bytes = this.#kept;
     }
   }
 
   #carry(): void {
-    this.#low -= this.#precision.top;
     const bytes = this.#bytes;
     let at = this.#at - 1;
     while (at >= this.#start && bytes[at] === 255) bytes[at--] = 0;

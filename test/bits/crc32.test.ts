@@ -20,7 +20,8 @@ function slowCrc32(bytes: Uint8Array): number {
 }
 
 describe('crc32', () => {
-  // The check value that catalogues of CRC parameters give for the CRC of ITU-T V.42 (CRC-32/ISO-HDLC).
+  // The check value that catalogues of CRC parameters give for the CRC of ITU-T V.42
+  // (CRC-32/ISO-HDLC).
   it('of the digits 1 to 9 is CBF43926', () => {
     expect(crc32(new TextEncoder().encode('123456789'))).toBe(0xcbf43926);
   });

@@ -16,7 +16,10 @@ const count = fc.oneof(
     .map(([power, by]) => Math.min(MOST, Math.max(0, 2 ** power + by))),
 );
 
-/** Elias delta by its definition, as a text of bits: gamma of the length, then the number without its leading 1. */
+/**
+ * Elias delta by its definition, as a text of bits: gamma of the length, then the number without
+ * its leading 1.
+ */
 function deltaText(value: number): string {
   const number = (BigInt(value) + 1n).toString(2);
   const length = number.length.toString(2);

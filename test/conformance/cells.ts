@@ -1,4 +1,7 @@
-/** What the harness does with a coder, in small: which setups it runs, what each end is given, and train, code, decode. */
+/**
+ * What the harness does with a coder, in small: which setups it runs, what each end is given, and
+ * train, code, decode.
+ */
 import type {
   Coded,
   CodedInput,
@@ -68,8 +71,8 @@ export function train(coder: Coder, setup: Setup, chunks: readonly SymbolChunk[]
 }
 
 /**
- * The unit of a sequence: `shipped` and `primed` train on the first half of the messages and code the rest; `sent` with
- * reset `never` fits to what is coded, and only the encoder is given the fit.
+ * The unit of a sequence: `shipped` and `primed` train on the first half of the messages and code
+ * the rest; `sent` with reset `never` fits to what is coded, and only the encoder is given the fit.
  */
 export function unitOf(coder: Coder, setup: Setup, whole: SymbolSequence): Unit {
   if (setup.policy === 'shipped' || setup.policy === 'primed') {
@@ -92,7 +95,7 @@ export function encode(coder: Coder, setup: Setup, chunks: readonly SymbolChunk[
   return encoder.finish();
 }
 
-export function symbolCountsOf(sequence: SymbolSequence): Uint32Array {
+function symbolCountsOf(sequence: SymbolSequence): Uint32Array {
   return sequence.messageEnds.map((end, i) => end - (i === 0 ? 0 : sequence.messageEnds[i - 1]));
 }
 

@@ -1,8 +1,13 @@
-/** Hostile inputs made from an honest one: cut, flipped, random and lengthened bytes, and wrong framing. */
+/**
+ * Hostile inputs made from an honest one: cut, flipped, random and lengthened bytes, and wrong
+ * framing.
+ */
 import type { CodedInput } from '../../src/coders/contract.ts';
 import { integers } from './sequences.ts';
 
-/** Damaged forms of `input`, the same for the same seed; `align` is the one that message ends keep. */
+/**
+ * Damaged forms of `input`, the same for the same seed; `align` is the one that message ends keep.
+ */
 export function damaged(input: CodedInput, seed: number, align: number): CodedInput[] {
   const next = integers(seed);
   const result: CodedInput[] = [];

@@ -1,6 +1,7 @@
 /**
- * The conformance kit: what every coder must keep, whatever it is. `conformance('huffman:maxbits=12')` in a test file
- * declares the tests for each cell kind (policy × reset × lengths) that the coder declares, over aligns and alphabets.
+ * The conformance kit: what every coder must keep, whatever it is.
+ * `conformance('huffman:maxbits=12')` in a test file declares the tests for each cell kind (policy
+ * × reset × lengths) that the coder declares, over aligns and alphabets.
  */
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
@@ -20,7 +21,7 @@ import {
   unitOf,
 } from './cells.ts';
 import { damaged } from './damage.ts';
-import { chunksOf, degenerateSequences, sequences } from './sequences.ts';
+import { chunksOf, degenerateSequences, inRecords, sequences } from './sequences.ts';
 
 const SEED = 20_250_117;
 const ALIGNS = [1, 8, 16, 32, 64];
@@ -30,6 +31,8 @@ export interface ConformanceOptions {
   readonly alphabetSizes?: number[];
   /** Drawn sequences for each property of each cell kind; a fifth of it at m > 4096. */
   readonly runs?: number;
+  /** What setups carry besides, such as a record: messages are then whole records. */
+  readonly setup?: Pick<Setup, 'record' | 'fields'>;
 }
 
 function sameSequence(got: SymbolSequence, expected: SymbolSequence) {
@@ -115,7 +118,10 @@ function checkPrice(coder: Coder, unit: Unit) {
   expect(price.fit.bits).toBeGreaterThanOrEqual(-1e-9);
 }
 
-/** Decodes bytes nobody wrote: either a typed error, or by luck a sequence that keeps its invariants. */
+/**
+ * Decodes bytes nobody wrote: either a typed error, or by luck a sequence that keeps its
+ * invariants.
+ */
 function checkDamaged(coder: Coder, setup: Setup, input: CodedInput, maxSymbols: number) {
   try {
     const { sequence, bitsConsumed } = decode(coder, setup, input, maxSymbols);
@@ -139,33 +145,43 @@ export function conformance(candidate: string, options: ConformanceOptions = {})
   describe(`conformance of ${candidate}`, () => {
     for (const kind of cellKinds(declaration)) {
       const title = `${kind.policy}, reset ${kind.reset}, lengths ${kind.lengths}`;
-      describe(title, () => cellTests(create(), kind, alphabetSizes, runs));
+      const more = options.setup ?? {};
+      describe(title, () => cellTests(create(), kind, alphabetSizes, runs, more));
     }
   });
 }
 
-function cellTests(coder: Coder, kind: CellKind, alphabetSizes: number[], runs: number) {
+function cellTests(
+  coder: Coder,
+  kind: CellKind,
+  alphabetSizes: number[],
+  runs: number,
+  more: Pick<Setup, 'record' | 'fields'>,
+) {
   const taken = alphabetSizes.filter((alphabetSize) =>
-    accepts(coder, { ...kind, align: 8, alphabetSize }),
+    accepts(coder, { ...more, ...kind, align: 8, alphabetSize }),
   );
+
+  const wholeUnits = (sequence: SymbolSequence) =>
+    more.record === undefined ? sequence : inRecords(sequence, more.record.bytes);
 
   it('takes one of the alphabets', () => {
     expect(taken).not.toEqual([]);
   });
 
   for (const alphabetSize of taken) {
-    const setups = ALIGNS.map((align): Setup => ({ ...kind, align, alphabetSize }));
+    const setups = ALIGNS.map((align): Setup => ({ ...more, ...kind, align, alphabetSize }));
     const parameters = {
       seed: SEED,
       numRuns: alphabetSize > 4096 ? Math.ceil(runs / 5) : runs,
     };
     const units = fc
       .tuple(fc.constantFrom(...setups), sequences(alphabetSize))
-      .map(([setup, sequence]) => ({ setup, whole: sequence }));
+      .map(([setup, sequence]) => ({ setup, whole: wholeUnits(sequence) }));
 
     it(`m = ${alphabetSize}: degenerate sequences come back, each bit booked`, () => {
       for (const [i, [, whole]] of degenerateSequences(alphabetSize).entries()) {
-        const unit = unitOf(coder, setups[i % setups.length], whole);
+        const unit = unitOf(coder, setups[i % setups.length], wholeUnits(whole));
         checkRoundTrip(coder, unit);
         checkPrice(coder, unit);
       }
@@ -273,7 +289,7 @@ function cellTests(coder: Coder, kind: CellKind, alphabetSizes: number[], runs: 
     });
 
     it(`m = ${alphabetSize}: an encoder refuses to finish within a message`, () => {
-      const whole = degenerateSequences(alphabetSize)[11][1];
+      const whole = wholeUnits(degenerateSequences(alphabetSize)[11][1]);
       const unit = unitOf(coder, setups[0], whole);
       const [chunk] = chunksOf(unit.sequence, [unit.sequence.symbols.length - 1]);
       const encoder = coder.encoder(unit.encoderSetup);

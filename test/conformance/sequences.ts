@@ -1,4 +1,7 @@
-/** Sequences for the conformance kit: degenerate ones by hand, others drawn; and cuts of a sequence into chunks. */
+/**
+ * Sequences for the conformance kit: degenerate ones by hand, others drawn; and cuts of a sequence
+ * into chunks.
+ */
 import fc from 'fast-check';
 import {
   newSymbolArray,
@@ -7,7 +10,10 @@ import {
   type SymbolSequence,
 } from '../../src/symbols/sequence.ts';
 
-/** A small generator of 32-bit integers (xorshift, Marsaglia 2003), so that a sequence is known by its seed. */
+/**
+ * A small generator of 32-bit integers (xorshift, Marsaglia 2003), so that a sequence is known by
+ * its seed.
+ */
 export function integers(seed: number): () => number {
   let state = (seed ^ 0x9e3779b9) | 1;
   return () => {
@@ -70,6 +76,22 @@ export function sequences(alphabetSize: number): fc.Arbitrary<SymbolSequence> {
   return fc.array(shape, { maxLength: 8 }).map((shapes) => sequenceOf(alphabetSize, shapes));
 }
 
+/** The sequence with each message cut to a whole number of records. */
+export function inRecords(sequence: SymbolSequence, recordSymbols: number): SymbolSequence {
+  const { alphabetSize, messageEnds } = sequence;
+  const symbols = newSymbolArray(alphabetSize, sequence.symbols.length);
+  const ends = new Uint32Array(messageEnds.length);
+  let at = 0;
+  messageEnds.forEach((end, i) => {
+    const from = i === 0 ? 0 : messageEnds[i - 1];
+    const length = end - from - ((end - from) % recordSymbols);
+    symbols.set(sequence.symbols.subarray(from, from + length), at);
+    at += length;
+    ends[i] = at;
+  });
+  return { alphabetSize, symbols: symbols.slice(0, at), messageEnds: ends };
+}
+
 /** The cases that break coders most often. */
 export function degenerateSequences(alphabetSize: number): [string, SymbolSequence][] {
   const messages = (...shapes: [Style, number][]) =>
@@ -94,8 +116,9 @@ export function degenerateSequences(alphabetSize: number): [string, SymbolSequen
 }
 
 /**
- * The sequence in chunks cut at `cuts` (symbol indices, in any order). An end at a chunk's edge stands with its last
- * symbol; ends of empty messages there stand in the earlier chunk, or in the later one where `emptiesLater`.
+ * The sequence in chunks cut at `cuts` (symbol indices, in any order). An end at a chunk's edge
+ * stands with its last symbol; ends of empty messages there stand in the earlier chunk, or in the
+ * later one where `emptiesLater`.
  */
 export function chunksOf(
   sequence: SymbolSequence,

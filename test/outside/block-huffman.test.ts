@@ -1,7 +1,7 @@
 /**
- * Huffman codes of blocks of n symbols: H ≤ L/n < H + 1/n (C. E. Shannon, Bell Syst. Tech. J. 27, 1948, section 9), redundancy of a
- * block ≤ p1 + 0.0860713321 (R. G. Gallager, IEEE Trans. Inf. Theory 24(6), 1978). Mean lengths made outside this project from the
- * exact probabilities.
+ * Huffman codes of blocks of n symbols: H ≤ L/n < H + 1/n (C. E. Shannon, Bell Syst. Tech. J. 27,
+ * 1948, section 9), redundancy of a block ≤ p1 + 0.0860713321 (R. G. Gallager, IEEE Trans. Inf.
+ * Theory 24(6), 1978). Mean lengths made outside this project from the exact probabilities.
  */
 import { describe, expect, it } from 'vitest';
 import { blockHuffman } from '../../src/coders/block-huffman.ts';

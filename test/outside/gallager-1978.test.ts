@@ -1,6 +1,7 @@
 /**
- * R. G. Gallager, "Variations on a theme by Huffman", IEEE Trans. Inf. Theory 24(6), 1978: the redundancy of a Huffman code is at most
- * p1 + 1 − log2 e + log2 log2 e = p1 + 0.0860713321, p1 the largest probability.
+ * R. G. Gallager, "Variations on a theme by Huffman", IEEE Trans. Inf. Theory 24(6), 1978: the
+ * redundancy of a Huffman code is at most p1 + 1 − log2 e + log2 log2 e = p1 + 0.0860713321, p1 the
+ * largest probability.
  */
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';

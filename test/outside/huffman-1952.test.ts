@@ -1,4 +1,7 @@
-/** D. A. Huffman, Proc. IRE 40(9), 1952, Tables I and II: 13 messages, 3.42 digits a message on average. */
+/**
+ * D. A. Huffman, Proc. IRE 40(9), 1952, Tables I and II: 13 messages, 3.42 digits a message on
+ * average.
+ */
 import { describe, expect, it } from 'vitest';
 import { codeLengths } from '../../src/stages/code-lengths.ts';
 import vectors from './vectors/huffman-1952.json' with { type: 'json' };

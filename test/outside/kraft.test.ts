@@ -1,4 +1,7 @@
-/** L. G. Kraft 1949, B. McMillan 1956: a prefix code with given lengths exists if and only if Σ 2^−l ≤ 1. */
+/**
+ * L. G. Kraft 1949, B. McMillan 1956: a prefix code with given lengths exists if and only if Σ 2^−l
+ * ≤ 1.
+ */
 import { describe, expect, it } from 'vitest';
 import { PromiseError } from '../../src/errors/errors.ts';
 import { canonicalCodes, LengthTally } from '../../src/stages/prefix-code.ts';

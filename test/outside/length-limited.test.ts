@@ -1,6 +1,7 @@
 /**
- * Length-limited codes: L. L. Larmore, D. S. Hirschberg, J. ACM 37(3), 1990. Totals found by exhaustive search over all length sets
- * outside this project, and lengths of the unlimited code by the in-place method of A. Moffat, J. Katajainen, WADS 1995.
+ * Length-limited codes: L. L. Larmore, D. S. Hirschberg, J. ACM 37(3), 1990. Totals found by
+ * exhaustive search over all length sets outside this project, and lengths of the unlimited code by
+ * the in-place method of A. Moffat, J. Katajainen, WADS 1995.
  */
 import { describe, expect, it } from 'vitest';
 import { codeLengths } from '../../src/stages/code-lengths.ts';

@@ -1,6 +1,6 @@
 /**
- * P. Deutsch, RFC 1951 (1996). Section 3.2.2: code words from lengths, the example of eight letters. Section 3.2.6: the fixed code of 288
- * values, the ends of its ranges.
+ * P. Deutsch, RFC 1951 (1996). Section 3.2.2: code words from lengths, the example of eight
+ * letters. Section 3.2.6: the fixed code of 288 values, the ends of its ranges.
  */
 import { describe, expect, it } from 'vitest';
 import { canonicalCodes } from '../../src/stages/prefix-code.ts';

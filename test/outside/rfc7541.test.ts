@@ -1,6 +1,6 @@
 /**
- * R. Peon, H. Ruellan, RFC 7541 (2015). Appendix B: a canonical code of 257 words up to 30 bits, complete. Appendix C.4 and C.6: strings
- * coded with it, filled up with ones.
+ * R. Peon, H. Ruellan, RFC 7541 (2015). Appendix B: a canonical code of 257 words up to 30 bits,
+ * complete. Appendix C.4 and C.6: strings coded with it, filled up with ones.
  */
 import { describe, expect, it } from 'vitest';
 import { BitReader } from '../../src/bits/bit-reader.ts';

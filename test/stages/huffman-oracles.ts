@@ -1,6 +1,12 @@
-/** Slow, plain second computations that prefix codes are held against. None shares code or method with the sources. */
+/**
+ * Slow, plain second computations that prefix codes are held against. None shares code or method
+ * with the sources.
+ */
 
-/** Σ of merged weights: take the two lightest, merge, until one is left. The total cost of any minimum-redundancy code. */
+/**
+ * Σ of merged weights: take the two lightest, merge, until one is left. The total cost of any
+ * minimum-redundancy code.
+ */
 export function sumOfMergedWeights(weights: Iterable<bigint | number>): bigint {
   const heap: bigint[] = [];
   const push = (value: bigint) => {
@@ -38,7 +44,10 @@ export function sumOfMergedWeights(weights: Iterable<bigint | number>): bigint {
   return total;
 }
 
-/** Least Σ w·l over every choice of lengths 1 … maxBits with Kraft sum at most 1, by trying them all. */
+/**
+ * Least Σ w·l over every choice of lengths 1 … maxBits with Kraft sum at most 1, by trying them
+ * all.
+ */
 export function exhaustiveTotal(weights: readonly bigint[], maxBits: number): bigint | undefined {
   let best: bigint | undefined;
   const unit = 2 ** maxBits;
@@ -58,8 +67,8 @@ export function exhaustiveTotal(weights: readonly bigint[], maxBits: number): bi
 }
 
 /**
- * The same for dozens of weights: level by level from the root, the heaviest first, over (words placed, nodes open); each
- * level costs one bit for every symbol not yet placed above it.
+ * The same for dozens of weights: level by level from the root, the heaviest first, over (words
+ * placed, nodes open); each level costs one bit for every symbol not yet placed above it.
  */
 export function levelwiseTotal(weights: readonly bigint[], maxBits: number): bigint | undefined {
   const sorted = [...weights].sort((a, b) => (a < b ? 1 : a > b ? -1 : 0));

@@ -15,7 +15,10 @@ interface Words {
   readonly alphabetSize: number;
   readonly symbols: Uint32Array;
   readonly lengths: Uint8Array;
-  /** The words as texts, by symbol; made from the definition: sorted by length, then by symbol, each one more than the last. */
+  /**
+   * The words as texts, by symbol; made from the definition: sorted by length, then by symbol, each
+   * one more than the last.
+   */
   readonly texts: Map<number, string>;
 }
 

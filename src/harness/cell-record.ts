@@ -1,0 +1,116 @@
+import { bitAccount } from '../account/bit-account.ts';
+import type { FieldPrice } from '../coders/contract.ts';
+import { decodesAlone } from './cells.ts';
+import type { CorpusData } from './corpus-data.ts';
+import type { CorpusFloors } from './corpus-floors.ts';
+import { type LossFigures, lossFigures } from './loss.ts';
+import type { CellBits, CellFailure } from './run-cell.ts';
+import type { CellRecord } from './run-record.ts';
+import type { Speed } from './speed.ts';
+
+function quantile(sorted: Float64Array, share: number): number {
+  return sorted[Math.min(sorted.length - 1, Math.max(0, Math.ceil(share * sorted.length) - 1))];
+}
+
+function messageBytes(bits: Float64Array): NonNullable<CellRecord['message_bytes']> {
+  const bytes = Float64Array.from(bits, (b) => b / 8).sort();
+  let sum = 0;
+  for (const value of bytes) sum += value;
+  return {
+    mean: sum / bytes.length,
+    p50: quantile(bytes, 0.5),
+    p95: quantile(bytes, 0.95),
+    p99: quantile(bytes, 0.99),
+    max: bytes[bytes.length - 1],
+  };
+}
+
+function filesOf(bits: CellBits, corpus: CorpusData): NonNullable<CellRecord['files']> {
+  let message = 0;
+  let symbolsBefore = 0;
+  return corpus.testFiles.map((file) => {
+    let carried = 0;
+    for (; message < file.messageEnd; message++) carried += bits.messageBits[message];
+    const symbolEnd = message === 0 ? 0 : corpus.test.messageEnds[message - 1];
+    const symbolCount = symbolEnd - symbolsBefore;
+    symbolsBefore = symbolEnd;
+    return { sha256: file.sha256, symbol_count: symbolCount, coded_bytes: Math.ceil(carried / 8) };
+  });
+}
+
+function rateWithoutRepeats(bits: CellBits, corpus: CorpusData): number | undefined {
+  const { repeated } = corpus;
+  if (repeated === undefined || repeated.share === 0) return undefined;
+  let carried = 0;
+  let symbols = 0;
+  let from = 0;
+  corpus.test.messageEnds.forEach((end, i) => {
+    if (repeated.mask[i] === 0) {
+      carried += bits.messageBits[i];
+      symbols += end - from;
+    }
+    from = end;
+  });
+  return symbols === 0 ? undefined : carried / symbols;
+}
+
+/** What a run record says of one cell. */
+export function cellRecordOf(
+  result: CellBits | CellFailure,
+  corpus: CorpusData,
+  floors: CorpusFloors,
+  speed: { encode: Speed; decode: Speed } | undefined,
+  lossRate: number | undefined,
+): CellRecord {
+  const { cell } = result;
+  const base = {
+    id: cell.id,
+    corpus: cell.corpus,
+    candidate: cell.candidate.id,
+    coder: cell.candidate.declaration.name,
+    params: { ...cell.candidate.values },
+    tables: cell.policy,
+    reset: cell.reset,
+    reference: cell.candidate.declaration.reference,
+    decodes_alone: decodesAlone(cell),
+    messages_as: corpus.messagesAs,
+  };
+  if ('failure' in result) return { ...base, verified: false, failure: result.failure };
+  const symbolCount = corpus.test.symbols.length;
+  const without = rateWithoutRepeats(result, corpus);
+  return {
+    ...base,
+    verified: true,
+    backend: 'ts',
+    symbol_count: symbolCount,
+    message_count: corpus.test.messageEnds.length,
+    coded_bytes: Math.ceil(result.totals.carriedBits / 8),
+    carried_bits: result.totals.carriedBits,
+    rate: symbolCount === 0 ? 0 : result.totals.carriedBits / symbolCount,
+    account: bitAccount(floors.admit(result), floors.shareOf(cell)),
+    ...(result.messageBits.length === 0 ? {} : { message_bytes: messageBytes(result.messageBits) }),
+    ...(lossRate === undefined ? {} : { loss: lossRecord(lossFigures(cell, corpus, lossRate)) }),
+    ...(without === undefined ? {} : { rate_without_repeats: without }),
+    files: filesOf(result, corpus),
+    ...(result.perField === undefined ? {} : { fields: fieldsOf(result.perField) }),
+    ...(speed === undefined
+      ? {}
+      : { encode: speedRecord(speed.encode), decode: speedRecord(speed.decode) }),
+  };
+}
+
+function fieldsOf(fields: readonly FieldPrice[]): NonNullable<CellRecord['fields']> {
+  return fields.map(({ name, idealBits, choice }) => ({
+    name,
+    bits: Math.round(idealBits * 1000) / 1000,
+    choice,
+  }));
+}
+
+function lossRecord({ share, perLostMessage }: LossFigures): NonNullable<CellRecord['loss']> {
+  return { share, per_lost_message: perLostMessage };
+}
+
+function speedRecord(speed: Speed): NonNullable<CellRecord['encode']> {
+  return { ...speed, seconds: [...speed.seconds] };
+}
