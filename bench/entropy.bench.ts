@@ -1,12 +1,15 @@
 /**
- * Entropy by order, k ≤ 6, against zlib's deflate at level 6 on the same 8 MiB: of text (the open text files one after
- * another, begun anew until full), and of seeded noise, on which sorting is slowest. Bound for text: 12 deflates.
+ * Entropy by order, k ≤ 6, by plug-in, Miller–Madow, Grassberger, Chao–Shen and NSB together, against zlib's deflate at level
+ * 6 on the same 8 MiB: of text (the open text files one after another, begun anew until full), and of seeded noise, on
+ * which sorting is slowest. Bound: 12 deflates. Beside it, without a bound, match lengths and the block view.
  */
 import { readFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { deflateRawSync } from 'node:zlib';
 import { Bench, type Task } from 'tinybench';
+import { blockView } from '../src/entropy/block-view.ts';
 import { entropyByOrder } from '../src/entropy/entropy-by-order.ts';
+import { measureMatches } from '../src/entropy/match-measurements.ts';
 import { SeededGenerator } from '../src/statistics/generator.ts';
 import { oneMessage } from '../src/symbols/sequence.ts';
 
@@ -45,10 +48,20 @@ for (const [name, bytes] of Object.entries(inputs)) {
   });
   for (const upto of [2, 6]) {
     bench.add(`orders 0 to ${upto} of ${name}`, () => {
-      const { orders } = entropyByOrder(oneMessage(bytes, 256), { upto, contexts: 'running' });
-      kept += orders[upto].plugIn;
+      const { orders } = entropyByOrder(oneMessage(bytes, 256), {
+        upto,
+        contexts: 'running',
+        all: true,
+      });
+      kept += orders[upto].plugIn + orders[upto].estimates!.chaoShen;
     });
   }
+  bench.add(`match lengths of ${name}`, () => {
+    kept += measureMatches(oneMessage(bytes, 256), 2).matchSum;
+  });
+  bench.add(`block view of ${name}`, () => {
+    kept += blockView(oneMessage(bytes, 256)).length;
+  });
 }
 
 /** The median time of a task in one round, in milliseconds. */

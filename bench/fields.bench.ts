@@ -1,6 +1,7 @@
 /**
- * fields on records, as a share of zlib's Huffman-only coder in the same run: the demo's telemetry, repeated to 6 MB, in
- * messages of 8 records and as one message; choices by auto, tables from the first half of the demo's file.
+ * fields on records, as a share of zlib's Huffman-only coder in the same run: the demo's telemetry,
+ * repeated to 6 MB, in messages of 8 records and as one message; choices by auto, tables from the
+ * first half of the demo's file.
  */
 import { readFileSync } from 'node:fs';
 import { constants, deflateRawSync, inflateRawSync } from 'node:zlib';

@@ -13,6 +13,15 @@ export function terminalColumns(): number {
   return process.stdout.columns ?? 100;
 }
 
+/** Whether standard output may show characters beyond ASCII: a file takes them all, a terminal those of its locale. */
+export function terminalShowsUnicode(): boolean {
+  if (process.stdout.isTTY !== true) return true;
+  const { LC_ALL, LC_CTYPE, LANG, TERM } = process.env;
+  if (TERM === 'linux' || TERM === 'dumb') return false;
+  if (process.platform === 'win32') return true;
+  return /utf-?8/i.test(LC_ALL || LC_CTYPE || LANG || '');
+}
+
 /** Colour functions for standard output; they change nothing where it is no terminal or NO_COLOR is set. */
 export function terminalColours(): ReturnType<typeof pc.createColors> {
   const wanted = process.stdout.isTTY === true && (process.env['NO_COLOR'] ?? '') === '';

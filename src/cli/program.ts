@@ -1,5 +1,6 @@
 import { Command } from 'commander';
 import { toolVersion } from '../harness/environment.ts';
+import { registerCalibrate } from './commands/calibrate.ts';
 import { registerCoders } from './commands/coders.ts';
 import { registerDecode } from './commands/decode.ts';
 import { registerEncode } from './commands/encode.ts';
@@ -22,6 +23,7 @@ export function buildProgram(): Command {
     registerTry,
     registerRun,
     registerEntropy,
+    registerCalibrate,
     registerCoders,
     registerEncode,
     registerDecode,

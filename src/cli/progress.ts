@@ -8,14 +8,15 @@ export class ProgressLine {
   readonly #start = performance.now();
   #started = false;
 
-  constructor(wanted: boolean) {
+  /** @param noun  what is counted, in the plural */
+  constructor(wanted: boolean, noun = 'cells') {
     if (!wanted || process.stderr.isTTY !== true) return;
     this.#bar = new SingleBar({
       stream: process.stderr,
       clearOnComplete: true,
       hideCursor: null,
       etaBuffer: 10,
-      format: ' {value} of {total} cells, {left} left, now {current}',
+      format: ` {value} of {total} ${noun}, {left} left, now {current}`,
     });
   }
 

@@ -2,7 +2,7 @@ import type { Command } from 'commander';
 import { Option } from 'commander';
 import type { CorpusSpec } from '../corpus/corpus.ts';
 import { InputError } from '../errors/errors.ts';
-import { parseRecordField, type RecordField } from '../symbols/record.ts';
+import { checkFieldsApart, parseRecordField, type RecordField } from '../symbols/record.ts';
 
 /** Options that say how files become symbols and messages; the same for every command that reads files without a plan. */
 export interface SourceOptions {
@@ -43,7 +43,11 @@ export function addSourceOptions(command: Command): Command {
       'bytes, bits, nibbles, u16le, s16be …, codepoints, csv:COLUMN, field:NAME',
       'bytes',
     )
-    .option('--messages <how>', 'whole, lines, every=N, records=K, prefix=u16be', 'whole')
+    .option(
+      '--messages <how>',
+      'whole, lines, every=N, records=K, prefix=u16be, fill=BYTES,unit=N|line',
+      'whole',
+    )
     .addOption(
       new Option('--lengths <rule>', 'what the decoder is told of lengths for free').choices([
         'known',
@@ -79,6 +83,7 @@ export function specFromOptions(
       });
     return parseRecordField(text.slice(0, at), text.slice(at + 1), record!);
   });
+  checkFieldsApart(fields);
   return {
     name,
     files,

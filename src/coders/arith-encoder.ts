@@ -10,6 +10,8 @@ import type { SymbolArray } from '../symbols/sequence.ts';
 import type { ArithSettings } from './arith-settings.ts';
 import { adaptiveModelFor, startsAtMessages, tablesFor } from './arith-tables.ts';
 import type { Encoder, Lengths, Setup } from './contract.ts';
+import { CodeStringDraft } from './fill-drafts.ts';
+import { fillingEncoder } from './fill-messages.ts';
 import { writeSymbolCount } from './message-frame.ts';
 import { MessageLedger } from './message-ledger.ts';
 import { MessagePieces, type PieceSink, wholeMessages } from './message-pieces.ts';
@@ -105,6 +107,17 @@ export class ArithMessages implements PieceSink {
     const bits = this.#settings.totalBits(alphabetSize);
     this.#model = new StaticModel(compileTable(pairs.tree, order, 'none', { bits }, roundCount));
   }
+}
+
+/** A quick encoder under `fill` for models that both ends have or grow; undefined where tables are fitted to messages. */
+export function arithFiller(settings: ArithSettings, setup: Setup): Encoder | undefined {
+  if (setup.policy === 'sent') return undefined;
+  const model =
+    setup.policy === 'shipped'
+      ? new StaticModel(tablesFor(setup, 'shipped').table)
+      : adaptiveModelFor(settings, setup);
+  const continuation = continuationOf(setup.lengths);
+  return fillingEncoder(setup, new CodeStringDraft(setup, model, settings.rangeBits, continuation));
 }
 
 export function arithEncoder(settings: ArithSettings, setup: Setup): Encoder {

@@ -39,6 +39,8 @@ export function arithPrice(settings: ArithSettings, sequence: SymbolSequence, se
     idealBits += messageIdealBits[i];
     from = to;
   }
+  // The model's memory may go before the counting takes its own.
+  model = undefined;
   const bits = empiricalLengthBits(sequence, order, startsAtMessages(setup));
   return { idealBits, messageIdealBits, fit: { bits, of: { order } } };
 }

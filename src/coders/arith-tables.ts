@@ -1,6 +1,6 @@
 import { BugError } from '../errors/errors.ts';
 import type { IntervalSink } from '../models/interval.ts';
-import { PairTrainer, type PairTree } from '../models/pair-tree.ts';
+import { PairTrainer, type PairTree, UnitPairTrainer } from '../models/pair-tree.ts';
 import { compileTable, type StaticTable } from '../models/static-table.ts';
 import type { AdaptiveModel } from '../models/symbol-model.ts';
 import type { ArithSettings } from './arith-settings.ts';
@@ -38,7 +38,10 @@ export function arithTrainer(settings: ArithSettings, setup: Setup): Trainer {
   const { policy, alphabetSize } = setup;
   if (policy === 'primed') return primedTrainer(settings, setup);
   const startAtMessages = policy === 'shipped' || setup.reset === 'message';
-  const trainer = new PairTrainer(alphabetSize, settings.order, startAtMessages);
+  const trainer =
+    setup.fill === undefined
+      ? new PairTrainer(alphabetSize, settings.order, startAtMessages)
+      : new UnitPairTrainer(alphabetSize, settings.order);
   return {
     push: (chunk) => trainer.push(chunk),
     finish: (): ArithTables => {
@@ -54,15 +57,23 @@ export function arithTrainer(settings: ArithSettings, setup: Setup): Trainer {
 /** Training needs no code. */
 const nowhere: IntervalSink = { put() {} };
 
+/** Under `fill`, contexts begin at one of so many units of the train split, as if messages held so many. */
+const UNITS_A_START = 8;
+
 /** Runs the model over the train split without a stage. */
 function primedTrainer(settings: ArithSettings, setup: Setup): Trainer {
   const model = settings.newModel(setup.alphabetSize);
+  const startEvery = setup.fill === undefined ? 1 : UNITS_A_START;
+  let left = startEvery;
   return {
     push(chunk) {
       let from = 0;
       for (const to of chunk.messageEnds) {
         model.encode(chunk.symbols, from, to, nowhere);
-        if (setup.reset === 'message') model.startContexts();
+        if (--left === 0) {
+          left = startEvery;
+          if (setup.reset === 'message') model.startContexts();
+        }
         from = to;
       }
       model.encode(chunk.symbols, from, chunk.symbols.length, nowhere);

@@ -1,5 +1,5 @@
 import { arithDecoder } from './arith-decoder.ts';
-import { arithEncoder } from './arith-encoder.ts';
+import { arithEncoder, arithFiller } from './arith-encoder.ts';
 import { arithPrice } from './arith-price.ts';
 import { ArithSettings, arithDeclaration } from './arith-settings.ts';
 import { type ArithTables, arithTrainer } from './arith-tables.ts';
@@ -28,6 +28,11 @@ function create(values: ParameterValues): Coder {
       settings.check(setup);
       return arithEncoder(settings, setup);
     },
+    filler: (setup) => {
+      settings.check(setup);
+      return arithFiller(settings, setup);
+    },
+    growsSteadily: (setup) => setup.policy !== 'sent',
     decoder: (setup, limits) => {
       settings.check(setup);
       return arithDecoder(settings, setup, limits);

@@ -2,6 +2,7 @@ import { InputError } from '../errors/errors.ts';
 import { nearestWord } from '../errors/nearest.ts';
 import { parseTransformChain } from '../transforms/chain.ts';
 import type { Coder, CoderEntry, Declaration } from './contract.ts';
+import { filling } from './fill.ts';
 import { type ParameterValues, resolveParameters, writeParameters } from './parameters.ts';
 import { coderEntries } from './registry.ts';
 import { stored } from './stored.ts';
@@ -148,7 +149,7 @@ function candidateOf(entry: CoderEntry, given: Readonly<Record<string, string>>)
     let coder = entry.create(values);
     if (chain !== undefined) coder = transformed(coder, chain);
     // Outside of the steps, so that a raw message is the product's own symbols.
-    return keepsRaw ? stored(coder) : coder;
+    return filling(keepsRaw ? stored(coder) : coder);
   };
   const common = {
     ...(keepsRaw ? { stored: 'on' } : {}),

@@ -42,6 +42,14 @@ export interface Setup {
    * them in the first message. `sent` with reset `message`: absent, the encoder fits each message itself.
    */
   readonly tables?: Tables;
+  /**
+   * Each message is to hold as many whole units as fit into so many coded bytes, everything counted: the message ends that
+   * an encoder or a trainer is given are then those of units, and the encoder decides the messages. Only where a message
+   * decodes alone (reset `message`).
+   */
+  readonly fill?: { readonly bytes: number };
+  /** Where all messages are whole units of so many symbols: the count that is written is that of units. */
+  readonly unitSymbols?: number;
   /** Where the symbols are the bytes of whole records: their shape. */
   readonly record?: RecordShape;
   /** What the corpus says of how fields are coded, by field name: see symbols/field-choice.ts. */
@@ -68,6 +76,8 @@ export interface Coded {
   readonly bytes: Uint8Array;
   /** For each message the bit where it ends, padding included: multiples of `align`. */
   readonly messageEndsBits: Float64Array;
+  /** Under `fill`: for each message the index one past its last symbol, as the encoder decided. */
+  readonly symbolEnds?: Uint32Array;
   readonly account: IntegerAccount;
   /** Σ word lengths, or −log2 of the final by the initial interval of an arithmetic coder: real, not rounded. */
   readonly payloadBits: number;
@@ -190,7 +200,12 @@ export interface Coder {
   check?(setup: Setup): void;
   /** Absent where no policy of the coder uses tables. */
   trainer?(setup: Setup): Trainer;
+  /** Codes the messages it is given; `fill` is for {@link filler}, or for the wrapper of coders that have none. */
   encoder(setup: Setup): Encoder;
+  /** A quick encoder under `fill`, which gives the same as trying every length; undefined where there is none. */
+  filler?(setup: Setup): Encoder | undefined;
+  /** Whether one more symbol never makes a message shorter, so that a fill may skip lengths. Absent: not known. */
+  growsSteadily?(setup: Setup): boolean;
   decoder(setup: Setup, limits: DecodeLimits): Decoder;
   /** Absent for coders that have no probabilities (references). `sequence` is one whole unit. */
   price?(sequence: SymbolSequence, setup: Setup): Price;

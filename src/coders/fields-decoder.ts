@@ -1,5 +1,4 @@
 import { BitReader } from '../bits/bit-reader.ts';
-import { readCount } from '../bits/elias-delta.ts';
 import { CorruptStreamError } from '../errors/errors.ts';
 import type { FieldPlan } from '../models/field-plan.ts';
 import { FieldPredictor } from '../models/field-predictor.ts';
@@ -10,11 +9,19 @@ import { newSymbolArray } from '../symbols/sequence.ts';
 import type { CodedInput, Decoded, DecodeLimits, Decoder, Setup } from './contract.ts';
 import { continuationOf } from './fields-encoder.ts';
 import type { FieldsSettings } from './fields-settings.ts';
-import { adaptiveTablesFor, startsAtMessages, tablesFor } from './fields-tables.ts';
+import {
+  adaptiveTablesFor,
+  countedInRecords,
+  startsAtMessages,
+  tablesFor,
+} from './fields-tables.ts';
 import { MessageWalk } from './message-frame.ts';
 import { growSymbols } from './symbol-buffer.ts';
 
-/** A message may claim more records than its bytes hold; room is made for about so many bytes at a time. */
+/**
+ * A message may claim more records than its bytes hold; room is made for about so many bytes at a
+ * time.
+ */
 const ROOM_BYTES = 1 << 16;
 
 export function fieldsDecoder(
@@ -45,16 +52,14 @@ function decode(
   const size = plan.layout.bytes;
   const reader = new BitReader(input.bytes);
   const stage = new RangeDecoder(reader, settings.rangeBits);
-  const walk = new MessageWalk(reader, setup, input, limits);
+  const walk = new MessageWalk(reader, countedInRecords(setup, plan.layout), input, limits);
   const predictor = new FieldPredictor(plan);
   const continuation = continuationOf(setup.lengths);
   const roomRecords = Math.ceil(ROOM_BYTES / size);
   let symbols = newSymbolArray(alphabetSize, 0) as Uint8Array;
   let filled = 0;
-  for (let message = 0; walk.open(); message++) {
-    // What is written is the number of records; what is known is that of symbols.
-    const count =
-      setup.lengths === 'known' ? input.symbolCounts![message] : readCount(reader) * size;
+  let message = 0;
+  for (let count = walk.next(); count >= 0; count = walk.next(), message++) {
     if (count % size !== 0) {
       throw new CorruptStreamError('a message is not a whole number of records', {
         messageIndex: message,
@@ -62,7 +67,6 @@ function decode(
         got: `${count} bytes`,
       });
     }
-    walk.book(count);
     if (startsAtMessages(setup)) {
       predictor.start();
       tables.reset();

@@ -7,17 +7,35 @@ import { RangeEncoder } from '../stages/range-encoder.ts';
 import type { SymbolArray } from '../symbols/sequence.ts';
 import type { Encoder, Lengths, Setup } from './contract.ts';
 import type { FieldsSettings } from './fields-settings.ts';
-import { adaptiveTablesFor, recordCountOf, startsAtMessages, tablesFor } from './fields-tables.ts';
+import {
+  adaptiveTablesFor,
+  countedInRecords,
+  recordCountOf,
+  startsAtMessages,
+  tablesFor,
+} from './fields-tables.ts';
+import { CodeStringDraft, type DraftModel } from './fill-drafts.ts';
+import { fillingEncoder } from './fill-messages.ts';
 import { writeSymbolCount } from './message-frame.ts';
 import { MessageLedger } from './message-ledger.ts';
 import { MessagePieces, type PieceSink } from './message-pieces.ts';
 
 /**
- * What a decoder reads after a message's last bit: phantom zeros where it knows the end; otherwise anything, and the code
- * string ends so that the decoder sees for itself where.
+ * What a decoder reads after a message's last bit: phantom zeros where it knows the end; otherwise
+ * anything, and the code string ends so that the decoder sees for itself where.
  */
 export const continuationOf = (lengths: Lengths): 'zeros' | 'any' =>
   lengths === 'link' ? 'zeros' : 'any';
+
+/** The plan and tables that an encoder starts with. */
+function writerFor(
+  settings: FieldsSettings,
+  setup: Setup,
+): { plan: FieldPlan; tables: TokenWriter } {
+  if (setup.policy !== 'shipped') return adaptiveTablesFor(settings, setup);
+  const { plan, frequencies } = tablesFor(setup, 'shipped');
+  return { plan, tables: new StaticFieldTables(plan, frequencies) };
+}
 
 /** Codes messages one after another: record count, code string, padding. */
 class FieldMessages implements PieceSink {
@@ -33,25 +51,19 @@ class FieldMessages implements PieceSink {
   #openBytes = 0;
 
   constructor(settings: FieldsSettings, setup: Setup) {
-    this.#setup = setup;
     this.ledger = new MessageLedger(setup.align);
     this.#stage = new RangeEncoder(this.writer, settings.rangeBits);
-    if (setup.policy === 'shipped') {
-      const { plan, frequencies } = tablesFor(setup, 'shipped');
-      this.#plan = plan;
-      this.#tables = new StaticFieldTables(plan, frequencies);
-    } else {
-      const { plan, tables } = adaptiveTablesFor(settings, setup);
-      this.#plan = plan;
-      this.#tables = tables;
-    }
+    const { plan, tables } = writerFor(settings, setup);
+    this.#setup = countedInRecords(setup, plan.layout);
+    this.#plan = plan;
+    this.#tables = tables;
     this.#predictor = new FieldPredictor(this.#plan);
     this.#open = new Uint8Array(this.#plan.layout.bytes);
   }
 
   begin(symbolCount: number): void {
-    const records = recordCountOf(symbolCount, this.#plan.layout);
-    this.ledger.framingBits += writeSymbolCount(this.writer, this.#setup, records);
+    recordCountOf(symbolCount, this.#plan.layout);
+    this.ledger.framingBits += writeSymbolCount(this.writer, this.#setup, symbolCount);
     if (startsAtMessages(this.#setup)) {
       this.#predictor.start();
       this.#tables.reset();
@@ -89,6 +101,30 @@ class FieldMessages implements PieceSink {
   #code(bytes: Uint8Array, at: number): void {
     codeRecord(this.#predictor, this.#tables, bytes, at, this.#stage);
   }
+}
+
+/** A quick encoder under `fill`; each unit is a whole number of records. */
+export function fieldsFiller(settings: FieldsSettings, setup: Setup): Encoder {
+  const { plan, tables } = writerFor(settings, setup);
+  const { layout } = plan;
+  const predictor = new FieldPredictor(plan);
+  const model: DraftModel = {
+    reset() {
+      predictor.start();
+      tables.reset();
+    },
+    encode(symbols, from, to, stage) {
+      recordCountOf(to - from, layout);
+      for (let at = from; at < to; at += layout.bytes)
+        codeRecord(predictor, tables, symbols as Uint8Array, at, stage);
+    },
+  };
+  const counted = countedInRecords(setup, layout);
+  const continuation = continuationOf(setup.lengths);
+  return fillingEncoder(
+    counted,
+    new CodeStringDraft(counted, model, settings.rangeBits, continuation),
+  );
 }
 
 export function fieldsEncoder(settings: FieldsSettings, setup: Setup): Encoder {

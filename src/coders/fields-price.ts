@@ -19,8 +19,9 @@ function writerFor(
 }
 
 /**
- * Code lengths by the same record step as the encoder's, each field into a meter of its own; static tables enter with their
- * smoothed counts instead of quantised frequencies. There is no fit: the class has no best member.
+ * Code lengths by the same record step as the encoder's, each field into a meter of its own; static
+ * tables enter with their smoothed counts instead of quantised frequencies. There is no fit: the
+ * class has no best member.
  */
 export function fieldsPrice(
   settings: FieldsSettings,

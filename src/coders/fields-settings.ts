@@ -40,9 +40,9 @@ export const fieldsDeclaration: Declaration = {
   needsWholeMessage: false,
   reference: false,
   maxAlphabetSize: 256,
-  worstCase: 'about 14 bits and its own width a field and record, and 2 bits a message',
+  worstCase: 'at most 15 bits and its own width a field and record, and 2 bits a message',
   memory:
-    'up to 10 tables a field of 2^w entries, 16 + 2 (w − 4) at a width of w > 4 bits, 2 bytes each',
+    'up to 10 tables a field, 2 bytes an entry: 2^w entries at a width of w ≤ 4 bits, 16 + 2 (w − 4) above',
   source:
     'tokens with extra bits: common practice, no source; G. N. N. Martin 1979 (range coding); zigzag: common practice, no source',
 };

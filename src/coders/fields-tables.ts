@@ -13,8 +13,14 @@ import type { Setup, Tables, Trainer } from './contract.ts';
 import { type FieldsSettings, untrainedPlan } from './fields-settings.ts';
 import { MessagePieces } from './message-pieces.ts';
 
-/** Choices, references and size classes are made on the last of the train records: so many values at most. */
+/**
+ * Choices, references and size classes are made on the last of the train records: so many values at
+ * most.
+ */
 const MOST_VALUES = 2 ** 20;
+
+/** Under `fill`, contexts begin at one of so many units of the train split, as if messages held so many. */
+const UNITS_A_START = 8;
 
 interface TrainedPlan {
   readonly coder: 'fields';
@@ -67,6 +73,12 @@ export function adaptiveTablesFor(
 export const startsAtMessages = (setup: Setup): boolean =>
   setup.policy === 'shipped' || setup.reset === 'message';
 
+/** What is written of a message's length is the number of its records, where units are not counted. */
+export const countedInRecords = (setup: Setup, layout: RecordLayout): Setup => ({
+  ...setup,
+  unitSymbols: setup.unitSymbols ?? layout.bytes,
+});
+
 /** Number of records in a message of so many bytes. Throws InputError for a part of one. */
 export function recordCountOf(symbolCount: number, layout: RecordLayout): number {
   const over = symbolCount % layout.bytes;
@@ -80,14 +92,22 @@ export function recordCountOf(symbolCount: number, layout: RecordLayout): number
   });
 }
 
+/** Messages of the train split from one begin of contexts to the next. */
+function startEvery(setup: Setup): number {
+  if (!startsAtMessages(setup)) return Number.POSITIVE_INFINITY;
+  return setup.fill === undefined ? 1 : UNITS_A_START;
+}
+
 /**
- * A trainer for the policies that have tables. It keeps the train split until the end, since choices come before counts.
+ * A trainer for the policies that have tables. It keeps the train split until the end, since
+ * choices come before counts.
  *
- * The choices are made on the last records, at most {@link MOST_VALUES} values of them: those nearest to what will be coded.
+ * The choices are made on the last records, at most {@link MOST_VALUES} values of them: those
+ * nearest to what will be coded.
  */
 export function fieldsTrainer(settings: FieldsSettings, setup: Setup): Trainer {
   const layout = settings.layoutOf(setup);
-  const train = new TrainRecords(layout, startsAtMessages(setup));
+  const train = new TrainRecords(layout, startEvery(setup));
   return {
     push: (chunk) => train.pieces.push(chunk),
     finish: (): FieldsTables => {
@@ -166,12 +186,18 @@ class TrainRecords {
   #filled = 0;
   readonly #firstRecords: number[] = [];
 
-  constructor(layout: RecordLayout, startAtMessages: boolean) {
+  /** @param startEvery  contexts begin at the first message, and then at each of so many */
+  constructor(layout: RecordLayout, startEvery: number) {
     this.#layout = layout;
+    let left = 0;
     this.pieces = new MessagePieces({
       begin: (symbolCount) => {
         recordCountOf(symbolCount, layout);
-        if (startAtMessages) this.#firstRecords.push(this.#filled / layout.bytes);
+        if (left === 0) {
+          this.#firstRecords.push(this.#filled / layout.bytes);
+          left = startEvery;
+        }
+        left--;
       },
       take: (symbols, from, to) => {
         const end = this.#filled + to - from;

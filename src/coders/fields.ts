@@ -1,7 +1,7 @@
 import { fieldChoiceText } from '../symbols/field-choice.ts';
 import type { Coder, CoderEntry } from './contract.ts';
 import { fieldsDecoder } from './fields-decoder.ts';
-import { fieldsEncoder } from './fields-encoder.ts';
+import { fieldsEncoder, fieldsFiller } from './fields-encoder.ts';
 import { fieldsPrice } from './fields-price.ts';
 import { FieldsSettings, fieldsDeclaration } from './fields-settings.ts';
 import { type FieldsTables, fieldsTrainer } from './fields-tables.ts';
@@ -10,9 +10,11 @@ import type { ParameterValues } from './parameters.ts';
 /**
  * A record's fields, each under its own transform and tables. What may surprise:
  * - bits that no field names are fields too, one a byte, called `@` and the byte;
- * - a message's first record is coded against what the train split says of each field, and counts in tables of its own;
- * - what is written of a message's length is the number of its records;
- * - without a map, `shipped` and `primed` choose for each field on the train split, and `learned` is refused.
+ * - a message's first record is coded against what the train split says of each field, and counts
+ *   in tables of its own;
+ * - what is written of a message's length is the number of its records, or of its units under `fill`;
+ * - without a map, `shipped` and `primed` choose for each field on the train split, and `learned`
+ *   is refused.
  */
 export const fields: CoderEntry = { declaration: fieldsDeclaration, create };
 
@@ -29,6 +31,11 @@ function create(values: ParameterValues): Coder {
       settings.check(setup);
       return fieldsEncoder(settings, setup);
     },
+    filler: (setup) => {
+      settings.check(setup);
+      return fieldsFiller(settings, setup);
+    },
+    growsSteadily: () => true,
     decoder: (setup, limits) => {
       settings.check(setup);
       return fieldsDecoder(settings, setup, limits);

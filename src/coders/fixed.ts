@@ -83,6 +83,8 @@ const coder: Coder = {
     };
   },
 
+  growsSteadily: () => true,
+
   decoder(setup, limits) {
     const width = symbolWidth(setup.alphabetSize);
     let kernel: PrefixDecoder | undefined;

@@ -12,54 +12,104 @@ export function divisorWidth(m: number): number {
 /**
  * Finds the best divisor of a Golomb code by exact cost.
  *
- * With T(x) the symbols that are x or more, the quotients by m sum to T(m) + T(2m) + …, and T at the bounds of the long
- * remainders counts those: one divisor is weighed in (largest symbol) / m steps, however many symbols there are. Divisors
- * whose least thinkable cost passes the best so far are not weighed; those left lie within a small factor of the mean.
+ * Between two powers of two the remainders keep their width b. As m grows there by one, a word can only become shorter, but
+ * for one case: a symbol below m, which is its own remainder, becomes a long one when m reaches 2^b − symbol. So the best
+ * divisor, and of equals the greatest, stands just before such a place, at a power of two, or at the end of the range; only those
+ * are weighed, and of those only the ones whose least thinkable cost does not pass the best so far.
  *
- * Cost: about six steps a value up to the largest symbol, beside one comparison a divisor up to the mean.
+ * To weigh one: with T(x) the symbols that are x or more, the quotients by m sum to T(m) + T(2m) + …, and T at the bounds of
+ * the long remainders counts those; or, where that is less, symbol by symbol.
+ *
+ * Cost: D distinct symbols up to v: some D · min(D, v / mean) steps.
  */
 export class DivisorChoice implements ParameterChooser {
-  #tails = new Float64Array(64);
+  #counts: SymbolCounts | undefined;
+  #sum = 0;
   #largest = 0;
-  #total = 0;
+  #tails = new Float64Array(64);
+  #hasTails = false;
+  #best = 0;
+  #bestBits = 0;
 
   choose(counts: SymbolCounts): ChosenParameter {
+    const { total, seen, seenCount } = counts;
     const greatest = Math.min(LARGEST_DIVISOR, counts.counts.length);
-    const total = counts.total;
     if (total === 0) return { parameter: greatest, bits: 0 };
-    const sum = this.#countTails(counts);
-    // Near the best divisor of a geometric source, which is ln 2 times the mean; it decides only where the search starts.
-    const first = Math.min(greatest, Math.max(1, Math.floor((7 * sum) / (10 * total))));
-    let best = first;
-    let bestBits = this.#bitsOf(first);
-    for (let m = first - 1; m >= 1; m--) {
-      const quotients = Math.floor((sum - total * (m - 1)) / m);
-      if (total * divisorWidth(m) + quotients > bestBits) continue;
-      const bits = this.#bitsOf(m);
-      if (bits < bestBits) {
-        best = m;
-        bestBits = bits;
+    this.#counts = counts;
+    this.#sum = 0;
+    this.#largest = 0;
+    for (let i = 0; i < seenCount; i++) {
+      this.#largest = Math.max(this.#largest, seen[i]);
+      this.#sum += seen[i] * counts.counts[seen[i]];
+    }
+    this.#hasTails = false;
+    this.#best = greatest;
+    this.#bestBits = this.#bitsOf(greatest);
+
+    // The powers of two, which are few, tell where the best can be.
+    for (let m = 1; m <= greatest; m *= 2) this.#weigh(m);
+    const widest = divisorWidth(greatest);
+    for (let width = 2; width <= widest && total * width <= this.#bestBits; width++) {
+      const above = 2 ** (width - 1);
+      for (let i = 0; i < seenCount; i++) {
+        const m = 2 ** width - 1 - seen[i];
+        if (m > above && m < greatest) this.#weigh(m);
       }
     }
-    for (let m = first + 1; m <= greatest && total * divisorWidth(m) <= bestBits; m++) {
-      const bits = this.#bitsOf(m);
-      if (bits < bestBits || (bits === bestBits && m > best)) {
-        best = m;
-        bestBits = bits;
-      }
-    }
-    return { parameter: best, bits: bestBits };
+    this.#counts = undefined;
+    return { parameter: this.#best, bits: this.#bestBits };
   }
 
-  /** Sets T(0 … largest + 1); returns the sum of all symbols. */
-  #countTails(counts: SymbolCounts): number {
-    let largest = 0;
-    let sum = 0;
+  #weigh(m: number): void {
+    const { total } = this.#counts!;
+    // Quotients are least when every remainder is the largest.
+    const quotients = Math.max(0, Math.floor((this.#sum - total * (m - 1)) / m));
+    if (total * divisorWidth(m) + quotients > this.#bestBits) return;
+    const bits = this.#bitsOf(m);
+    if (bits < this.#bestBits || (bits === this.#bestBits && m > this.#best)) {
+      this.#best = m;
+      this.#bestBits = bits;
+    }
+  }
+
+  /** Length of all symbols under divisor m. */
+  #bitsOf(m: number): number {
+    const counts = this.#counts!;
+    // Every word has a one and width − 1 bits; each quotient and each long remainder adds to it.
+    const bits = counts.total * divisorWidth(m);
+    const { seenCount } = counts;
+    // Tails take a walk over all values first: a few symbols never repay it.
+    const bySymbols = seenCount * m < 2 * this.#largest || seenCount ** 2 < this.#largest;
+    return bits + (bySymbols ? this.#addedBySymbols(counts, m) : this.#addedByTails(counts, m));
+  }
+
+  #addedBySymbols(counts: SymbolCounts, m: number): number {
+    const short = 2 ** divisorWidth(m) - m;
+    let bits = 0;
     for (let i = 0; i < counts.seenCount; i++) {
       const symbol = counts.seen[i];
-      if (symbol > largest) largest = symbol;
-      sum += symbol * counts.counts[symbol];
+      const quotient = Math.floor(symbol / m);
+      const isLong = symbol - quotient * m >= short;
+      bits += counts.counts[symbol] * (isLong ? quotient + 1 : quotient);
     }
+    return bits;
+  }
+
+  #addedByTails(counts: SymbolCounts, m: number): number {
+    if (!this.#hasTails) this.#countTails(counts);
+    const tails = this.#tails;
+    const largest = this.#largest;
+    const short = 2 ** divisorWidth(m) - m;
+    let bits = 0;
+    for (let at = m; at <= largest; at += m) bits += tails[at];
+    for (let at = short; at <= largest; at += m)
+      bits += tails[at] - tails[Math.min(at + m - short, largest + 1)];
+    return bits;
+  }
+
+  /** Sets T(0 … largest + 1). */
+  #countTails(counts: SymbolCounts): void {
+    const largest = this.#largest;
     if (this.#tails.length < largest + 2)
       this.#tails = new Float64Array(Math.max(largest + 2, 2 * this.#tails.length));
     const tails = this.#tails;
@@ -69,22 +119,6 @@ export class DivisorChoice implements ParameterChooser {
       tail += counts.counts[symbol];
       tails[symbol] = tail;
     }
-    this.#largest = largest;
-    this.#total = counts.total;
-    return sum;
-  }
-
-  /** Length of all symbols under divisor m. */
-  #bitsOf(m: number): number {
-    const tails = this.#tails;
-    const largest = this.#largest;
-    const width = divisorWidth(m);
-    const short = 2 ** width - m;
-    // Every word has a one and width − 1 bits; each quotient and each long remainder adds to it.
-    let bits = this.#total * width;
-    for (let at = m; at <= largest; at += m) bits += tails[at];
-    for (let at = short; at <= largest; at += m)
-      bits += tails[at] - tails[Math.min(at + m - short, largest + 1)];
-    return bits;
+    this.#hasTails = true;
   }
 }

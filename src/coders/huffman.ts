@@ -2,6 +2,8 @@ import { InputError } from '../errors/errors.ts';
 import { PrefixDecoder } from '../stages/prefix-decoder.ts';
 import { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import type { Coder, CoderEntry, Declaration, Setup, Tables } from './contract.ts';
+import { WordDraft } from './fill-drafts.ts';
+import { fillingEncoder } from './fill-messages.ts';
 import { symbolWidth } from './fixed.ts';
 import { sentReader, shippedReader } from './huffman-decoder.ts';
 import { messageEncoder, streamEncoder } from './huffman-encoder.ts';
@@ -129,6 +131,13 @@ function createHuffman(values: ParameterValues): Coder {
       words.setWords(table.symbols, table.lengths, table.count);
       return streamEncoder(setup, words, table, maxBits);
     },
+
+    filler: (setup) =>
+      setup.policy === 'shipped'
+        ? fillingEncoder(setup, new WordDraft(setup, shippedEncoder(setup)))
+        : undefined,
+
+    growsSteadily: (setup) => setup.policy !== 'sent',
 
     decoder(setup, limits) {
       if (setup.policy === 'shipped') return shippedReader(setup, limits, shippedDecoder(setup));

@@ -98,6 +98,9 @@ export function integerCoder(
 
     encoder: (setup) => integerEncoder(family, setup, given),
 
+    // Every word has a bit or more; and one more symbol shortens no code, so also not the best, whose parameter has a fixed width.
+    growsSteadily: () => true,
+
     decoder: (setup, limits) => integerDecoder(family, setup, limits, given),
 
     price: (sequence, setup) => price(family, sequence, setup, given),

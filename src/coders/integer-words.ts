@@ -8,7 +8,7 @@ import { CorruptStreamError } from '../errors/errors.ts';
  */
 
 /** Most bits that {@link BitReader.peekBits} finds in one load. */
-export const LOOK_BITS = 25;
+const LOOK_BITS = 25;
 
 /**
  * Writes `zeros` zeros, a one, and the low `width` bits of `rest`.

@@ -1,15 +1,35 @@
 import type { BitReader } from '../bits/bit-reader.ts';
 import type { BitWriter } from '../bits/bit-writer.ts';
-import { readCount, writeCount } from '../bits/elias-delta.ts';
-import { CorruptStreamError, LimitError } from '../errors/errors.ts';
+import { countBits, readCount, writeCount } from '../bits/elias-delta.ts';
+import { BugError, CorruptStreamError, LimitError } from '../errors/errors.ts';
 import type { CodedInput, DecodeLimits, Setup } from './contract.ts';
 
+/** The count that says how many symbols there are: that of units where these have a fixed size, else their own. */
+function countOf({ unitSymbols = 1 }: Setup, symbolCount: number): number {
+  const count = symbolCount / unitSymbols;
+  if (Number.isInteger(count)) return count;
+  throw new BugError('a message is not a whole number of units', {
+    expected: `a multiple of ${unitSymbols} symbols`,
+    got: `${symbolCount} symbols`,
+  });
+}
+
+/** Bits that {@link writeSymbolCount} will take. */
+export function symbolCountBits(setup: Setup, symbolCount: number): number {
+  return setup.lengths === 'known' ? 0 : countBits(countOf(setup, symbolCount));
+}
+
 /**
- * The first thing in every message: its symbol count, where `lengths` does not grant it.
+ * The first thing in every message: its symbol count, or unit count, where `lengths` does not grant it.
  * @returns bits written, to be booked in `framing`
  */
 export function writeSymbolCount(writer: BitWriter, setup: Setup, symbolCount: number): number {
-  return setup.lengths === 'known' ? 0 : writeCount(writer, symbolCount);
+  return setup.lengths === 'known' ? 0 : writeCount(writer, countOf(setup, symbolCount));
+}
+
+/** The symbol count that {@link writeSymbolCount} wrote. */
+export function readSymbolCount(reader: BitReader, { unitSymbols = 1 }: Setup): number {
+  return readCount(reader) * unitSymbols;
 }
 
 /**
@@ -71,7 +91,7 @@ export class MessageWalk {
     const count =
       this.#setup.lengths === 'known'
         ? this.#input.symbolCounts![this.#index]
-        : readCount(this.#reader);
+        : readSymbolCount(this.#reader, this.#setup);
     this.book(count);
     return count;
   }

@@ -1,10 +1,9 @@
 import { BitReader } from '../bits/bit-reader.ts';
-import { readCount } from '../bits/elias-delta.ts';
 import { BugError, CorruptStreamError } from '../errors/errors.ts';
 import { newSymbolArray, type SymbolArray } from '../symbols/sequence.ts';
 import type { CodedInput, Coder, Decoded, DecodeLimits, Decoder, Setup } from './contract.ts';
 import { symbolWidth } from './fixed.ts';
-import { MessageWalk } from './message-frame.ts';
+import { MessageWalk, readSymbolCount } from './message-frame.ts';
 import { copyBits } from './stored-bits.ts';
 import { innerSetup } from './stored-encoder.ts';
 import { growSymbols } from './symbol-buffer.ts';
@@ -100,7 +99,8 @@ class StoredMessages {
     const index = this.#opened++;
     const isRaw = reader.readBits(1) === 1;
     const { lengths, align } = this.#setup;
-    const count = lengths === 'known' ? this.#input.symbolCounts![index] : readCount(reader);
+    const count =
+      lengths === 'known' ? this.#input.symbolCounts![index] : readSymbolCount(reader, this.#setup);
     walk.book(count);
     const left = reader.limit - reader.position;
     const rawBits = count * this.#width;

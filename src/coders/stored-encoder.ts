@@ -1,10 +1,9 @@
 import { BitWriter } from '../bits/bit-writer.ts';
-import { countBits } from '../bits/elias-delta.ts';
 import { BugError } from '../errors/errors.ts';
 import { newSymbolArray, type SymbolArray, type SymbolChunk } from '../symbols/sequence.ts';
 import type { Coded, Coder, Encoder, Setup } from './contract.ts';
 import { symbolWidth } from './fixed.ts';
-import { writeSymbolCount } from './message-frame.ts';
+import { symbolCountBits, writeSymbolCount } from './message-frame.ts';
 import { MessageLedger } from './message-ledger.ts';
 import { writeBitsOf } from './stored-bits.ts';
 import { growSymbols } from './symbol-buffer.ts';
@@ -25,7 +24,7 @@ export function isCoded(
   symbolCount: number,
   codedBits: number,
 ): boolean {
-  const opening = 1 + (setup.lengths === 'known' ? 0 : countBits(symbolCount));
+  const opening = 1 + symbolCountBits(setup, symbolCount);
   const { align } = setup;
   return (
     Math.ceil((opening + codedBits) / align) <= Math.ceil((opening + symbolCount * width) / align)

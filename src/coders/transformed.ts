@@ -8,7 +8,7 @@ import type { CodedInput, Coder, Declaration, Decoder, Setup } from './contract.
  *
  * What may surprise:
  * - each message starts the chain anew where messages start the coder anew (reset `message`, `shipped`, no tables); under
- *   reset `never` the chain runs on over message ends, in training too;
+ *   reset `never` the chain runs on over message ends, in training too; in training it also runs on over units of a fill;
  * - a symbol count that the coder writes is the count after the chain, which `byte-planes` and `bit-planes` multiply;
  * - the price has no fit: a chain has no best member (DESIGN, the bit account).
  */
@@ -17,6 +17,9 @@ export function transformed(coder: Coder, chain: TransformChain): Coder {
   const innerSetup = (setup: Setup): Setup => ({
     ...setup,
     alphabetSize: chain.shape(setup.alphabetSize).alphabetSize,
+    ...(setup.unitSymbols === undefined
+      ? {}
+      : { unitSymbols: setup.unitSymbols * chain.shape(setup.alphabetSize).symbolsPerSymbol }),
   });
   const forward = (setup: Setup) => chain.forward(setup.alphabetSize, runsOn(setup));
 
@@ -41,7 +44,9 @@ export function transformed(coder: Coder, chain: TransformChain): Coder {
       : {
           trainer(setup: Setup) {
             const trainer = coder.trainer!(innerSetup(setup));
-            const pass = forward(setup);
+            // A message holds several units of the train split, and only its first begins the chain.
+            const overUnits = setup.fill !== undefined && !chain.needsWholeMessage;
+            const pass = chain.forward(setup.alphabetSize, overUnits || runsOn(setup));
             return {
               push: (chunk) => trainer.push(pass.push(chunk)),
               finish: () => {
@@ -63,6 +68,9 @@ export function transformed(coder: Coder, chain: TransformChain): Coder {
         },
       };
     },
+
+    growsSteadily: (setup) =>
+      !chain.needsWholeMessage && (coder.growsSteadily?.(innerSetup(setup)) ?? false),
 
     decoder(setup, limits): Decoder {
       const { symbolsPerSymbol } = chain.shape(setup.alphabetSize);

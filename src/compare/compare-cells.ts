@@ -12,7 +12,7 @@ export interface Comparison {
   readonly low: number;
   readonly high: number;
   readonly units: number;
-  readonly unit: 'messages' | 'blocks of messages';
+  readonly unit: 'messages' | 'blocks of messages' | 'blocks of units';
   /** The interval excludes 0. */
   readonly decided: boolean;
 }
@@ -24,18 +24,24 @@ const LEAST_UNITS = 8;
 
 /**
  * Two cells by their messages.
+ * @param filledMessages  where messages are filled, and pairs are of units: the fewest messages that one of the two has. The
+ *   units of a message share its bits and are not independent, so contiguous blocks of about two messages are resampled
  * @returns undefined when there are too few messages for an interval
  */
 export function compareCells(
   corpus: string,
   a: { readonly id: string; readonly pairs: MessagePairs },
   b: { readonly id: string; readonly pairs: MessagePairs },
+  filledMessages?: number,
 ): Comparison | undefined {
   const messageCount = a.pairs.bits.length;
-  if (messageCount !== b.pairs.bits.length || messageCount < LEAST_UNITS) return undefined;
-  const inBlocks = messageCount > MOST_UNITS;
+  const filled = filledMessages !== undefined;
+  const most = filled ? Math.min(MOST_UNITS, Math.floor(filledMessages / 2)) : MOST_UNITS;
+  if (messageCount !== b.pairs.bits.length || Math.min(messageCount, most) < LEAST_UNITS)
+    return undefined;
+  const inBlocks = filled || messageCount > most;
   const group = (values: Float64Array): Float64Array =>
-    inBlocks ? intoBlocks(values, MOST_UNITS) : values;
+    inBlocks ? intoBlocks(values, most) : values;
   const { difference, low, high, units, decided } = pairedDifference({
     bitsA: group(a.pairs.bits),
     bitsB: group(b.pairs.bits),
@@ -51,7 +57,7 @@ export function compareCells(
     low,
     high,
     units,
-    unit: inBlocks ? 'blocks of messages' : 'messages',
+    unit: filled ? 'blocks of units' : inBlocks ? 'blocks of messages' : 'messages',
     decided,
   };
 }
@@ -74,7 +80,14 @@ export function compareWithBest(
       const comparison =
         own === undefined
           ? undefined
-          : compareCells(corpus.name, { id: best.id, pairs }, { id: cell.id, pairs: own });
+          : compareCells(
+              corpus.name,
+              { id: best.id, pairs },
+              { id: cell.id, pairs: own },
+              cell.unit_count === undefined
+                ? undefined
+                : Math.min(best.message_count!, cell.message_count!),
+            );
       if (comparison !== undefined) result.push(comparison);
     }
   }

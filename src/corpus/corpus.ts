@@ -2,7 +2,7 @@ import type { AlphabetMap } from '../symbols/alphabet-map.ts';
 import type { RecordShape } from '../symbols/record.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { TakenValues } from '../symbols/takers/taker.ts';
-import type { LengthsGranted } from './messages.ts';
+import type { FillBudget, LengthsGranted } from './messages.ts';
 
 /** What a plan, or the options of a command, say about one corpus. */
 export interface CorpusSpec {
@@ -46,6 +46,8 @@ export interface CorpusFacts {
   /** Bytes of all files. */
   readonly sourceBytes: number;
   readonly record?: RecordShape;
+  /** Each candidate fills messages itself: what stands here as messages are the units it fills them with. */
+  readonly fill?: FillBudget;
   /** For each file the index one past its last message: equal neighbours are files without a message. */
   readonly fileEnds: Uint32Array;
 }

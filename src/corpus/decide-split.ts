@@ -4,7 +4,8 @@ import { firstAbove, type RawCorpus } from './corpus.ts';
 
 /** How train and test are told apart. */
 export interface SplitRule {
-  readonly by: 'message' | 'file' | 'block';
+  /** Under fill, messages here are units; `unit` is another word for that. */
+  readonly by: 'message' | 'unit' | 'file' | 'block';
   readonly order: 'in_time' | 'random';
   /** Share of the messages, files or symbols that go to train, 0 … 1, to nine decimals. */
   readonly train: number;
@@ -35,7 +36,7 @@ export interface Split {
 }
 
 /** What a split needs to know about a corpus. */
-export type SplitShape = Pick<RawCorpus, 'name' | 'messageEnds' | 'fileEnds'>;
+export type SplitShape = Pick<RawCorpus, 'name' | 'messageEnds' | 'fileEnds' | 'fill'>;
 
 /** Blocks that a random split by block is dealt from. */
 const BLOCKS = 64;
@@ -122,10 +123,11 @@ class SideBuilder {
 /**
  * Decides which messages, or parts of messages, are train and which test.
  *
- * - by `message`: whole messages; by `file`: all messages of a file together.
+ * - by `message` or `unit`: whole messages; by `file`: all messages of a file together.
  * - by `block`, `in_time`: one cut after ⌊train · n⌋ symbols; the message across it becomes two.
  * - by `block`, `random`: 64 blocks of equal size (to one symbol; fewer than 64 symbols give blocks of one) are dealt;
  *   a message is cut only where its neighbours lie on different sides. An empty message goes with the block it stands in.
+ *   Under fill, cuts move up to the end of a unit.
  * @throws InputError when a side would stay empty
  */
 export function decideSplit(shape: SplitShape, rule: SplitRule): Split {
@@ -138,7 +140,8 @@ export function decideSplit(shape: SplitShape, rule: SplitRule): Split {
     const { messageEnds, fileEnds } = shape;
     const byFile = rule.by === 'file';
     const count = byFile ? fileEnds.length : messageEnds.length;
-    const sides = dealSides(rule, count, rule.by, shape.name);
+    const thing = shape.fill !== undefined && !byFile ? 'unit' : rule.by;
+    const sides = dealSides(rule, count, thing, shape.name);
     let file = 0;
     let start = 0;
     for (let message = 0; message < messageEnds.length; message++) {
@@ -182,6 +185,9 @@ function cutBlocks(
     );
     sides = dealSides(rule, blocks, 'block', shape.name);
   }
+  // A unit is never cut: it goes with the block that it begins in.
+  if (shape.fill !== undefined)
+    cuts = cuts.map((cut) => (cut === 0 ? 0 : messageEnds[firstAbove(messageEnds, cut - 1)]));
   const last = cuts.length - 1;
   let block = 0;
   let start = 0;

@@ -10,6 +10,7 @@ import { fixAlphabet } from './fix-alphabet.ts';
 import { joinValues, valueCount } from './join-values.ts';
 import {
   everyEnds,
+  type FillBudget,
   type MessageRule,
   parseMessageRule,
   segmentFile,
@@ -44,8 +45,10 @@ export function checkIntake(spec: Pick<CorpusSpec, 'record' | 'symbols' | 'messa
       got: spec.messages,
     });
   }
-  if (taker.field !== undefined && rule.kind === 'lines') {
-    throw new InputError(`messages: lines does not go with symbols: ${taker.text}`, {
+  checkUnit(spec, taker, rule);
+  const byLines = rule.kind === 'lines' || (rule.kind === 'fill' && rule.unit === 'line');
+  if (taker.field !== undefined && byLines) {
+    throw new InputError(`messages: ${spec.messages} does not go with symbols: ${taker.text}`, {
       key: 'messages',
       expected: 'whole, every=N, records=K or prefix=…, since a record has no lines',
       got: spec.messages,
@@ -70,6 +73,31 @@ export function checkIntake(spec: Pick<CorpusSpec, 'record' | 'symbols' | 'messa
     });
   }
   return { taker, rule };
+}
+
+/** Units of a fixed size must be whole symbols, each the same number of them. */
+function checkUnit(
+  spec: Pick<CorpusSpec, 'record' | 'messages'>,
+  taker: SymbolTaker,
+  rule: MessageRule,
+): void {
+  if (rule.kind !== 'fill' || rule.unit === 'line') return;
+  const { unit } = rule;
+  if (taker.alphabet !== 'natural') {
+    throw new InputError(`messages: ${spec.messages} does not go with symbols: ${taker.text}`, {
+      key: 'messages',
+      expected: 'unit=line, since so many bytes are no fixed number of these symbols',
+      got: spec.messages,
+    });
+  }
+  const step =
+    taker.field === undefined ? Math.ceil(1 / taker.maxSymbolsPerByte) : (spec.record?.bytes ?? 1);
+  if (unit % step === 0) return;
+  throw new InputError(`a unit of ${unit} bytes is not a whole number of symbols: ${taker.text}`, {
+    key: 'messages',
+    expected: `unit= with a multiple of ${step}`,
+    got: spec.messages,
+  });
 }
 
 async function guardSize(
@@ -141,6 +169,7 @@ export async function loadRawCorpus(
       got: 'none',
     });
   }
+  const joined = joinEnds(endsOfFiles, files);
   return {
     name: spec.name,
     files,
@@ -150,7 +179,8 @@ export async function loadRawCorpus(
     lengths: spec.lengths ?? usualLengths(rule),
     sourceBytes,
     ...(spec.record === undefined ? {} : { record: spec.record }),
-    ...joinEnds(endsOfFiles, files),
+    ...joined,
+    ...fillOf(rule, joined.messageEnds),
     values,
     ...(spec.alphabet === undefined ? {} : { givenAlphabet: spec.alphabet }),
   };
@@ -172,6 +202,13 @@ function takeFile(
   });
   if (rule.kind !== 'every') return taken;
   return { values: taken.values, messageEnds: everyEnds(valueCount(taken.values), rule.count) };
+}
+
+/** What {@link CorpusFacts} says of filling; units of a fixed size all have the symbols of the first. */
+function fillOf(rule: MessageRule, unitEnds: Uint32Array): { fill?: FillBudget } {
+  if (rule.kind !== 'fill') return {};
+  const { bytes, unit } = rule;
+  return { fill: { bytes, ...(unit === 'line' ? {} : { unitSymbols: unitEnds[0] }) } };
 }
 
 function joinEnds(

@@ -21,37 +21,35 @@ export type PrefixType = keyof typeof PREFIXES;
  * - `every`: `count` symbols, the last message of a file shorter.
  * - `records`: `count` records, the last message of a file shorter.
  * - `prefix`: frames, each after its length in bytes, which is no symbol.
+ * - `fill`: as many whole units as fit into so many coded bytes, so each candidate cuts its own; what a file is cut into
+ *   here are the units: so many source bytes, or a line with its newline, which is a symbol, since it parts the lines again.
  */
 export type MessageRule =
   | { readonly kind: 'whole' }
   | { readonly kind: 'lines' }
   | { readonly kind: 'every'; readonly count: number }
   | { readonly kind: 'records'; readonly count: number }
-  | { readonly kind: 'prefix'; readonly type: PrefixType };
+  | { readonly kind: 'prefix'; readonly type: PrefixType }
+  | { readonly kind: 'fill'; readonly bytes: number; readonly unit: number | 'line' };
 
 /** What the decoder gets for free; see DESIGN of the framing. */
 export type LengthsGranted = 'known' | 'link' | 'sent';
 
-const FORMS = 'whole, lines, every=N, records=K or prefix=u8|u16le|u16be|u32le|u32be';
+const FORMS =
+  'whole, lines, every=N, records=K, prefix=u8|u16le|u16be|u32le|u32be or fill=BYTES,unit=N|line';
 
 const LARGEST_COUNT = 2 ** 31;
 
 /**
  * Reads a rule as a plan or an option writes it.
- * @throws InputError with the nearest word; NotYetError for `fill=`
+ * @throws InputError with the nearest word; NotYetError for `unit=row`
  */
 export function parseMessageRule(text: string): MessageRule {
   const trimmed = text.trim();
   const equals = trimmed.indexOf('=');
   const word = (equals < 0 ? trimmed : trimmed.slice(0, equals)).trim();
   const value = equals < 0 ? undefined : trimmed.slice(equals + 1).trim();
-  if (word === 'fill') {
-    throw new NotYetError('messages that fill a packet are not yet built', {
-      expected: FORMS,
-      got: trimmed,
-      advice: 'Meanwhile records=8 codes a fixed number of records in each message.',
-    });
-  }
+  if (word === 'fill') return parseFill(trimmed);
   if ((word === 'whole' || word === 'lines') && value === undefined) return { kind: word };
   if (word === 'every' || word === 'records') {
     const count = /^\d{1,10}$/.test(value ?? '') ? Number(value) : 0;
@@ -68,12 +66,39 @@ export function parseMessageRule(text: string): MessageRule {
   return refuseRule(trimmed, FORMS, near);
 }
 
+function parseFill(text: string): MessageRule {
+  const match = /^fill=\s*(\d{1,10})\s*,\s*unit=\s*(\d{1,10}|line|row)$/.exec(text);
+  const expected = `fill=BYTES,unit=N or fill=BYTES,unit=line, with whole numbers from 1 to ${LARGEST_COUNT}`;
+  if (match === null) refuseRule(text, expected, undefined);
+  const bytes = Number(match[1]);
+  const unit = match[2];
+  if (unit === 'row') {
+    throw new NotYetError('units that are rows of a table are not yet built', {
+      expected,
+      got: text,
+      advice: 'Meanwhile unit=line fills messages with lines of text.',
+    });
+  }
+  const size = unit === 'line' ? 1 : Number(unit);
+  if (bytes < 1 || bytes > LARGEST_COUNT || size < 1 || size > LARGEST_COUNT)
+    refuseRule(text, expected, undefined);
+  return { kind: 'fill', bytes, unit: unit === 'line' ? 'line' : size };
+}
+
 function refuseRule(got: string, expected: string, near: string | undefined): never {
   throw new InputError(`messages cannot be cut by ${JSON.stringify(got)}`, {
     expected,
     got,
     ...(near === undefined ? {} : { advice: `Did you mean ${near}?` }),
   });
+}
+
+/** The budget of {@link MessageRule} `fill` as coders take it. */
+export interface FillBudget {
+  /** Most coded bytes of a message. */
+  readonly bytes: number;
+  /** Symbols of every unit, where units have a fixed size. */
+  readonly unitSymbols?: number;
 }
 
 /** The lengths rule where the plan says nothing: links carry packets and records whole, files and lines are joined. */
@@ -103,7 +128,38 @@ export function segmentFile(
       return recordSegments(bytes.length, rule.count, file, record);
     case 'prefix':
       return frameSegments(bytes, rule.type, file);
+    case 'fill':
+      return rule.unit === 'line'
+        ? wholeLineSegments(bytes)
+        : unitSegments(bytes.length, rule.unit, file);
   }
+}
+
+/** Lines with their newlines. */
+function wholeLineSegments(bytes: Uint8Array): ByteSegments {
+  const { starts, ends } = lineSegments(bytes);
+  for (let i = 0; i < ends.length; i++) if (ends[i] < bytes.length) ends[i]++;
+  return { starts, ends };
+}
+
+function unitSegments(byteCount: number, unitBytes: number, file: string): ByteSegments {
+  const over = byteCount % unitBytes;
+  if (over !== 0) {
+    throw new InputError(`${file} is not a whole number of units`, {
+      file,
+      byteOffset: byteCount - over,
+      expected: `a multiple of ${unitBytes} bytes, the size of one unit`,
+      got: `${byteCount} bytes: ${(byteCount - over) / unitBytes} units and ${over} ${over === 1 ? 'byte' : 'bytes'} more`,
+      advice: 'Check unit=, or cut the header or the broken last unit off the file.',
+    });
+  }
+  const starts = new Uint32Array(byteCount / unitBytes);
+  const ends = new Uint32Array(starts.length);
+  for (let i = 0; i < starts.length; i++) {
+    starts[i] = i * unitBytes;
+    ends[i] = (i + 1) * unitBytes;
+  }
+  return { starts, ends };
 }
 
 const NEWLINE = 0x0a;

@@ -181,6 +181,22 @@ export function togetherFaults(document: PlanDocument): Fault[] {
       got: order === undefined ? 'no order' : `order: ${gotText(order)}`,
     });
   }
+  const by = ['split', 'by'];
+  if (valueAt(document.data, by) === 'unit') {
+    const corpora = valueAt(document.data, ['corpora']);
+    const all = typeof corpora === 'object' && corpora !== null ? Object.entries(corpora) : [];
+    const other = all.find(([, data]) => !/^\s*fill\b/.test(String(data?.messages)));
+    if (other !== undefined) {
+      faults.push({
+        line: document.lineOf(by),
+        key: keyText(by),
+        problem: `the corpus ${other[0]} has no units`,
+        expected: 'messages: fill=BYTES,unit=N|line in every corpus',
+        got: `messages: ${gotText(other[1]?.messages)}`,
+        advice: 'Use by: message, which means units where messages are filled.',
+      });
+    }
+  }
   for (const key of ['candidates', 'tables', 'reset']) {
     const items = valueAt(document.data, [key]);
     if (!Array.isArray(items)) continue;

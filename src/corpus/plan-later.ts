@@ -27,11 +27,6 @@ const LATER: readonly Later[] = [
   { path: 'gate' },
   { path: 'check', when: (value) => value === 'crc32', meanwhile: 'Write check: none.' },
   { path: 'corpora.*.weight' },
-  {
-    path: 'split.by',
-    when: (value) => value === 'unit',
-    meanwhile: 'Use message, file or block.',
-  },
   { path: 'split.folds', meanwhile: 'One split of split.train is made.' },
   {
     path: 'timing.pacer',

@@ -25,7 +25,7 @@ export interface BlockEntropy {
 }
 
 /** Most distinct blocks that are counted. */
-export const MOST_DISTINCT_BLOCKS = 2 ** 21;
+const MOST_DISTINCT_BLOCKS = 2 ** 21;
 
 const MOST_CELLS = 1e300;
 

@@ -11,13 +11,53 @@ export interface CeilingsOptions {
   readonly upto?: number;
   /** The coder of an order; back-off `arith` when absent. */
   readonly coderOf?: (order: number) => Coder;
+  /** Bits per symbol that are reached already; those of an equal-length code when absent. */
+  readonly best?: number;
   readonly progress?: (done: number, total: number) => void;
 }
 
-/** A coder that gave no ceiling, and why. */
+/** A coder that gave no ceiling, and why, as half a sentence. */
 export interface NoCeiling {
   readonly name: string;
-  readonly error: BitassayError;
+  readonly reason: string;
+  /** What it met; absent where it was not run. */
+  readonly error?: BitassayError;
+}
+
+/** Orders in a row that need more bits than the best rate reached, after which no higher one is run. */
+const LOST_ORDERS = 2;
+
+/**
+ * Says when higher orders are not worth running: after two in a row that need more bits than the best so far. On data
+ * without structure the higher ones take minutes and gigabytes to need more still.
+ */
+export class CeilingStop {
+  #best: number;
+  #lost: string[] = [];
+
+  /** @param best  bits per symbol that are reached already */
+  constructor(best: number) {
+    this.#best = best;
+  }
+
+  note({ name, bitsPerSymbol }: Ceiling): void {
+    if (bitsPerSymbol > this.#best) this.#lost.push(name);
+    else this.#lost = [];
+    this.#best = Math.min(this.#best, bitsPerSymbol);
+  }
+
+  /** Why nothing higher is to be run, as half a sentence; undefined: go on. */
+  get reason(): string | undefined {
+    if (this.#lost.length < LOST_ORDERS) return undefined;
+    return `not run: ${this.#lost.slice(-LOST_ORDERS).join(' and ')} need more bits than what is reached already`;
+  }
+}
+
+/** The half sentence for a coder that met an error. */
+export function noCeilingReason(error: BitassayError): string {
+  const { expected, got } = error.where;
+  const bounds = expected === undefined || got === undefined ? '' : ` (${expected}; here ${got})`;
+  return `${error.message}${bounds}`;
 }
 
 export interface Ceilings {
@@ -32,8 +72,8 @@ export const LARGEST_CEILING_BYTES = 64 * 2 ** 20;
  * Rates that adaptive coders of orders 0 … `upto` reach on the whole sequence, learning from nothing and never reset. Each
  * is encoded, decoded and compared; only then its payload + tables + index bits count.
  *
- * A coder that meets a limit, or fails, is listed and does not stop the others. An equal-length code is always among the
- * ceilings: it needs no run to be known.
+ * A coder that meets a limit, or fails, is listed and does not stop the others; {@link CeilingStop} does. An equal-length
+ * code is always among the ceilings: it needs no run to be known.
  * @returns no ceilings for an empty sequence but the equal-length code's
  */
 export function adaptiveCeilings(
@@ -44,13 +84,20 @@ export function adaptiveCeilings(
   const coderOf = options.coderOf ?? ((order) => parseCandidate(nameOf(order)).create());
   const ceilings: Ceiling[] = [equalLengths(sequence.alphabetSize)];
   const without: NoCeiling[] = [];
+  const stop = new CeilingStop(options.best ?? ceilings[0].bitsPerSymbol);
   for (let order = from; order <= upto && sequence.symbols.length > 0; order++) {
     const name = nameOf(order);
+    if (stop.reason !== undefined) {
+      without.push({ name, reason: stop.reason });
+      continue;
+    }
     try {
-      ceilings.push({ name, bitsPerSymbol: verifiedRate(coderOf(order), sequence) });
+      const ceiling = { name, bitsPerSymbol: verifiedRate(coderOf(order), sequence) };
+      ceilings.push(ceiling);
+      stop.note(ceiling);
     } catch (error) {
       if (!(error instanceof BitassayError)) throw error;
-      without.push({ name, error });
+      without.push({ name, reason: noCeilingReason(error), error });
     }
     progress?.(order - from + 1, upto - from + 1);
   }

@@ -15,6 +15,9 @@ const FEWEST_TRAINED = 16;
 const MOST_TRAINED = 2 ** 22;
 const MOST_PRICED = 2 ** 20;
 
+/** Savings below this, in bits per symbol, help nobody, however surely they are seen. */
+const LEAST_HELP = 0.001;
+
 /** Data in time order: what comes before, and what is coded. */
 export interface TimedParts {
   readonly train: SymbolSequence;
@@ -52,7 +55,7 @@ export interface TrainingSizes {
   readonly order: number;
   readonly pricedSymbols: number;
   readonly sizes: readonly TrainingSize[];
-  /** Least size from which no larger one saves more than its standard error; absent where the largest still does. */
+  /** Least size from which no larger one saves more than its standard error and 1/1000 bit; absent where the largest does. */
   readonly enoughSymbols?: number;
 }
 
@@ -91,7 +94,8 @@ export function rateByTrainingSize(
   }
   if (sizes.length < 2) return undefined;
   const lastHelp = sizes.findLastIndex(
-    (s) => s.saving !== undefined && s.saving.rate > s.saving.standardError,
+    ({ saving }) =>
+      saving !== undefined && saving.rate > Math.max(saving.standardError, LEAST_HELP),
   );
   const enough = Math.max(0, lastHelp);
   return {
@@ -103,7 +107,7 @@ export function rateByTrainingSize(
 }
 
 /** What older training data cost. */
-export interface Ageing {
+export interface TrainToTest {
   readonly order: number;
   readonly trainSymbols: number;
   readonly pricedSymbols: number;
@@ -118,7 +122,10 @@ export interface Ageing {
  * @returns undefined where the parts are too small to say anything
  * Cost: two trainings and two prices, bounded.
  */
-export function ageingOf({ train, test }: TimedParts, options: HeldOutOptions): Ageing | undefined {
+export function trainToTest(
+  { train, test }: TimedParts,
+  options: HeldOutOptions,
+): TrainToTest | undefined {
   const { order, contexts } = options;
   const coder = options.coder ?? backOff(order);
   const middle = Math.floor(test.symbols.length / 2);

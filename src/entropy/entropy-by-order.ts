@@ -8,9 +8,9 @@ import { correctedInterval } from './interval.ts';
 import { trustIntervals } from './interval-trust.ts';
 import { intervalUnits } from './interval-units.ts';
 import { millerMadow } from './miller-madow.ts';
-import { nsbEntropyBits } from './nsb.ts';
+import { nsb } from './nsb.ts';
 import { plugIn } from './plug-in.ts';
-import { usefulOrders } from './useful.ts';
+import { type HeldOutSaving, usefulOrders } from './useful.ts';
 
 /** What further estimators say of the same counts, in bits per symbol. */
 export interface FurtherEstimates {
@@ -43,6 +43,8 @@ export interface OrderEntropy {
   /** Undefined: not tested. */
   readonly useful: boolean | undefined;
   readonly usefulReason: string;
+  /** What it saves on held-out data, with its paired standard error; absent where not tested. */
+  readonly saving?: HeldOutSaving;
   /** Only where asked for. */
   readonly estimates?: FurtherEstimates;
 }
@@ -103,7 +105,12 @@ export function entropyByOrder(sequence: SymbolSequence, options: EntropyOptions
     correctedInterval(c, millerMadow.estimate(c), sequence.alphabetSize, units),
   );
   const trust = trustIntervals(
-    intervals.map((interval, k) => ({ k, estimable: verdicts[k].estimable, ...interval })),
+    intervals.map((interval, k) => ({
+      k,
+      estimable: verdicts[k].estimable,
+      positions: counts[k].positions,
+      ...interval,
+    })),
     options.changes === true,
   );
   const orders = counts.map((c, k): OrderEntropy => {
@@ -123,6 +130,7 @@ export function entropyByOrder(sequence: SymbolSequence, options: EntropyOptions
       estimableReason: verdicts[k].reason,
       useful: useful?.[k].useful,
       usefulReason: useful?.[k].reason ?? 'not tested: not asked for',
+      ...(useful?.[k].saving === undefined ? {} : { saving: useful[k].saving }),
       ...(options.all === true ? { estimates: furtherEstimates(c, sequence.alphabetSize) } : {}),
     };
   });
@@ -139,6 +147,6 @@ function furtherEstimates(counts: OrderCounts, alphabetSize: number): FurtherEst
   return {
     grassberger: grassberger.estimate(counts),
     chaoShen: chaoShen.estimate(counts),
-    ...(counts.order === 0 ? { nsb: nsbEntropyBits(counts.pairTallies, alphabetSize) } : {}),
+    ...(counts.order === 0 ? { nsb: nsb(alphabetSize).estimate(counts) } : {}),
   };
 }

@@ -37,8 +37,10 @@ type FloorMatches = Pick<MatchLengthEntropy, 'bitsPerSymbol' | 'low' | 'high' | 
  *
  * Match lengths give the point only where their whole interval lies below the corrected entropy: the least of two
  * estimates of one thing would else lie below it by chance, and counts are the sharper of the two.
- * Where high is the point, and no interval reaches below it, nothing says how far down the rate may lie: the intervals of
- * all orders counted stand in, which too few data can only pull down.
+ *
+ * Where high lies below the better estimate, but within its interval, the band keeps that interval's lower half, now below
+ * high. Where it lies below the whole interval, or no order is estimable, no interval says how far down the rate may lie:
+ * those of all orders counted stand in, which too few data can only pull down.
  * @param ceilings  at least one; a code of equal lengths always exists
  * @param matches   absent or not valid: not used
  */
@@ -56,38 +58,39 @@ export function floorOf({
   const high = lowest.bitsPerSymbol;
   const estimable = orders.filter((order) => order.estimable);
   const largest = estimable.at(-1);
-  const counted = largest?.corrected ?? Number.POSITIVE_INFINITY;
+  if (largest === undefined) {
+    return {
+      point: high,
+      low: leastLow(orders, high),
+      high,
+      method: `what ${lowest.name} reaches, since no order is estimable`,
+      cut: false,
+      order: -1,
+    };
+  }
   const valid = matches?.valid === true ? matches : undefined;
-  const matched =
-    valid !== undefined && valid.high < counted ? valid.bitsPerSymbol : Number.POSITIVE_INFINITY;
-  const point = Math.min(high, counted, matched);
-  let low = Math.min(leastLow(estimable, point), valid?.low ?? point);
-  if (point === high && low === point) low = leastLow(orders, point);
+  const beyond = valid !== undefined && valid.high < largest.corrected;
+  const estimate = beyond ? valid.bitsPerSymbol : largest.corrected;
+  const estimateLow = beyond ? valid.low : largest.low;
+  const point = Math.min(high, estimate);
+  const leastKnown = Math.min(leastLow(estimable, point), valid?.low ?? point);
   return {
     point,
-    low,
+    low:
+      high < estimateLow
+        ? leastLow(orders, leastKnown)
+        : Math.max(0, Math.min(leastKnown, point - (estimate - estimateLow))),
     high,
-    method: methodOf(lowest, largest?.k, point, counted, matched),
-    cut: largest !== undefined && high < counted,
-    order: largest?.k ?? -1,
+    method: methodOf(lowest, largest.k, point === estimate, beyond),
+    cut: high < largest.corrected,
+    order: largest.k,
   };
 }
 
-function methodOf(
-  lowest: Ceiling,
-  order: number | undefined,
-  point: number,
-  counted: number,
-  matched: number,
-): string {
-  if (order !== undefined && point === counted) {
-    return `corrected entropy of order ${order} (Miller–Madow)`;
-  }
-  const beyond =
-    order === undefined
-      ? ', since no order is estimable'
-      : `, below the corrected entropy of order ${order}`;
-  return point === matched ? `match lengths${beyond}` : `what ${lowest.name} reaches${beyond}`;
+function methodOf(lowest: Ceiling, order: number, estimated: boolean, beyond: boolean): string {
+  if (estimated && !beyond) return `corrected entropy of order ${order} (Miller–Madow)`;
+  const giver = estimated ? 'match lengths' : `what ${lowest.name} reaches`;
+  return `${giver}, below the corrected entropy of order ${order}`;
 }
 
 function leastLow(orders: readonly FloorOrder[], point: number): number {

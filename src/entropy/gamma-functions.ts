@@ -1,5 +1,5 @@
 /** Below this the asymptotic series are not used: arguments are first raised by the recurrences. */
-const ASYMPTOTIC_FROM = 10;
+const ASYMPTOTIC_FROM = 16;
 
 /**
  * ψ(x), the derivative of ln Γ(x), for x > 0. Absolute error below 10^−13 where |ψ| is of order 1.
@@ -12,7 +12,8 @@ export function digamma(x: number): number {
   for (; y < ASYMPTOTIC_FROM; y++) raised += 1 / y;
   const s = 1 / (y * y);
   const series =
-    s * (1 / 12 - s * (1 / 120 - s * (1 / 252 - s * (1 / 240 - s * (1 / 132 - s * (691 / 32760))))));
+    s *
+    (1 / 12 - s * (1 / 120 - s * (1 / 252 - s * (1 / 240 - s * (1 / 132 - s * (691 / 32760))))));
   return Math.log(y) - 1 / (2 * y) - series - raised;
 }
 
@@ -30,7 +31,7 @@ export function trigamma(x: number): number {
   return raised + (1 + 1 / (2 * y) + series) / y;
 }
 
-/** What Stirling's formula leaves of ln Γ(x), x ≥ 10. Source: Abramowitz & Stegun 1964, 6.1.41. */
+/** What Stirling's formula leaves of ln Γ(x), x ≥ 16. Source: Abramowitz & Stegun 1964, 6.1.41. */
 function stirlingRest(x: number): number {
   const s = 1 / (x * x);
   return (1 / 12 - s * (1 / 360 - s * (1 / 1260 - s * (1 / 1680 - s / 1188)))) / x;

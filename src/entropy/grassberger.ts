@@ -23,7 +23,8 @@ export function grassbergerBlockBits(tallies: Tallies): number {
 /** H(k + 1) − H(k) over the same positions; the block of no symbols has entropy 0, known without counting. */
 export const grassberger: CountEstimator = {
   name: 'Grassberger',
-  source: 'P. Grassberger, "Entropy Estimates from Insufficient Samplings", 2003 (G of §4, not that of 1988)',
+  source:
+    'P. Grassberger, "Entropy Estimates from Insufficient Samplings", 2003 (G of §4, not that of 1988)',
   validity:
     'Where the cells of a block that matter were each seen at least once or twice; with few samples of many cells still too low. From order 1 on a difference of two such figures, whose errors need not cancel.',
   estimate({ order, pairTallies, contextTallies }: OrderCounts): number {

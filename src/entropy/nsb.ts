@@ -1,13 +1,23 @@
-import { InputError } from '../errors/errors.ts';
+import { BugError, InputError } from '../errors/errors.ts';
+import type { OrderCounts } from '../models/context-counts.ts';
 import type { Tallies } from '../models/context-counts-tallies.ts';
+import type { CountEstimator } from './estimator.ts';
 import { digamma, logRisingFactorial, trigamma } from './gamma-functions.ts';
 import { integrateWeighted } from './nsb-integral.ts';
 
-export const NSB_SOURCE =
-  'I. Nemenman, F. Shafee, W. Bialek, "Entropy and Inference, Revisited", 2001';
-
-export const NSB_VALIDITY =
-  'For independent draws from a stated number of cells; made for fewer samples than cells. With far more cells than samples the figure rests on the number of cells, and cells that can never occur pull it.';
+/** The estimator for `cells` cells: of symbols without context, the alphabet's size. */
+export function nsb(cells: number): CountEstimator {
+  return {
+    name: 'Nemenman–Shafee–Bialek',
+    source: 'I. Nemenman, F. Shafee, W. Bialek, "Entropy and Inference, Revisited", 2001',
+    validity:
+      'At order 0, for independent draws from a stated number of cells; made for fewer draws than cells. With far more cells than draws the figure rests on the number of cells, and cells that can never occur pull it.',
+    estimate({ order, pairTallies }: OrderCounts): number {
+      if (order !== 0) throw new BugError(`NSB was asked for the entropy of order ${order}`);
+      return nsbEntropyBits(pairTallies, cells);
+    },
+  };
+}
 
 /**
  * Posterior mean of the entropy under a mixture of symmetric Dirichlet priors that makes the entropy itself nearly
@@ -48,7 +58,7 @@ function logWeight({ values, times, total }: Tallies, cells: number, logBeta: nu
 
 /** d/dβ of the entropy expected beforehand, ψ(Kβ + 1) − ψ(β + 1), in nats. */
 function priorSlope(cells: number, beta: number): number {
-  if (beta < 20) return cells * trigamma(cells * beta + 1) - trigamma(beta + 1);
+  if (beta < 100) return cells * trigamma(cells * beta + 1) - trigamma(beta + 1);
   // Leading terms cancel: the series of the difference.
   const s = 1 / (beta * beta);
   const share = 1 / cells;
@@ -61,7 +71,11 @@ function priorSlope(cells: number, beta: number): number {
 }
 
 /** Mean entropy under the posterior of one Dirichlet prior, in nats. */
-function meanGiven({ values, times, total, distinct }: Tallies, cells: number, beta: number): number {
+function meanGiven(
+  { values, times, total, distinct }: Tallies,
+  cells: number,
+  beta: number,
+): number {
   const whole = total + cells * beta;
   let sum = (((cells - distinct) * beta) / whole) * digamma(beta + 1);
   for (let i = 0; i < values.length; i++) {

@@ -9,19 +9,24 @@ import { cutIntoBlocks, heldOutBits, totalOf } from './held-out.ts';
 /** Blocks of each half. */
 const BLOCKS = 64;
 
+/** What an order saves against the one below on data that did not train it. */
+export interface HeldOutSaving {
+  /** Bits per symbol; below 0 where it costs. */
+  readonly rate: number;
+  /** Of the paired difference, by blocks. */
+  readonly standardError: number;
+  /** Symbols of the half that was priced. */
+  readonly symbols: number;
+}
+
 /** Whether one order saves bits that a coder can really have. */
 export interface UsefulVerdict {
   /** Undefined: not tested. */
   readonly useful: boolean | undefined;
   /** What was found, or why nothing was tested; half a sentence. */
   readonly reason: string;
-  /** Bits per symbol that the order saves on held-out data, and the standard error of that; absent where not tested. */
-  readonly saving?: {
-    readonly rate: number;
-    readonly standardError: number;
-    /** Symbols of the half that was priced. */
-    readonly symbols: number;
-  };
+  /** Absent where not tested. */
+  readonly saving?: HeldOutSaving;
 }
 
 export interface UsefulOptions {

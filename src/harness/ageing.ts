@@ -1,7 +1,9 @@
 import type { Setup } from '../coders/contract.ts';
+import { firstAbove } from '../corpus/corpus.ts';
 import { messageCountOf, type SymbolSequence, sliceMessages } from '../symbols/sequence.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
+import { fillSetup } from './run-cell.ts';
 import type { RunRecord } from './run-record.ts';
 import { trainOn } from './verify.ts';
 
@@ -34,7 +36,8 @@ const SEGMENTS = 8;
 /** Bits of tables trained on `sequence`, as the coder writes them under `sent`. */
 function tableBitsOf(cell: Cell, setup: Setup, sequence: SymbolSequence): number | undefined {
   if (!cell.candidate.declaration.policies.includes('sent')) return undefined;
-  const sent: Setup = { ...setup, policy: 'sent', reset: 'never' };
+  const { fill: _, ...base } = setup;
+  const sent: Setup = { ...base, policy: 'sent', reset: 'never' };
   const tables = trainOn(cell.candidate, sent, sequence);
   const encoder = cell.candidate
     .create()
@@ -46,11 +49,18 @@ function tableBitsOf(cell: Cell, setup: Setup, sequence: SymbolSequence): number
 /**
  * Ideal code lengths of a shipped cell by distance from the train part, with old tables and with tables trained on everything
  * before each segment. Meaningful where train lies before test in time.
+ * @param messageEnds  of the cell, where messages are filled and those of the corpus are units
  * @returns undefined where there is nothing to train on, too few messages, or no probabilities
  * Cost: about {@link SEGMENTS} trainings and twice as many pricings.
  */
-export function ageingOf(cell: Cell, corpus: CorpusData, align: number): Ageing | undefined {
-  const { train, test, alphabetSize, lengths } = corpus;
+export function ageingOf(
+  cell: Cell,
+  corpus: CorpusData,
+  align: number,
+  messageEnds: Uint32Array = corpus.test.messageEnds,
+): Ageing | undefined {
+  const { train, alphabetSize, lengths } = corpus;
+  const test: SymbolSequence = { ...corpus.test, messageEnds };
   const messageCount = messageCountOf(test);
   const coder = cell.candidate.create();
   if (train === undefined || coder.price === undefined || messageCount < SEGMENTS) return undefined;
@@ -61,6 +71,7 @@ export function ageingOf(cell: Cell, corpus: CorpusData, align: number): Ageing 
     lengths,
     align,
     ...(corpus.record === undefined ? {} : { record: corpus.record }),
+    ...fillSetup(corpus),
   };
   const withTables = (parts: readonly SymbolSequence[]): Setup => {
     const trainer = coder.trainer!(base);
@@ -75,7 +86,7 @@ export function ageingOf(cell: Cell, corpus: CorpusData, align: number): Ageing 
     const segment = sliceMessages(test, from, Math.floor(((i + 1) * messageCount) / SEGMENTS));
     const symbolCount = segment.symbols.length;
     if (symbolCount > 0) {
-      const fresh = from === 0 ? old : withTables([train, sliceMessages(test, 0, from)]);
+      const fresh = from === 0 ? old : withTables([train, trainedBefore(test, corpus, from)]);
       segments.push({
         distance,
         symbolCount,
@@ -87,6 +98,17 @@ export function ageingOf(cell: Cell, corpus: CorpusData, align: number): Ageing 
   }
   const tableBits = tableBitsOf(cell, base, train);
   return { cellId: cell.id, segments, tableBits, paysAfter: paysAfter(segments, tableBits) };
+}
+
+/** What of the test part lies before a message, in the messages or units that training takes. */
+function trainedBefore(
+  test: SymbolSequence,
+  corpus: CorpusData,
+  messageIndex: number,
+): SymbolSequence {
+  if (corpus.fill === undefined) return sliceMessages(test, 0, messageIndex);
+  const { messageEnds } = corpus.test;
+  return sliceMessages(corpus.test, 0, firstAbove(messageEnds, test.messageEnds[messageIndex - 1]));
 }
 
 function paysAfter(

@@ -28,6 +28,14 @@ export interface CalibrationSource {
   informationBits(symbols: SymbolArray): number | undefined;
 }
 
+/** Order at which a source without an order of its own is coded and estimated. */
+const USUAL_ORDER = 4;
+
+/** The order at which coders and the further estimators are asked about a source. */
+export function askedOrder({ order }: CalibrationSource): number {
+  return order ?? USUAL_ORDER;
+}
+
 /** x · log2(1/x), 0 at 0. */
 export function entropyTerm(probability: number): number {
   return probability <= 0 ? 0 : -probability * Math.log2(probability);

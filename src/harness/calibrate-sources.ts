@@ -92,6 +92,10 @@ const makers: ReadonlyMap<string, () => CalibrationSource> = new Map([
         Array.from({ length: 256 }, (_, i) => 0.95 ** i),
       ),
   ],
+  [
+    'rarer-bit',
+    () => independentSource('rarer-bit', 'independent bits, one in 1000 set', [999, 1]),
+  ],
   ['rare-bit', () => independentSource('rare-bit', 'independent bits, one in 100 set', [99, 1])],
   [
     'chain-1',

@@ -3,6 +3,7 @@ import type { FieldPrice } from '../coders/contract.ts';
 import { decodesAlone } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import type { CorpusFloors } from './corpus-floors.ts';
+import { bitsOfCorpusMessages, type FillFigures, fillFigures } from './fill-figures.ts';
 import { type LossFigures, lossFigures } from './loss.ts';
 import type { CellBits, CellFailure } from './run-cell.ts';
 import type { CellRecord } from './run-record.ts';
@@ -26,27 +27,31 @@ function messageBytes(bits: Float64Array): NonNullable<CellRecord['message_bytes
 }
 
 function filesOf(bits: CellBits, corpus: CorpusData): NonNullable<CellRecord['files']> {
+  const messageBits = bitsOfCorpusMessages(bits, corpus);
   let message = 0;
   let symbolsBefore = 0;
   return corpus.testFiles.map((file) => {
     let carried = 0;
-    for (; message < file.messageEnd; message++) carried += bits.messageBits[message];
+    for (; message < file.messageEnd; message++) carried += messageBits[message];
     const symbolEnd = message === 0 ? 0 : corpus.test.messageEnds[message - 1];
     const symbolCount = symbolEnd - symbolsBefore;
     symbolsBefore = symbolEnd;
-    return { sha256: file.sha256, symbol_count: symbolCount, coded_bytes: Math.ceil(carried / 8) };
+    // Bits spread over units are fractions, whose sum may miss a whole number by their rounding.
+    const codedBytes = Math.ceil(Number((carried / 8).toFixed(6)));
+    return { sha256: file.sha256, symbol_count: symbolCount, coded_bytes: codedBytes };
   });
 }
 
 function rateWithoutRepeats(bits: CellBits, corpus: CorpusData): number | undefined {
   const { repeated } = corpus;
   if (repeated === undefined || repeated.share === 0) return undefined;
+  const messageBits = bitsOfCorpusMessages(bits, corpus);
   let carried = 0;
   let symbols = 0;
   let from = 0;
   corpus.test.messageEnds.forEach((end, i) => {
     if (repeated.mask[i] === 0) {
-      carried += bits.messageBits[i];
+      carried += messageBits[i];
       symbols += end - from;
     }
     from = end;
@@ -83,12 +88,13 @@ export function cellRecordOf(
     verified: true,
     backend: 'ts',
     symbol_count: symbolCount,
-    message_count: corpus.test.messageEnds.length,
+    message_count: result.messageBits.length,
     coded_bytes: Math.ceil(result.totals.carriedBits / 8),
     carried_bits: result.totals.carriedBits,
     rate: symbolCount === 0 ? 0 : result.totals.carriedBits / symbolCount,
     account: bitAccount(floors.admit(result), floors.shareOf(cell)),
     ...(result.messageBits.length === 0 ? {} : { message_bytes: messageBytes(result.messageBits) }),
+    ...(corpus.fill === undefined ? {} : filledRecord(fillFigures(result, corpus))),
     ...(lossRate === undefined ? {} : { loss: lossRecord(lossFigures(cell, corpus, lossRate)) }),
     ...(without === undefined ? {} : { rate_without_repeats: without }),
     files: filesOf(result, corpus),
@@ -97,6 +103,14 @@ export function cellRecordOf(
       ? {}
       : { encode: speedRecord(speed.encode), decode: speedRecord(speed.decode) }),
   };
+}
+
+function filledRecord(
+  figures: FillFigures | undefined,
+): Pick<CellRecord, 'units_per_message' | 'unit_count'> {
+  if (figures === undefined) return {};
+  const { unitCount, mean, min } = figures;
+  return { units_per_message: { mean, min }, unit_count: unitCount };
 }
 
 function fieldsOf(fields: readonly FieldPrice[]): NonNullable<CellRecord['fields']> {

@@ -17,6 +17,8 @@ export interface CellList {
   readonly cells: readonly Cell[];
   /** Combinations of candidate, policy and reset that the candidate does not declare. */
   readonly undeclared: number;
+  /** Combinations that the candidate declares, but where messages could not be filled, since they do not decode alone. */
+  readonly notFilled: number;
 }
 
 /** The policies that the plan asks for and the candidate declares; `none` when the candidate declares only that. */
@@ -28,6 +30,7 @@ function policiesOf(candidate: Candidate, asked: readonly TablePolicy[]): TableP
 
 /**
  * Every cell of the given corpora and candidates, candidates within corpora, in the order given.
+ * @param filled  names of corpora whose messages are filled
  * @throws InputError for a candidate that has no cell at all, or that stands twice in the list
  */
 export function listCells(
@@ -35,9 +38,11 @@ export function listCells(
   candidates: readonly Candidate[],
   policies: readonly TablePolicy[],
   resets: readonly Reset[],
+  filled: ReadonlySet<string> = new Set(),
 ): CellList {
   const cells: Cell[] = [];
   let undeclared = 0;
+  let notFilled = 0;
   const seen = new Set<string>();
   for (const candidate of candidates) {
     if (seen.has(candidate.id))
@@ -59,6 +64,10 @@ export function listCells(
             undeclared++;
             continue;
           }
+          if (reset !== 'message' && filled.has(corpus)) {
+            notFilled++;
+            continue;
+          }
           cells.push({
             id: `${corpus}/${candidate.id}@${policy}/${reset}`,
             corpus,
@@ -73,12 +82,14 @@ export function listCells(
           coder: candidate.id,
           expected: `tables ${candidate.declaration.policies.join(', ')}; resets ${candidate.declaration.resets.join(', ')}`,
           got: `tables ${policies.join(', ')}; resets ${resets.join(', ')}`,
-          advice: 'Leave the candidate out, or ask for tables and a reset that it declares.',
+          advice: filled.has(corpus)
+            ? `Messages of ${corpus} are filled, which takes reset message or shipped tables.`
+            : 'Leave the candidate out, or ask for tables and a reset that it declares.',
         });
       }
     }
   }
-  return { cells, undeclared };
+  return { cells, undeclared, notFilled };
 }
 
 /** Coders that can run on over message ends at all can also forget every R messages. */

@@ -1,4 +1,5 @@
 import type { Lengths, Reset } from '../coders/contract.ts';
+import type { FillBudget } from '../corpus/messages.ts';
 import type { RecordShape } from '../symbols/record.ts';
 import { type SymbolSequence, sliceMessages } from '../symbols/sequence.ts';
 
@@ -14,6 +15,8 @@ export interface CorpusData {
   readonly record?: RecordShape;
   /** How the fields of the record are coded, where the plan says so. */
   readonly fields?: Readonly<Record<string, string>>;
+  /** Cells fill messages themselves: the messages of `train` and `test` are then units. */
+  readonly fill?: FillBudget;
   /** Source bytes behind all symbols, train and test. */
   readonly sourceBytes: number;
   /** Absent where nothing trains: then `test` is all the data. */

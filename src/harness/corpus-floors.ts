@@ -1,13 +1,23 @@
 import type { CodedTotals, FloorShare } from '../account/bit-account.ts';
 import type { FitClass } from '../coders/contract.ts';
 import { symbolWidth } from '../coders/fixed.ts';
-import { adaptiveCeilings } from '../entropy/ceilings.ts';
+import {
+  adaptiveCeilings,
+  CeilingStop,
+  type NoCeiling,
+  noCeilingReason,
+} from '../entropy/ceilings.ts';
+import { ctwCeiling, ctwName } from '../entropy/ctw-ceiling.ts';
 import { type EntropyByOrder, entropyByOrder } from '../entropy/entropy-by-order.ts';
 import { blockEstimable } from '../entropy/estimable.ts';
 import { type Ceiling, type Floor, floorOf, openingBits } from '../entropy/floor.ts';
+import { type MatchLengthEntropy, matchLengthEntropy } from '../entropy/match-lengths.ts';
+import { type MatchMeasurements, measureMatches } from '../entropy/match-measurements.ts';
+import { BitassayError } from '../errors/errors.ts';
 import type { ContextScope } from '../models/context-counts.ts';
 import { type Cell, decodesAlone } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
+import { matchRecord, orderRecord } from './entropy-record.ts';
 import type { CellBits, CellFailure } from './run-cell.ts';
 import type { EntropyRecord } from './run-record.ts';
 
@@ -19,12 +29,18 @@ const MOST_ORDER = 6;
 
 interface ScopedFloor {
   readonly entropy: EntropyByOrder;
+  /** Absent where the adaptive coders were not run either: both look at every symbol many times. */
+  readonly matches?: MatchLengthEntropy;
   readonly floor: Floor;
   readonly openingBits: number;
 }
 
-/** Contexts of a cell as an estimator must count them to be comparable. */
-export function scopeOf(cell: Cell, corpus: CorpusData): ContextScope {
+/**
+ * Contexts of a cell as an estimator must count them to be comparable. Under fill each cell cuts messages of its own, so all
+ * are held against contexts that run on over units, and the opening of messages is theirs to pay.
+ */
+function scopeOf(cell: Cell, corpus: CorpusData): ContextScope {
+  if (corpus.fill !== undefined) return 'running';
   return decodesAlone(cell) || corpus.test.messageEnds.length <= 1 ? 'message' : 'running';
 }
 
@@ -35,6 +51,12 @@ export interface FloorOptions {
   /** Already known ceilings. */
   readonly ceilings: readonly Ceiling[];
   readonly run: boolean;
+  /** Also context-tree weighting, which takes some seconds and 400 MB. */
+  readonly ctw?: boolean;
+  /** Also the estimators that are not the usual one. */
+  readonly all?: boolean;
+  /** The source is known to change along the data. */
+  readonly changes?: boolean;
 }
 
 /**
@@ -62,10 +84,19 @@ function equalLengthsCeiling(alphabetSize: number): Ceiling {
   return { name: 'fixed', bitsPerSymbol: symbolWidth(alphabetSize) };
 }
 
+/** The index one past each file's last symbol. */
+function fileEndsOf({ test, testFiles }: CorpusData): Uint32Array {
+  return Uint32Array.from(testFiles, ({ messageEnd }) =>
+    messageEnd === 0 ? 0 : test.messageEnds[messageEnd - 1],
+  );
+}
+
 /** Entropies and floors of one corpus, one for each kind of contexts that its cells have. */
 export class CorpusFloors {
   readonly #corpus: CorpusData;
   readonly #byScope = new Map<ContextScope, ScopedFloor>();
+  #ceilings: readonly Ceiling[] = [];
+  readonly #without: NoCeiling[] = [];
 
   constructor(corpus: CorpusData) {
     this.#corpus = corpus;
@@ -100,26 +131,75 @@ export class CorpusFloors {
     const { test } = this.#corpus;
     if (test.symbols.length === 0) return;
     const ceilings = [equalLengthsCeiling(test.alphabetSize), ...options.ceilings];
-    const known = new Set(ceilings.map((c) => c.name));
-    for (let order = 0; options.run && order <= CEILING_ORDER; order++) {
-      if (known.has(`arith:order=${order}`)) continue;
-      await pause();
-      ceilings.push(...adaptiveCeilings(test, { from: order, upto: order }).ceilings);
-    }
+    if (options.run) await this.#runCeilings(ceilings, options.ctw === true, pause);
+    this.#ceilings = ceilings;
+    let measured: MatchMeasurements | undefined;
     for (const contexts of options.scopes) {
       await pause();
       const entropy = entropyByOrder(test, {
         upto: options.upto,
         contexts,
         useful: options.useful,
+        ...(options.all === undefined ? {} : { all: options.all }),
+        ...(options.changes === undefined ? {} : { changes: options.changes }),
+        fileEnds: fileEndsOf(this.#corpus),
       });
-      const floor = floorOf({ orders: entropy.orders, ceilings });
+      let matches: MatchLengthEntropy | undefined;
+      if (options.run) {
+        await pause();
+        const order = entropy.largestEstimable;
+        if (measured?.order !== order) measured = measureMatches(test, order);
+        matches = matchLengthEntropy(test, entropy, measured);
+      }
+      const floor = floorOf({ orders: entropy.orders, ceilings, matches });
       this.#byScope.set(contexts, {
         entropy,
+        ...(matches === undefined ? {} : { matches }),
         floor,
         openingBits: openingBits(test, entropy.orders, floor.order, contexts),
       });
     }
+  }
+
+  /** Adds what the coders that always stand among the ceilings reach; order by order, while they need less. */
+  async #runCeilings(ceilings: Ceiling[], ctw: boolean, pause: () => Promise<void>): Promise<void> {
+    const { test } = this.#corpus;
+    const stop = new CeilingStop(Math.min(...ceilings.map((c) => c.bitsPerSymbol)));
+    for (let order = 0; order <= CEILING_ORDER; order++) {
+      const name = `arith:order=${order}`;
+      let known = ceilings.find((c) => c.name === name);
+      if (known === undefined && stop.reason !== undefined) {
+        this.#without.push({ name, reason: stop.reason });
+        continue;
+      }
+      if (known === undefined) {
+        await pause();
+        const run = adaptiveCeilings(test, { from: order, upto: order });
+        known = run.ceilings.find((c) => c.name === name);
+        if (known !== undefined) ceilings.push(known);
+        this.#without.push(...run.without);
+      }
+      if (known !== undefined) stop.note(known);
+    }
+    if (!ctw) return;
+    const name = ctwName(test.alphabetSize);
+    const [equalLengths] = ceilings;
+    if (ceilings.every((c) => c.bitsPerSymbol >= equalLengths.bitsPerSymbol)) {
+      this.#without.push({ name, reason: 'not run: no other coder needs less than equal lengths' });
+      return;
+    }
+    await pause();
+    try {
+      ceilings.push(ctwCeiling(test));
+    } catch (error) {
+      if (!(error instanceof BitassayError)) throw error;
+      this.#without.push({ name, reason: noCeilingReason(error), error });
+    }
+  }
+
+  /** What was counted for one kind of contexts. */
+  entropyOf(contexts: ContextScope): EntropyByOrder | undefined {
+    return this.#byScope.get(contexts)?.entropy;
   }
 
   #scoped(cell: Cell): ScopedFloor | undefined {
@@ -152,22 +232,16 @@ export class CorpusFloors {
   }
 
   records(): EntropyRecord[] {
-    return [...this.#byScope].map(([contexts, { entropy, floor }]) => ({
+    return [...this.#byScope].map(([contexts, { entropy, floor, matches }]) => ({
       corpus: this.#corpus.name,
       contexts,
-      orders: entropy.orders.map((order) => ({
-        k: order.k,
-        plug_in: order.plugIn,
-        corrected: order.corrected,
-        low: order.low,
-        high: order.high,
-        positions: order.positions,
-        contexts: order.contexts,
-        pairs: order.pairs,
-        estimable: order.estimable,
-        ...(order.useful === undefined ? {} : { useful: order.useful }),
-      })),
+      orders: entropy.orders.map(orderRecord),
       floor: { ...floor },
+      ...(matches === undefined ? {} : { match_length: matchRecord(matches) }),
+      ceilings: this.#ceilings.map(({ name, bitsPerSymbol }) => ({ name, rate: bitsPerSymbol })),
+      ...(this.#without.length === 0
+        ? {}
+        : { no_ceilings: this.#without.map(({ name, reason }) => ({ name, reason })) }),
     }));
   }
 }

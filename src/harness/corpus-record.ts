@@ -14,6 +14,9 @@ export function corpusRecordOf(corpus: CorpusData): CorpusRecord {
     source_bytes: corpus.sourceBytes,
     symbol_count: corpus.test.symbols.length,
     message_count: corpus.test.messageEnds.length,
+    ...(corpus.fill === undefined
+      ? {}
+      : { unit_count: corpus.test.messageEnds.length, fill_bytes: corpus.fill.bytes }),
     train_symbol_count: corpus.train?.symbols.length ?? 0,
     ...(corpus.repeated === undefined ? {} : { repeated_share: corpus.repeated.share }),
   };

@@ -47,6 +47,7 @@ function factsOf(
     alphabetSize: corpus.sequence.alphabetSize,
     ...(takesBytes && corpus.record !== undefined ? { record: corpus.record } : {}),
     ...(spec.fields === undefined ? {} : { fields: spec.fields }),
+    ...(corpus.fill === undefined ? {} : { fill: corpus.fill }),
     sourceBytes: corpus.sourceBytes,
     testFiles: corpus.files.map(({ path, sha256 }, i) => ({
       path,

@@ -7,6 +7,7 @@ import type { CorpusData } from './corpus-data.ts';
 import { CorpusFloors } from './corpus-floors.ts';
 import { corpusRecordOf } from './corpus-record.ts';
 import { describeEnvironment, toolVersion } from './environment.ts';
+import { bitsOfCorpusMessages } from './fill-figures.ts';
 import { Interrupted, pauseWith, type RunHooks } from './pause.ts';
 import { type CellBits, type CellFailure, runCell } from './run-cell.ts';
 import type { CellRecord, RunRecord } from './run-record.ts';
@@ -33,7 +34,7 @@ export interface RunRequest {
   readonly only?: string;
 }
 
-/** Carried bits and symbols of each message of a cell. */
+/** Carried bits and symbols of each message of a cell; of each unit where messages are filled. */
 export interface MessagePairs {
   readonly bits: Float64Array;
   readonly symbols: Float64Array;
@@ -46,23 +47,30 @@ export interface RunResult {
 }
 
 /** The cells of a request, filtered by `only`. */
-export function cellsOf(request: RunRequest): { cells: Cell[]; undeclared: number } {
-  const { cells, undeclared } = listCells(
+export function cellsOf(request: RunRequest): {
+  cells: Cell[];
+  undeclared: number;
+  notFilled: number;
+} {
+  const filled = request.corpora.filter((c) => c.fill !== undefined).map((c) => c.name);
+  const { cells, undeclared, notFilled } = listCells(
     request.corpora.map((c) => c.name),
     request.candidates,
     request.policies,
     request.resets,
+    new Set(filled),
   );
   const { only } = request;
   return {
     cells: only === undefined ? [...cells] : cells.filter((c) => c.id.includes(only)),
     undeclared,
+    notFilled,
   };
 }
 
 /** Runs every cell one after another on this thread, then holds each against the floor of its corpus. */
 export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise<RunResult> {
-  const { cells, undeclared } = cellsOf(request);
+  const { cells, undeclared, notFilled } = cellsOf(request);
   const messages = new Map<string, MessagePairs>();
   const cellRecords: CellRecord[] = [];
   const entropy: RunRecord['entropy'] = [];
@@ -111,7 +119,7 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
       cellRecords.push(cellRecordOf(result, corpus, floors, speed, request.lossRate));
       if (!('failure' in result)) {
         messages.set(result.cell.id, {
-          bits: result.messageBits,
+          bits: bitsOfCorpusMessages(result, corpus),
           symbols: Float64Array.from(symbolCountsOf(corpus.test)),
         });
       }
@@ -119,7 +127,7 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
     const shipped = partial || !request.ageing ? undefined : bestShipped(results);
     if (shipped !== undefined) {
       hooks.progress?.({ cellsDone, cellsTotal: cells.length, current: `${corpus.name}: ageing` });
-      const found = ageingOf(shipped, corpus, request.align);
+      const found = ageingOf(shipped.cell, corpus, request.align, shipped.messageEnds);
       if (found !== undefined) ageing.push(ageingRecordOf(corpus.name, found));
     }
   }
@@ -143,18 +151,19 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
       cells: cellRecords,
       ...(ageing.length === 0 ? {} : { ageing }),
       undeclared,
+      ...(notFilled === 0 ? {} : { not_filled: notFilled }),
       partial,
     },
   };
 }
 
 /** The shipped cell of least rate that is no reference. */
-function bestShipped(results: readonly (CellBits | CellFailure)[]): Cell | undefined {
+function bestShipped(results: readonly (CellBits | CellFailure)[]): CellBits | undefined {
   let best: CellBits | undefined;
   for (const result of results) {
     if ('failure' in result || result.cell.policy !== 'shipped') continue;
     if (result.cell.candidate.declaration.reference) continue;
     if (best === undefined || result.totals.carriedBits < best.totals.carriedBits) best = result;
   }
-  return best?.cell;
+  return best;
 }

@@ -1,7 +1,7 @@
 import type { CodedTotals } from '../account/bit-account.ts';
 import type { Coded, FieldPrice, FitClass, Setup } from '../coders/contract.ts';
 import { BitassayError, BugError } from '../errors/errors.ts';
-import type { SymbolSequence } from '../symbols/sequence.ts';
+import { messageCountOf, type SymbolSequence } from '../symbols/sequence.ts';
 import { type Cell, unitResetOf } from './cells.ts';
 import { type CorpusData, unitsOf } from './corpus-data.ts';
 import { compareDecoded, decodeUnit, trainOn } from './verify.ts';
@@ -14,6 +14,8 @@ export interface CellBits {
   readonly fitOf?: FitClass;
   /** Carried bits of each message. */
   readonly messageBits: Float64Array;
+  /** For each message the index one past its last symbol: the corpus's own, or as the coder filled them. */
+  readonly messageEnds: Uint32Array;
   /** Ideal bits of each message; absent for coders without probabilities. */
   readonly messageIdealBits?: Float64Array;
   /** Ideal bits of each field, for coders that code a record by its fields. */
@@ -26,7 +28,10 @@ export interface CellBits {
 
 /** One unit with what both ends need to code it again. */
 export interface CodedUnit {
+  /** What the encoder was given. */
   readonly sequence: SymbolSequence;
+  /** The same with the messages that came out: others only under fill, where those given are units. */
+  readonly messages: SymbolSequence;
   readonly setup: Setup;
   readonly coded: Coded;
 }
@@ -45,6 +50,18 @@ function sendsMap(cell: Cell): boolean {
   return cell.policy === 'sent' || cell.policy === 'learned' || cell.policy === 'none';
 }
 
+/** What setups say of filling. */
+export function fillSetup({ fill }: CorpusData): Pick<Setup, 'fill' | 'unitSymbols'> {
+  if (fill === undefined) return {};
+  const { bytes, unitSymbols } = fill;
+  return { fill: { bytes }, ...(unitSymbols === undefined ? {} : { unitSymbols }) };
+}
+
+/** The sequence with the messages that its encoder made of it. */
+function messagesOf(sequence: SymbolSequence, { symbolEnds }: Coded): SymbolSequence {
+  return symbolEnds === undefined ? sequence : { ...sequence, messageEnds: symbolEnds };
+}
+
 function setupOf(cell: Cell, corpus: CorpusData, align: number, unit?: SymbolSequence): Setup {
   const base: Setup = {
     policy: cell.policy,
@@ -54,6 +71,7 @@ function setupOf(cell: Cell, corpus: CorpusData, align: number, unit?: SymbolSeq
     align,
     ...(corpus.record === undefined ? {} : { record: corpus.record }),
     ...(corpus.fields === undefined ? {} : { fields: corpus.fields }),
+    ...fillSetup(corpus),
   };
   cell.candidate.create().check?.(base);
   let from: SymbolSequence | undefined;
@@ -97,7 +115,8 @@ export function encodeUnit(cell: Cell, setup: Setup, sequence: SymbolSequence): 
   return encoder.finish();
 }
 
-function messageBitsOf(units: readonly CodedUnit[], messageCount: number): Float64Array {
+function messageBitsOf(units: readonly CodedUnit[]): Float64Array {
+  const messageCount = units.reduce((sum, { messages }) => sum + messageCountOf(messages), 0);
   const bits = new Float64Array(messageCount);
   let at = 0;
   for (const { coded } of units) {
@@ -130,8 +149,7 @@ export async function runCell(
   let fitOf: FitClass | undefined;
   let perField: readonly FieldPrice[] | undefined;
   let priced = coder.price !== undefined;
-  const messageIdealBits = new Float64Array(corpus.test.messageEnds.length);
-  let messageAt = 0;
+  const idealBitsOfUnits: Float64Array[] = [];
   const guarded = <T>(step: () => T): T | CellFailure => {
     try {
       return step();
@@ -150,15 +168,16 @@ export async function runCell(
     const coded = guarded(() => encodeUnit(cell, setup, sequence));
     if ('failure' in coded) return coded;
     await pause('decode');
+    const messages = messagesOf(sequence, coded);
     const verdict = guarded(() => {
-      compareDecoded(decodeUnit(cell.candidate, setup, coded, sequence), coded, sequence);
+      compareDecoded(decodeUnit(cell.candidate, setup, coded, messages), coded, messages);
       return 'same' as const;
     });
     if (verdict !== 'same') return verdict;
-    units.push({ sequence, setup, coded });
+    units.push({ sequence, messages, setup, coded });
     if (!priced) continue;
     await pause('price');
-    const price = guarded(() => coder.price!(sequence, setup));
+    const price = guarded(() => coder.price!(messages, setup));
     if ('failure' in price) return price;
     idealBits += price.idealBits;
     if (price.perField !== undefined) perField = addFields(perField, price.perField);
@@ -166,8 +185,7 @@ export async function runCell(
       fitBits = price.fit.bits;
       fitOf = price.fit.of;
     }
-    messageIdealBits.set(price.messageIdealBits, messageAt);
-    messageAt += price.messageIdealBits.length;
+    idealBitsOfUnits.push(price.messageIdealBits);
   }
   priced &&= units.length > 0;
   if (priced && sequences.length > 1) {
@@ -182,7 +200,7 @@ export async function runCell(
   const sum = sumCoded(units);
   const sentBits = sendsMap(cell) && corpus.sentMap !== undefined ? corpus.sentMap.bits : 0;
   const mapBits = Math.ceil(sentBits / align) * align;
-  const messageBits = messageBitsOf(units, corpus.test.messageEnds.length);
+  const messageBits = messageBitsOf(units);
   let carriedBits = mapBits;
   for (const bits of messageBits) carriedBits += bits;
   return {
@@ -197,11 +215,24 @@ export async function runCell(
     },
     ...(fitOf === undefined ? {} : { fitOf }),
     messageBits,
-    ...(priced ? { messageIdealBits } : {}),
+    messageEnds:
+      corpus.fill === undefined ? corpus.test.messageEnds : units[0].messages.messageEnds,
+    ...(priced ? { messageIdealBits: joined(idealBitsOfUnits) } : {}),
     ...(perField === undefined ? {} : { perField }),
     mapBits,
     units,
   };
+}
+
+function joined(parts: readonly Float64Array[]): Float64Array {
+  if (parts.length === 1) return parts[0];
+  const whole = new Float64Array(parts.reduce((sum, part) => sum + part.length, 0));
+  let at = 0;
+  for (const part of parts) {
+    whole.set(part, at);
+    at += part.length;
+  }
+  return whole;
 }
 
 /** Sums over units, whose fields are the same. */

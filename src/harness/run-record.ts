@@ -1,5 +1,6 @@
 import { z } from 'zod';
 import { ACCOUNT_LINES } from '../account/bit-account.ts';
+import { entropySchema } from './entropy-schema.ts';
 
 /**
  * The run record: what a run leaves, `DIR/run.json`. Counts, hashes and figures only, never content of the data.
@@ -19,19 +20,6 @@ const account = z.strictObject(
     z.ZodOptional<z.ZodNumber>
   >,
 );
-
-const order = z.strictObject({
-  k: z.number(),
-  plug_in: z.number().describe('bits per symbol'),
-  corrected: z.number().describe('Miller–Madow, bits per symbol'),
-  low: z.number().optional(),
-  high: z.number().optional(),
-  positions: z.number(),
-  contexts: z.number(),
-  pairs: z.number(),
-  estimable: z.boolean(),
-  useful: z.boolean().optional().describe('absent: not tested'),
-});
 
 const cell = z.strictObject({
   id: z.string(),
@@ -67,6 +55,14 @@ const cell = z.strictObject({
       max: z.number(),
     })
     .optional(),
+  units_per_message: z
+    .strictObject({
+      mean: z.number(),
+      min: z.number().describe('without the last message of the corpus, which may be short'),
+    })
+    .optional()
+    .describe('where messages are filled with units'),
+  unit_count: z.number().optional().describe('where messages are filled with units'),
   rate_without_repeats: z
     .number()
     .optional()
@@ -101,25 +97,13 @@ const corpus = z.strictObject({
   record_bytes: z.number().optional().describe('where the symbols are the bytes of fixed records'),
   source_bytes: z.number(),
   symbol_count: z.number().describe('of the part that is coded'),
-  message_count: z.number(),
+  message_count: z
+    .number()
+    .describe('where messages are filled, units: each candidate cuts messages of its own'),
+  unit_count: z.number().optional().describe('where messages are filled with units'),
+  fill_bytes: z.number().optional().describe('the most coded bytes of a filled message'),
   train_symbol_count: z.number(),
   repeated_share: z.number().optional().describe('share of test messages that also occur in train'),
-});
-
-const entropy = z.strictObject({
-  corpus: z.string(),
-  contexts: z.enum(['message', 'running']),
-  orders: z.array(order),
-  floor: z.strictObject({
-    point: z.number(),
-    low: z.number(),
-    high: z.number(),
-    method: z.string(),
-    order: z.number(),
-    cut: z
-      .boolean()
-      .describe('the lowest ceiling lies below the corrected entropy: order k is not enough'),
-  }),
 });
 
 const ageing = z
@@ -159,12 +143,16 @@ export const runRecordSchema = z.strictObject({
     class: z.string().describe('speeds are compared only within one class'),
   }),
   corpora: z.array(corpus),
-  entropy: z.array(entropy),
+  entropy: z.array(entropySchema),
   cells: z.array(cell),
   ageing: z.array(ageing).optional(),
   undeclared: z
     .number()
     .describe('combinations that gave no cell since the coder does not declare them'),
+  not_filled: z
+    .number()
+    .optional()
+    .describe('combinations that gave no cell since their messages do not decode alone'),
   partial: z.boolean(),
 });
 

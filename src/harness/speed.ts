@@ -153,16 +153,16 @@ function decodeInput(
   bits: CellBits,
   unit: CodedUnit,
 ): { decoder: Decoder; input: Parameters<Decoder['decode']>[0] } {
-  const { setup, sequence, coded } = unit;
+  const { setup, messages, coded } = unit;
   return {
     decoder: bits.cell.candidate
       .create()
-      .decoder(decoderSetup(setup), { maxSymbols: sequence.symbols.length }),
+      .decoder(decoderSetup(setup), { maxSymbols: messages.symbols.length }),
     input: {
       bytes: coded.bytes,
-      messageCount: sequence.messageEnds.length,
+      messageCount: messages.messageEnds.length,
       ...(setup.lengths === 'link' ? { messageEndsBits: coded.messageEndsBits } : {}),
-      ...(setup.lengths === 'known' ? { symbolCounts: symbolCountsOf(sequence) } : {}),
+      ...(setup.lengths === 'known' ? { symbolCounts: symbolCountsOf(messages) } : {}),
     },
   };
 }

@@ -14,9 +14,9 @@ export function symbolCountsOf(sequence: SymbolSequence): Uint32Array {
   return counts;
 }
 
-/** What a decoder is entitled to: never the sent tables, and of the lengths only what the framing grants. */
+/** What a decoder is entitled to: never the sent tables or a budget, and of the lengths only what the framing grants. */
 export function decoderSetup(setup: Setup): Setup {
-  const { tables, ...rest } = setup;
+  const { tables, fill: _, ...rest } = setup;
   return tables !== undefined && setup.policy !== 'sent' ? { ...rest, tables } : rest;
 }
 

@@ -111,7 +111,8 @@ export class AdditiveModel implements AdaptiveModel {
         if (position <= end) {
           const low = q * counts + p * (position - first - 1);
           sink.put(low, q * (pool[position] >>> bits) + p, total);
-          if (total <= plainTotal && node >= markedNodes) {
+          if (total <= plainTotal) {
+            if (node < markedNodes) runs.save(node);
             words[at + NODE_SECOND]++;
             countEntry(pool, first, position, bits);
             const next = table.length > 0 ? table[last * width + symbol] : 0;

@@ -124,13 +124,15 @@ export class BackOffModel implements AdaptiveModel {
         while (position <= end && (pool[position] & mask) !== symbol) {
           low = (low + (pool[position++] >>> bits)) | 0;
         }
-        if (position <= end && sum + distinct <= plainTotal && node >= markedNodes) {
+        if (position <= end && sum + distinct <= plainTotal) {
+          if (node < markedNodes) runs.save(node);
           sink.put(low, pool[position] >>> bits, total);
           words[at + NODE_SECOND]++;
           countEntry(pool, first, position, bits);
           isCoded = true;
         }
-      } else if ((first & mask) === symbol && sum > 0 && sum < plainTotal && node >= markedNodes) {
+      } else if ((first & mask) === symbol && sum > 0 && sum < plainTotal) {
+        if (node < markedNodes) runs.save(node);
         sink.put(0, sum, sum + 1);
         words[at + NODE_FIRST] += 1 << bits;
         words[at + NODE_SECOND]++;
@@ -181,7 +183,7 @@ export class BackOffModel implements AdaptiveModel {
       const first = words[at + NODE_FIRST];
       const sum = words[at + NODE_SECOND];
       let symbol = NOT_CODED;
-      if (words[at + NODE_SYMBOL] & HAS_RUN && node >= markedNodes) {
+      if (words[at + NODE_SYMBOL] & HAS_RUN) {
         const distinct = pool[first];
         const total = distinct === this.#alphabetSize ? sum : sum + distinct;
         const target = sum + distinct <= plainTotal ? source.target(total) : sum;
@@ -195,13 +197,15 @@ export class BackOffModel implements AdaptiveModel {
           }
           source.take(low, count);
           symbol = pool[position] & mask;
+          if (node < markedNodes) runs.save(node);
           words[at + NODE_SECOND]++;
           countEntry(pool, first, position, bits);
         }
-      } else if (sum > 0 && sum < plainTotal && node >= markedNodes) {
+      } else if (sum > 0 && sum < plainTotal) {
         if (source.target(sum + 1) < sum) {
           source.take(0, sum);
           symbol = first & mask;
+          if (node < markedNodes) runs.save(node);
           words[at + NODE_FIRST] += 1 << bits;
           words[at + NODE_SECOND]++;
         }

@@ -61,3 +61,12 @@ for (let i = 1; i < log2Table.length; i++) log2Table[i] = Math.log2(i);
 export function log2OfCount(count: number): number {
   return count < log2Table.length ? log2Table[count] : Math.log2(count);
 }
+
+/** Σ c · log2 c over all counts. Equal tallies give equal sums. */
+export function sumOfLogs(tallies: Tallies): number {
+  let sum = 0;
+  for (let i = 0; i < tallies.values.length; i++) {
+    sum += tallies.values[i] * tallies.times[i] * log2OfCount(tallies.values[i]);
+  }
+  return sum;
+}

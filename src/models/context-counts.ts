@@ -46,6 +46,8 @@ export interface CountingOptions {
 
 export const HIGHEST_COUNTED_ORDER = 32;
 
+const LARGEST_CACHED_CELLS = 2 ** 20;
+
 /** Most blocks: a block's number is kept in one byte a symbol. */
 export const MOST_COUNTED_BLOCKS = 256;
 
@@ -73,14 +75,25 @@ export function countContexts(sequence: SymbolSequence, options: CountingOptions
     memoryBytes: options.memoryBytes ?? COUNTING_MEMORY_BYTES,
   });
   const blocks = blocksOf(options.blocks ?? 64, symbols.length);
+  const sorts = !countsDensely(symbols.length, distinct, upto);
   let windows: SortedWindows | undefined;
   const orders: OrderCounts[] = [];
   for (let order = 0; order <= upto; order++) {
     let counted: CountedOrder;
-    if (countsDensely(symbols.length, distinct, order)) {
+    // Windows once sorted are read faster than a table too large for the processor's caches is filled.
+    const dense =
+      countsDensely(symbols.length, distinct, order) &&
+      !(sorts && distinct ** (order + 1) > LARGEST_CACHED_CELLS);
+    if (dense) {
       counted = countDense(ranked, ends, order, blocks);
     } else {
-      windows ??= sortWindows(ranked, ends, upto + 1, blocks);
+      windows ??= sortWindows(
+        ranked,
+        ends,
+        upto + 1,
+        blocks,
+        expectedLead(orders, symbols.length, upto + 1),
+      );
       counted = countSorted(windows, order, blocks);
     }
     orders.push({
@@ -94,6 +107,22 @@ export function countContexts(sequence: SymbolSequence, options: CountingOptions
     progress?.(order + 1, upto + 1);
   }
   return orders;
+}
+
+/**
+ * Symbols after which hardly two windows should agree: by the entropies counted so far, they carry 16 times as many cases as
+ * there are windows. The whole width where that is more.
+ */
+function expectedLead(orders: readonly OrderCounts[], symbolCount: number, width: number): number {
+  const wanted = Math.log2(symbolCount) + 4;
+  let bits = 0;
+  for (let lead = 1; lead < width; lead++) {
+    const counted = orders[Math.min(lead, orders.length) - 1];
+    if (counted === undefined || counted.positions === 0) return width;
+    bits += counted.blockBits.reduce((a, b) => a + b, 0) / counted.positions;
+    if (bits >= wanted) return lead;
+  }
+  return width;
 }
 
 function blocksOf(blocks: number | Uint32Array, symbolCount: number): CountingBlocks {

@@ -20,6 +20,12 @@ const LARGE_ARRAY_WORDS = 2 ** 25;
 
 const NO_WORDS = new Uint32Array(0);
 
+/** Where a reader of symbols stands in a tree. */
+export interface ContextHead {
+  readonly contexts: Uint32Array;
+  last: number;
+}
+
 /**
  * All strings of up to `depth` successive symbols that were met, as nodes: contexts, or contexts with the symbol that
  * follows. A node is the string of its parent with one more symbol at the recent end, so the contexts after a symbol are
@@ -80,6 +86,23 @@ export class ContextTree {
     const startNodes = this.#startNodes;
     for (let j = 1; j < contexts.length; j++) contexts[j] = startNodes[j];
     this.#last = this.alphabetSize;
+  }
+
+  /** The contexts of a message's start, apart from the tree's own. */
+  startHead(): ContextHead {
+    return { contexts: this.#startNodes.slice(), last: this.alphabetSize };
+  }
+
+  /** Copies the tree's contexts into `head` and gives it back. */
+  saveContexts(head: ContextHead): ContextHead {
+    head.contexts.set(this.contexts);
+    head.last = this.#last;
+    return head;
+  }
+
+  restoreContexts(head: ContextHead): void {
+    this.contexts.set(head.contexts);
+    this.#last = head.last;
   }
 
   /** Moves every context on by one symbol; strings never met become nodes whose two words are 0. */

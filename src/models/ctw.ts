@@ -2,11 +2,17 @@ import type { SymbolArray } from '../symbols/sequence.ts';
 import { DECISION_TOTAL, type DecisionSink, type DecisionSource } from './binary-decision.ts';
 import { ctwTables, MOST_STEPS, WEIGHT_SHIFT } from './ctw-tables.ts';
 
-/** Most nodes: 192 MiB of them. */
+/** Words of a node: two hashes of what it stands for, its counts (ones in the upper half), log2 β in 1/65536 bit. */
+const MARK = 0;
+const PLACE = 1;
+const COUNTS = 2;
+const ODDS = 3;
+const NODE_WORDS_SHIFT = 2;
+/** Nodes of the first table, and of the largest: 256 MiB, and half of that beside it while it grows. */
+const FEWEST_NODES = 2 ** 14;
 const MOST_NODES = 2 ** 24;
-/** Nodes are placed until so much of the table is taken. */
-const LOAD = 0.8;
-const FEWEST_NODES = 2 ** 12;
+/** The share of a table that is taken before it grows or, at its largest, takes no more. */
+const LOAD = 0.75;
 /** A count of this size halves both counts of its node. */
 const LARGEST_COUNT = 0xffff;
 /** Log-odds stay inside ± this, in 1/65536 bit. */
@@ -21,10 +27,10 @@ const LARGEST_ODDS = 2 ** 30;
  * (β · own + longer) ÷ (β + 1), and β then grows by own ÷ longer. For an alphabet of 2 this is the binary method of the paper.
  *
  * What differs from the paper, alike at both ends: probabilities are 65536ths (1 … 65 535), log2 β is in 1/65536 bit and its
- * weight from a table, counts of 65 535 are halved. Nodes are told apart by 32 bits of a hash beside their place by
- * another, so two contexts may, very rarely, share a node. When the table is full, paths end where their nodes end.
+ * weight from a table, counts of 65 535 are halved. Nodes are told apart by 64 bits of hashes, so two contexts may share a
+ * node, once in 10^5 corpora or so. When the largest table is full, paths end where their nodes end.
  *
- * Cost: ⌈log2 m⌉ · (depth + 1) nodes a symbol; 12 bytes a node, 192 MiB at most.
+ * Cost: ⌈log2 m⌉ · (depth + 1) nodes a symbol; 21 to 43 bytes a node, 384 MiB at most.
  * Source: F. M. J. Willems, Y. M. Shtarkov, T. J. Tjalkens, "The context-tree weighting method: basic properties", IEEE
  * Trans. IT 41(3), 1995; β: F. M. J. Willems, T. J. Tjalkens, "Complexity reduction of the context-tree weighting
  * algorithm", 1997 (from memory).
@@ -32,39 +38,29 @@ const LARGEST_ODDS = 2 ** 30;
 export class CtwModel {
   readonly #width: number;
   readonly #depth: number;
-  readonly #mask: number;
-  readonly #room: number;
-  readonly #marks: Uint32Array;
-  /** Ones in the upper half, zeros in the lower. */
-  readonly #counts: Uint32Array;
-  /** log2 β, in 1/65536 bit. */
-  readonly #odds: Int32Array;
+  readonly #mostNodes: number;
+  #words = new Int32Array(FEWEST_NODES << NODE_WORDS_SHIFT);
+  #mask = FEWEST_NODES - 1;
+  #room = Math.floor(FEWEST_NODES * LOAD);
+  #nodes = 0;
   readonly #placeHash: Int32Array;
   readonly #markHash: Int32Array;
   /** Nodes of the bit in hand by context length, their own probabilities of a 1, and those of their longer contexts. */
   readonly #path: Int32Array;
   readonly #own: Int32Array;
   readonly #longer: Int32Array;
+  #longest = 0;
   readonly #costs: Uint32Array;
   readonly #weights: Uint32Array;
-  #longest = 0;
-  #nodes = 0;
 
   /**
-   * @param depth    longest context, in symbols
-   * @param symbols  how many will be coded, the same at both ends: sizes the table
+   * @param depth      longest context, in symbols
+   * @param mostNodes  a power of two, the same at both ends
    */
-  constructor(alphabetSize: number, depth: number, symbols: number) {
+  constructor(alphabetSize: number, depth: number, mostNodes = MOST_NODES) {
     this.#width = alphabetSize < 2 ? 0 : 32 - Math.clz32(alphabetSize - 1);
     this.#depth = depth;
-    const wanted = (symbols * this.#width * (depth + 1)) / LOAD;
-    let size = FEWEST_NODES;
-    while (size < wanted && size < MOST_NODES) size *= 2;
-    this.#mask = size - 1;
-    this.#room = Math.floor(size * LOAD);
-    this.#marks = new Uint32Array(size);
-    this.#counts = new Uint32Array(size);
-    this.#odds = new Int32Array(size);
+    this.#mostNodes = mostNodes;
     this.#placeHash = new Int32Array(depth + 1);
     this.#markHash = new Int32Array(depth + 1);
     this.#path = new Int32Array(depth + 1);
@@ -118,90 +114,113 @@ export class CtwModel {
 
   /** Probability of a 1 after the symbol's bits so far, which `prefix` holds below a leading 1. */
   #predict(prefix: number): number {
-    const path = this.#path;
     const depth = this.#depth;
+    if (this.#nodes + depth + 1 > this.#room) this.#grow();
+    const words = this.#words;
+    const path = this.#path;
     let longest = 0;
     for (; longest <= depth; longest++) {
-      const node = this.#nodeOf(longest, prefix);
+      const node = this.#nodeOf(words, longest, prefix);
       if (node < 0) break;
       path[longest] = node;
     }
     longest--;
     this.#longest = longest;
-    const counts = this.#counts;
-    const odds = this.#odds;
+    const ownOnes = this.#own;
+    const longerOnes = this.#longer;
     const weights = this.#weights;
     let ones = DECISION_TOTAL / 2;
     for (let j = longest; j >= 0; j--) {
       const node = path[j];
-      const count = counts[node];
-      const own = krichevskyTrofimov(count >>> 16, count & 0xffff);
-      this.#own[j] = own;
+      const counts = words[node + COUNTS];
+      const own = krichevskyTrofimov(counts >>> 16, counts & 0xffff);
+      ownOnes[j] = own;
+      longerOnes[j] = ones;
       if (j === longest) {
         ones = own;
         continue;
       }
-      this.#longer[j] = ones;
-      const step = odds[node] >> WEIGHT_SHIFT;
+      const step = words[node + ODDS] >> WEIGHT_SHIFT;
       const weight = weights[MOST_STEPS + Math.min(MOST_STEPS, Math.max(-MOST_STEPS, step))];
-      ones = Math.floor((weight * own + (DECISION_TOTAL - weight) * ones) / DECISION_TOTAL);
+      // Below 2^32, so the unsigned shift is the exact floor.
+      ones = (weight * own + (DECISION_TOTAL - weight) * ones) >>> 16;
     }
     return ones;
   }
 
+  /** Lets every node of the path know the bit. */
   #learn(bit: number): void {
+    const words = this.#words;
+    const path = this.#path;
+    const ownOnes = this.#own;
+    const longerOnes = this.#longer;
     const costs = this.#costs;
     const longest = this.#longest;
-    for (let j = longest; j >= 0; j--) {
-      const node = this.#path[j];
+    for (let j = 0; j <= longest; j++) {
+      const node = path[j];
       if (j < longest) {
-        const own = this.#own[j];
-        const longer = this.#longer[j];
-        const gain =
-          bit === 1
-            ? costs[longer] - costs[own]
-            : costs[DECISION_TOTAL - longer] - costs[DECISION_TOTAL - own];
-        const odds = this.#odds[node] + gain;
-        this.#odds[node] = Math.min(LARGEST_ODDS, Math.max(-LARGEST_ODDS, odds));
+        const own = bit === 1 ? ownOnes[j] : DECISION_TOTAL - ownOnes[j];
+        const longer = bit === 1 ? longerOnes[j] : DECISION_TOTAL - longerOnes[j];
+        const odds = words[node + ODDS] + costs[longer] - costs[own];
+        words[node + ODDS] = Math.min(LARGEST_ODDS, Math.max(-LARGEST_ODDS, odds));
       }
-      this.#count(node, bit);
+      const counts = words[node + COUNTS];
+      let ones = (counts >>> 16) + bit;
+      let zeros = (counts & 0xffff) + 1 - bit;
+      if (ones >= LARGEST_COUNT || zeros >= LARGEST_COUNT) {
+        ones = (ones + 1) >>> 1;
+        zeros = (zeros + 1) >>> 1;
+      }
+      words[node + COUNTS] = (ones << 16) | zeros;
     }
   }
 
-  #count(node: number, bit: number): void {
-    const count = this.#counts[node];
-    let ones = count >>> 16;
-    let zeros = count & 0xffff;
-    if (bit === 1) ones++;
-    else zeros++;
-    if (ones >= LARGEST_COUNT || zeros >= LARGEST_COUNT) {
-      ones = (ones + 1) >>> 1;
-      zeros = (zeros + 1) >>> 1;
-    }
-    this.#counts[node] = ones * 0x10000 + zeros;
-  }
-
-  /** The node of the last `length` symbols and the bits so far, made if there is room; −1 if there is none. */
-  #nodeOf(length: number, prefix: number): number {
+  /** Offset of the node of the last `length` symbols and the bits so far, made if there is room; −1 if there is none. */
+  #nodeOf(words: Int32Array, length: number, prefix: number): number {
     let place = Math.imul(this.#placeHash[length] + prefix, 0x2c1b3c6d);
     place = Math.imul(place ^ (place >>> 13), 0x297a2d39);
+    place ^= place >>> 15;
     let mark = Math.imul(this.#markHash[length] ^ Math.imul(prefix, 0x27d4eb2f), 0x165667b1);
-    mark = (mark ^ (mark >>> 16)) >>> 0;
+    mark ^= mark >>> 16;
     // 0 marks an empty place.
     if (mark === 0) mark = 1;
-    const marks = this.#marks;
     const mask = this.#mask;
-    let at = (place ^ (place >>> 15)) & mask;
+    let slot = place & mask;
     for (;;) {
-      const found = marks[at];
-      if (found === mark) return at;
+      const node = slot << NODE_WORDS_SHIFT;
+      const found = words[node + MARK];
+      if (found === mark && words[node + PLACE] === place) return node;
       if (found === 0) break;
-      at = (at + 1) & mask;
+      slot = (slot + 1) & mask;
     }
     if (this.#nodes >= this.#room) return -1;
     this.#nodes++;
-    marks[at] = mark;
-    return at;
+    const node = slot << NODE_WORDS_SHIFT;
+    words[node + MARK] = mark;
+    words[node + PLACE] = place;
+    return node;
+  }
+
+  /** Twice the table, if it is not the largest yet. */
+  #grow(): void {
+    const old = this.#words;
+    const size = 2 * (this.#mask + 1);
+    if (size > this.#mostNodes) return;
+    const words = new Int32Array(size << NODE_WORDS_SHIFT);
+    const mask = size - 1;
+    for (let from = 0; from < old.length; from += 1 << NODE_WORDS_SHIFT) {
+      if (old[from + MARK] === 0) continue;
+      let slot = old[from + PLACE] & mask;
+      while (words[(slot << NODE_WORDS_SHIFT) + MARK] !== 0) slot = (slot + 1) & mask;
+      const to = slot << NODE_WORDS_SHIFT;
+      words[to + MARK] = old[from + MARK];
+      words[to + PLACE] = old[from + PLACE];
+      words[to + COUNTS] = old[from + COUNTS];
+      words[to + ODDS] = old[from + ODDS];
+    }
+    this.#words = words;
+    this.#mask = mask;
+    this.#room = Math.floor(size * LOAD);
   }
 }
 

@@ -1,10 +1,15 @@
 import type { SymbolSequence } from '../symbols/sequence.ts';
+import { countContexts } from './context-counts.ts';
+import { sumOfLogs } from './context-counts-tallies.ts';
 import { NODE_PARENT, NODE_SECOND, NODE_WORDS } from './context-tree.ts';
-import { PairTrainer } from './pair-tree.ts';
+import { PairTree } from './pair-tree.ts';
 
 /**
  * Shortest code length of a whole sequence, in bits, under any one set of order-k distributions: Σ over contexts of
  * n log2 n − Σ over their symbols of c log2 c.
+ *
+ * Contexts that hold start values occur only at the first k symbols of a message (or of the sequence), and those without
+ * only elsewhere: the two parts are counted apart, the large one by sorting, which needs far less memory than a tree.
  *
  * @param startAtMessages  contexts hold start values at each message, else only at the first symbols of the sequence
  */
@@ -13,10 +18,32 @@ export function empiricalLengthBits(
   order: number,
   startAtMessages: boolean,
 ): number {
-  const trainer = new PairTrainer(sequence.alphabetSize, order, startAtMessages);
-  trainer.push(sequence);
-  const { tree } = trainer.pairs;
-  const { words, nodeCount } = tree;
+  if (sequence.symbols.length === 0) return 0;
+  const counts = countContexts(sequence, {
+    upto: order,
+    contexts: startAtMessages ? 'message' : 'running',
+    blocks: 1,
+  })[order];
+  const inner = sumOfLogs(counts.contextTallies) - sumOfLogs(counts.pairTallies);
+  return Math.max(0, inner) + startBits(sequence, order, startAtMessages);
+}
+
+/** The same sum over the contexts with start values. */
+function startBits(sequence: SymbolSequence, order: number, startAtMessages: boolean): number {
+  if (order === 0) return 0;
+  const { symbols, messageEnds, alphabetSize } = sequence;
+  const pairs = new PairTree(alphabetSize, order);
+  if (startAtMessages) {
+    let from = 0;
+    for (const to of messageEnds) {
+      pairs.count(symbols, from, Math.min(to, from + order));
+      pairs.start();
+      from = to;
+    }
+  } else {
+    pairs.count(symbols, 0, Math.min(symbols.length, order));
+  }
+  const { words, nodeCount } = pairs.tree;
   const depths = new Uint8Array(nodeCount);
   const sums = new Float64Array(nodeCount);
   let bits = 0;

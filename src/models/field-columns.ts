@@ -34,7 +34,8 @@ export function columnsOf(
 }
 
 /**
- * Median and size classes of the first `count` values of a part: classes hold about an eighth each, equal values stay together.
+ * Median and size classes of the first `count` values of a part: classes hold about an eighth each,
+ * equal values stay together.
  */
 export function factsOf(columns: FieldColumns, part: number, count: number): FieldFacts {
   const width = columns.layout.widths[part];
@@ -47,7 +48,8 @@ export function factsOf(columns: FieldColumns, part: number, count: number): Fie
   const bounds: number[] = [];
   let from = 0;
   while (bounds.length < BOUNDS) {
-    // What is left is parted evenly among the classes that are left, so that a frequent value does not empty them.
+    // What is left is parted evenly among the classes that are left, so that a frequent value does
+    // not empty them.
     const share = Math.floor((count - from) / (BOUNDS + 1 - bounds.length));
     let to = from + Math.max(1, share);
     while (to < count && sorted[to] === sorted[to - 1]) to++;

@@ -12,7 +12,8 @@ const LARGEST_TOTAL = 2 ** 15;
 const LEAST_JOURNAL = 1024;
 
 /**
- * Adaptive tables. A reset puts back only what was counted since the last, unless that is much: then all of it.
+ * Adaptive tables. A reset puts back only what was counted since the last, unless that is much:
+ * then all of it.
  *
  * Memory: 2 bytes a slot, twice with the state to return to, and a byte a slot for the journal.
  */

@@ -4,7 +4,7 @@ import type { RecordLayout } from '../symbols/record-layout.ts';
 import { TRANSFORM_CODES } from './field-residual.ts';
 import { BUCKETS, tokenCount } from './field-token.ts';
 
-export const NO_CONTEXT = 0;
+const NO_CONTEXT = 0;
 export const LAST_RESIDUAL = 1;
 export const LAST_VALUE = 2;
 export const EARLIER_FIELD = 3;
@@ -16,7 +16,10 @@ export const BOUNDS = BUCKETS - 1;
 export interface FieldFacts {
   /** Stands in for the value before the first; unsigned, as in the layout. */
   readonly reference: number;
-  /** {@link BOUNDS} integers that never fall; a value in class i lies at or above i of them, by {@link orderedValue}. */
+  /**
+   * {@link BOUNDS} integers that never fall; a value in class i lies at or above i of them, by
+   * {@link orderedValue}.
+   */
   readonly bounds: readonly number[];
 }
 
@@ -49,8 +52,9 @@ export function contextKindOf(choice: FieldChoice): number {
 /**
  * How every part of a record is coded, in the form that loops over symbols read.
  *
- * Tables are numbered through all parts. Those of a part begin at `tableStart[part]`: first that of a message's first record,
- * then those of its contexts. The tokens of a table lie at `slotStart[table] … slotStart[table + 1] − 1`.
+ * Tables are numbered through all parts. Those of a part begin at `tableStart[part]`: first that of
+ * a message's first record, then those of its contexts. The tokens of a table lie at
+ * `slotStart[table] … slotStart[table + 1] − 1`.
  */
 export class FieldPlan {
   readonly layout: RecordLayout;

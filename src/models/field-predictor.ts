@@ -3,10 +3,11 @@ import { residualOf, valueBeside, valueFrom, zigzagBetween } from './field-resid
 import { bucketOf } from './field-token.ts';
 
 /**
- * What a record's parts are expected to be, from the records before it in the message; the same at both ends.
+ * What a record's parts are expected to be, from the records before it in the message; the same at
+ * both ends.
  *
- * For each part in turn: {@link tableOf}, then {@link split} or {@link join}; after the last part {@link advance}. The
- * whole state is `values`, the records before and `age`: small enough to copy.
+ * For each part in turn: {@link tableOf}, then {@link split} or {@link join}; after the last part
+ * {@link advance}. The whole state is `values`, the records before and `age`: small enough to copy.
  */
 export class FieldPredictor {
   readonly plan: FieldPlan;

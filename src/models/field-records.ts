@@ -3,12 +3,15 @@ import type { TokenReader, TokenWriter } from './field-tables.ts';
 import { EXTRA_BITS, LEAST_VALUE, tokenOf } from './field-token.ts';
 import type { IntervalSink, IntervalSource } from './interval.ts';
 
-/** Extra bits go in pieces of at most so many: small totals cost a range of 32 bits nothing to speak of. */
+/**
+ * Extra bits go in pieces of at most so many: small totals cost a range of 32 bits nothing to speak
+ * of.
+ */
 const PIECE_BITS = 12;
 
 /**
- * Codes the record at `bytes[at …]`: one step of a message, after which the predictor stands at the next record. Intervals
- * go to the sink part by part.
+ * Codes the record at `bytes[at …]`: one step of a message, after which the predictor stands at the
+ * next record. Intervals go to the sink part by part.
  */
 export function codeRecord(
   predictor: FieldPredictor,
@@ -23,7 +26,10 @@ export function codeRecord(
   predictor.advance();
 }
 
-/** Codes one part of the record whose values the predictor holds: a token, then its extra bits as equally likely. */
+/**
+ * Codes one part of the record whose values the predictor holds: a token, then its extra bits as
+ * equally likely.
+ */
 export function codePart(
   predictor: FieldPredictor,
   tables: TokenWriter,
@@ -67,7 +73,9 @@ export function decodeRecord(
   predictor.advance();
 }
 
-/** Counts the tokens of a record in the slots of their tables, as {@link codeRecord} would use them. */
+/**
+ * Counts the tokens of a record in the slots of their tables, as {@link codeRecord} would use them.
+ */
 export function countRecord(
   predictor: FieldPredictor,
   counts: Float64Array,

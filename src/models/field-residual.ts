@@ -1,14 +1,15 @@
 import type { FieldTransform } from '../symbols/field-choice.ts';
 
 /**
- * A field's value as what is left after its transform, and back. Values are unsigned integers below 2^width; differences
- * wrap around there, so that a residual is below 2^width too, and the way back always exists.
+ * A field's value as what is left after its transform, and back. Values are unsigned integers below
+ * 2^width; differences wrap around there, so that a residual is below 2^width too, and the way back
+ * always exists.
  */
 
 export const RAW = 0;
-export const DELTA = 1;
-export const XOR = 2;
-export const DELTA2 = 3;
+const DELTA = 1;
+const XOR = 2;
+const DELTA2 = 3;
 
 export const TRANSFORM_CODES: Readonly<Record<FieldTransform, number>> = {
   raw: RAW,
@@ -17,7 +18,10 @@ export const TRANSFORM_CODES: Readonly<Record<FieldTransform, number>> = {
   delta2: DELTA2,
 };
 
-/** 0, −1, 1, −2 … as 0, 1, 2, 3 …, for a difference that wraps around at 2^width; `shift` is 32 − width. */
+/**
+ * 0, −1, 1, −2 … as 0, 1, 2, 3 …, for a difference that wraps around at 2^width; `shift` is 32 −
+ * width.
+ */
 export function zigzagBetween(value: number, expected: number, shift: number): number {
   const difference = ((value - expected) << shift) >> shift;
   return ((difference << 1) ^ (difference >> 31)) >>> 0;
@@ -31,7 +35,8 @@ export function valueBeside(residual: number, expected: number, shift: number): 
 
 /**
  * What is left of a value that is not the first of its message.
- * @param before, beforeThat  the same field of the last two records; `beforeThat` equals `before` where there is only one
+ * @param before, beforeThat  the same field of the last two records; `beforeThat` equals `before`
+ *   where there is only one
  * @param shift   32 − width
  * @param signed  1 where a value is two's complement, which `raw` heeds
  */

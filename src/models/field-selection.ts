@@ -16,8 +16,12 @@ import { COST_PER_BIT, tableCosts } from './table-cost.ts';
 /** A simpler choice stays unless another saves this. */
 const LEAST_GAIN = 8 * COST_PER_BIT;
 
-/** A context asks at most so many parts before its own: a record of nameless bytes has hundreds. */
-const NEAREST_EARLIER = 32;
+/**
+ * A context asks one of so many parts right before its own: all of them in usual records, fewer
+ * where a record has hundreds, so that the time stays near linear.
+ */
+const nearestEarlier = (partCount: number) =>
+  Math.max(1, Math.min(32, Math.floor(1024 / partCount)));
 
 /** What was chosen for a part. */
 export interface FieldSelection {
@@ -29,23 +33,27 @@ export interface FieldSelection {
 }
 
 /**
- * Transform and context of each part, by cost: tables of the first half of the records price the second half.
+ * Transform and context of each part, by cost: tables of the first half of the records price the
+ * second half.
  *
- * Parts are decided in the order of the record; a part may ask the {@link NEAREST_EARLIER} before it, as they were decided. Contexts are tried from
- * none to the earlier fields, and within each the transforms from `raw` to `delta2`: what comes first is the simpler and stays
+ * Parts are decided in the order of the record; a part may ask those before it ({@link
+ * nearestEarlier}), as they were decided. Contexts are tried from none to the earlier fields, and
+ * within each the transforms from `raw` to `delta2`: what comes first is the simpler and stays
  * unless {@link LEAST_GAIN} is saved. Integers only, so the choice is the same everywhere.
  *
- * Cost: records × parts × min(parts + 6, 70) × 4 steps.
+ * Cost: 4 · records · parts · (contexts + 2) steps, and as many tables to quantise as contexts
+ * have.
  */
 export function selectFields(columns: FieldColumns): FieldSelection[] {
   const { layout } = columns;
   const selections: FieldSelection[] = [];
   const buckets: Uint8Array[] = [];
   const pricer = new Pricer(columns);
+  const nearest = nearestEarlier(layout.partCount);
   for (let part = 0; part < layout.partCount; part++) {
     pricer.open(part);
     const contexts: FieldContext[] = [{ kind: 'none' }, { kind: 'last' }, { kind: 'value' }];
-    for (let earlier = Math.max(0, part - NEAREST_EARLIER); earlier < part; earlier++)
+    for (let earlier = Math.max(0, part - nearest); earlier < part; earlier++)
       contexts.push({ kind: 'field', name: layout.names[earlier] });
     let best: FieldSelection | undefined;
     let plainCost = 0;

@@ -20,7 +20,8 @@ const LOOK_BITS = 8;
 const LOOK_SHIFT = TABLE_BITS - LOOK_BITS;
 
 /**
- * Static tables of a total of 2^14 each. No token of a table has it all, since each keeps a frequency.
+ * Static tables of a total of 2^14 each. No token of a table has it all, since each keeps a
+ * frequency.
  *
  * Memory: 8 bytes a slot; for a decoder 256 bytes a table more.
  */

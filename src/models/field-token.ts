@@ -1,8 +1,9 @@
 /**
- * Integers of up to 32 bits as a token, which a model codes, and extra bits, which are as good as equally likely.
+ * Integers of up to 32 bits as a token, which a model codes, and extra bits, which are as good as
+ * equally likely.
  *
- * 0 … 15 are tokens of their own. Above, a token says the bit length and the bit below the leading one; what is left follows as
- * extra bits. A width of w ≥ 4 bits has 16 + 2 (w − 4) tokens.
+ * 0 … 15 are tokens of their own. Above, a token says the bit length and the bit below the leading
+ * one; what is left follows as extra bits. A width of w ≥ 4 bits has 16 + 2 (w − 4) tokens.
  */
 
 /** Values below this are their own token. */

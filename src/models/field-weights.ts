@@ -3,8 +3,9 @@ import type { Quantiser } from './quantise.ts';
 /**
  * Counts of one field's tables as weights in which no token has none.
  *
- * A context counts four tokens more, spread as in all contexts of the field together; there every token counts 1/16 more. The
- * first record's table, and that of a field without context, stand alone: every token counts 1/8 more.
+ * A context counts four tokens more, spread as in all contexts of the field together; there every
+ * token counts 1/16 more. The first record's table, and that of a field without context, stand
+ * alone: every token counts 1/8 more.
  */
 
 /** A token met once, so that shares of the added counts are whole numbers. */
@@ -17,9 +18,10 @@ export const TABLE_BITS = 14;
 export const TABLE_TOTAL = 2 ** TABLE_BITS;
 
 /**
- * Fills `weights[from …]` from `counts` at the same places: `tables` tables of `tokens` each, the first one that of first records.
+ * Fills `weights[from …]` from `counts` at the same places: `tables` tables of `tokens` each, the
+ * first one that of first records.
  *
- * Weights are integers ≥ 1, below 2^53 for up to 2^40 records.
+ * Weights are integers ≥ 1; up to 2^28 records, they and their products with a total stay below 2^53.
  */
 export function weighTables(
   counts: Float64Array,

@@ -1,5 +1,5 @@
 import type { SymbolArray, SymbolChunk } from '../symbols/sequence.ts';
-import { ContextTree, NODE_SECOND, NODE_WORDS } from './context-tree.ts';
+import { type ContextHead, ContextTree, NODE_SECOND, NODE_WORDS } from './context-tree.ts';
 
 /**
  * Exact counts of every symbol in every context of order 0 … k: the tree of all strings of up to k + 1 symbols, the last
@@ -10,10 +10,12 @@ import { ContextTree, NODE_SECOND, NODE_WORDS } from './context-tree.ts';
 export class PairTree {
   readonly order: number;
   readonly tree: ContextTree;
+  readonly #running: ContextHead;
 
   constructor(alphabetSize: number, order: number) {
     this.order = order;
     this.tree = new ContextTree(alphabetSize, order + 1);
+    this.#running = this.tree.startHead();
   }
 
   get alphabetSize(): number {
@@ -33,6 +35,23 @@ export class PairTree {
       const words = tree.words;
       for (let j = 1; j < contexts.length; j++) words[contexts[j] * NODE_WORDS + NODE_SECOND]++;
     }
+  }
+
+  /**
+   * Counts one of the first symbols of a unit in the contexts that reach over the unit's start, beside its running ones.
+   * @param head    where the contexts from the unit's start stand; moved on
+   * @param place   of the symbol in its unit, from 0
+   */
+  countFromStart(head: ContextHead, symbol: number, place: number): void {
+    const tree = this.tree;
+    const running = tree.saveContexts(this.#running);
+    tree.restoreContexts(head);
+    tree.advance(symbol);
+    const { contexts, words } = tree;
+    for (let j = place + 2; j < contexts.length; j++)
+      words[contexts[j] * NODE_WORDS + NODE_SECOND]++;
+    tree.saveContexts(head);
+    tree.restoreContexts(running);
   }
 
   /** Forgets everything; cost by what was counted since the last time. */
@@ -60,5 +79,45 @@ export class PairTrainer {
       from = to;
     }
     this.pairs.count(chunk.symbols, from, chunk.symbols.length);
+  }
+}
+
+/**
+ * Counts the symbols of chunks whose messages are units, several of which make a message: every symbol in its running
+ * contexts, and each unit's first k symbols besides in those contexts of a message's start that reach over the unit's.
+ */
+export class UnitPairTrainer {
+  readonly pairs: PairTree;
+  readonly #start: ContextHead;
+  readonly #head: ContextHead;
+  /** Symbols of the unit so far. The first unit runs on from a start as it is, so it has no head. */
+  #place = Number.POSITIVE_INFINITY;
+
+  constructor(alphabetSize: number, order: number) {
+    this.pairs = new PairTree(alphabetSize, order);
+    this.#start = this.pairs.tree.startHead();
+    this.#head = this.pairs.tree.startHead();
+  }
+
+  push(chunk: SymbolChunk): void {
+    let from = 0;
+    for (const to of chunk.messageEnds) {
+      this.#count(chunk.symbols, from, to);
+      this.#head.contexts.set(this.#start.contexts);
+      this.#head.last = this.#start.last;
+      this.#place = 0;
+      from = to;
+    }
+    this.#count(chunk.symbols, from, chunk.symbols.length);
+  }
+
+  #count(symbols: SymbolArray, from: number, to: number): void {
+    let at = from;
+    for (; at < to && this.#place < this.pairs.order; at++, this.#place++) {
+      // The running contexts first: a node comes after those of its suffixes.
+      this.pairs.count(symbols, at, at + 1);
+      this.pairs.countFromStart(this.#head, symbols[at], this.#place);
+    }
+    this.pairs.count(symbols, at, to);
   }
 }

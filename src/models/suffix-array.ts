@@ -6,7 +6,7 @@ import { copyOfRanks, rankSymbols } from './context-counts-ranks.ts';
 const EMPTY = -1;
 
 /** Most symbols a suffix array is made of. */
-export const MOST_SUFFIXES = 2 ** 30;
+const MOST_SUFFIXES = 2 ** 30;
 
 /**
  * The start positions of all suffixes of `symbols` in rising order; where one suffix begins another, the shorter is first.

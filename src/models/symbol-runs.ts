@@ -6,7 +6,7 @@ export const HAS_RUN = 0x20000;
 
 /**
  * Adds one to the count of the entry at `position` of a run; it changes places with the one before when that is smaller.
- * For kernels, which add to the node's sum themselves; elsewhere {@link SymbolRuns.increment}.
+ * For kernels, which save the node before and add to its sum themselves; elsewhere {@link SymbolRuns.increment}.
  */
 export function countEntry(
   pool: Uint32Array,
@@ -59,7 +59,7 @@ export class SymbolRuns {
   /** First free block of SMALLEST_BLOCK << class words; each free block holds the offset of the next. */
   readonly #free = new Uint32Array(20);
 
-  /** Nodes below this are saved before they change: {@link countEntry} is not for them. */
+  /** Nodes below this are saved before they change. */
   markedNodes = 0;
   #markedPoolEnd = SMALLEST_BLOCK;
   #stamps: Uint32Array = NO_WORDS;
@@ -101,7 +101,7 @@ export class SymbolRuns {
 
   /** Adds a symbol that the node has not, with count 1. */
   append(node: number, symbol: number): void {
-    this.#save(node);
+    this.save(node);
     const words = this.tree.words;
     const at = node * NODE_WORDS;
     const entry = ((1 << this.symbolBits) | symbol) >>> 0;
@@ -139,7 +139,7 @@ export class SymbolRuns {
 
   /** Counts the one symbol of a node without a run. */
   incrementOnly(node: number): void {
-    if (node < this.markedNodes) this.#save(node);
+    if (node < this.markedNodes) this.save(node);
     const words = this.tree.words;
     const at = node * NODE_WORDS;
     words[at + NODE_FIRST] += 1 << this.symbolBits;
@@ -149,7 +149,7 @@ export class SymbolRuns {
 
   /** Counts the entry at offset `position` of the pool, in the node's run. */
   increment(node: number, position: number): void {
-    if (node < this.markedNodes) this.#save(node);
+    if (node < this.markedNodes) this.save(node);
     const words = this.tree.words;
     const at = node * NODE_WORDS;
     const count = (this.pool[position] >>> this.symbolBits) + 1;
@@ -160,7 +160,7 @@ export class SymbolRuns {
 
   /** Halves all counts of the node: c becomes ⌈c/2⌉ or ⌊c/2⌋. */
   halve(node: number): void {
-    this.#save(node);
+    this.save(node);
     const words = this.tree.words;
     const pool = this.pool;
     const at = node * NODE_WORDS;
@@ -224,7 +224,8 @@ export class SymbolRuns {
     }
   }
 
-  #save(node: number): void {
+  /** Keeps a node as it was marked, once, before it changes. */
+  save(node: number): void {
     if (node >= this.markedNodes || this.#stamps[node] === this.#stamp) return;
     this.#stamps[node] = this.#stamp;
     const words = this.tree.words;

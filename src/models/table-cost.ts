@@ -6,8 +6,9 @@ export const COST_PER_BIT = 65_536;
 const MANTISSA = 2 ** 25;
 
 /**
- * log2 of an integer 1 … 2^25 in 1/65536 bit, rounded down, by integers alone, so that choices that rest on it are the same
- * on every machine: the mantissa is squared once for each bit of the fraction. Off by at most one unit.
+ * log2 of an integer 1 … 2^25 in 1/65536 bit, rounded down, by integers alone, so that choices that
+ * rest on it are the same on every machine: the mantissa is squared once for each bit of the
+ * fraction. Off by at most one unit.
  */
 export function integerLog2(value: number): number {
   const whole = 31 - Math.clz32(value);

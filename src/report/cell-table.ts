@@ -1,6 +1,7 @@
 import { LINE_LETTERS } from '../account/bit-account.ts';
 import type { CellRecord } from '../harness/run-record.ts';
 import {
+  countText,
   decimalsFor,
   padLeft,
   padRight,
@@ -66,7 +67,17 @@ function columnsFor(cells: readonly CellRecord[], options: CellTableOptions): Co
     always(['bits/', noun], true, (c) => rateText(c.rate!, decimals)),
     always(['over', 'floor'], true, (c) => signedRateText(c.rate! - options.floorOf(c), decimals)),
   );
-  if (cells.some((c) => (c.message_count ?? 0) > 1)) {
+  if (cells.some((c) => c.units_per_message !== undefined)) {
+    columns.push(
+      always(['units/', 'message'], true, (c) => c.units_per_message?.mean.toFixed(1) ?? ''),
+      {
+        spare: 3,
+        head: ['', 'messages'],
+        right: true,
+        text: (c) => (c.message_count === undefined ? '' : countText(c.message_count)),
+      },
+    );
+  } else if (cells.some((c) => (c.message_count ?? 0) > 1)) {
     columns.push({
       spare: 3,
       head: ['bytes/', 'message'],

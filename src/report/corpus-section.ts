@@ -88,7 +88,7 @@ function remarks(record: RunRecord, corpus: CorpusRecord): string[] {
   const best = bestCell(cells);
   if (corpus.train_symbol_count > 0) {
     notes.push(
-      `Coded: the test part, ${countText(corpus.symbol_count)} symbols in ${countText(corpus.message_count)} messages; ` +
+      `Coded: the test part, ${countText(corpus.symbol_count)} symbols in ${countText(corpus.message_count)} ${corpus.unit_count === undefined ? 'messages' : 'units'}; ` +
         `trained on ${countText(corpus.train_symbol_count)} symbols (${record.plan.split}).`,
     );
     if ((corpus.repeated_share ?? 0) >= 0.01) {
@@ -97,9 +97,14 @@ function remarks(record: RunRecord, corpus: CorpusRecord): string[] {
           ? ''
           : `; without them the best rate is ${rateText(best.rate_without_repeats)}`;
       notes.push(
-        `${Math.round(corpus.repeated_share! * 100)} % of the test messages also occur in train${without}.`,
+        `${Math.round(corpus.repeated_share! * 100)} % of the test ${corpus.unit_count === undefined ? 'messages' : 'units'} also occur in train${without}.`,
       );
     }
+  }
+  if (corpus.fill_bytes !== undefined) {
+    notes.push(
+      `Each message holds as many whole units as fit into ${countText(corpus.fill_bytes)} coded bytes, all counted, so each candidate cuts messages of its own. A flipped bit can spoil a whole message and all its units; the link's own protection and your standards decide whether that is tolerable.`,
+    );
   }
   const reference = cells.find((c) => c.reference && best !== undefined && c.rate! < best.rate!);
   if (reference !== undefined) {

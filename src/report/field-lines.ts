@@ -26,8 +26,9 @@ const cut = (text: string, most: number) =>
   [...text].length <= most ? text : `${[...text].slice(0, most - 1).join('')}${CUT}`;
 
 /**
- * Which field of the record costs what: for a cell that was coded by fields, a line a field in the order of the record, with
- * its bits a record, what was picked for it, and a bar whose letter names the transform. Nothing for other cells.
+ * Which field of the record costs what: for a cell that was coded by fields, a line a field in the
+ * order of the record, with its bits a record, what was picked for it, and a bar whose letter names
+ * the transform. Nothing for other cells.
  * @param recordBytes  of the corpus, to count its records
  */
 export function fieldLines(cell: CellRecord, recordBytes: number, columns: number): string[] {

@@ -57,6 +57,11 @@ function ageingLines(record: RunRecord, corpus: string, columns: number): string
   );
 }
 
+/** Says that combinations were left out of corpora whose messages are filled. */
+export function notFilledText(count: number): string {
+  return `${countText(count)} combinations of tables and reset gave no cell: messages can be filled only where each decodes alone, under reset message or with shipped tables.`;
+}
+
 /** The screen of `bitassay run`: a section a corpus, then what the list left out. */
 export function runScreen(record: RunRecord, options: RunScreenOptions): string {
   const lines: string[] = [` ${record.plan.title}`, ''];
@@ -91,6 +96,7 @@ export function runScreen(record: RunRecord, options: RunScreenOptions): string 
       `${countText(record.undeclared)} combinations of tables and reset gave no cell, since the coder does not declare them.`,
     );
   }
+  if (record.not_filled !== undefined) notes.push(notFilledText(record.not_filled));
   const failed = record.cells.filter((c) => !c.verified).length;
   if (failed > 0)
     notes.push(

@@ -1,6 +1,7 @@
 import type { RunRecord } from '../harness/run-record.ts';
 import { corpusSection } from './corpus-section.ts';
 import { wrapText } from './figures.ts';
+import { notFilledText } from './run-screen.ts';
 
 export interface TryScreenOptions {
   readonly columns: number;
@@ -15,6 +16,9 @@ export function tryScreen(record: RunRecord, options: TryScreenOptions): string 
   const corpus = record.corpora[0];
   return [
     ...corpusSection(record, corpus, { columns: options.columns }),
+    ...(record.not_filled === undefined
+      ? []
+      : wrapText(notFilledText(record.not_filled), options.columns - 1, ' ')),
     ...wrapText(options.caution, options.columns - 1, ' '),
     ` Next: ${options.next}`,
     '',

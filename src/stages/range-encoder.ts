@@ -18,6 +18,7 @@ const BYTES_PER_INTERVAL = 3;
  *
  * One instance codes many messages: {@link begin}, intervals, {@link end}; each has a code string of its own, at any bit
  * position of the writer. After `end` the public fields hold what the message cost; nothing is allocated per message.
+ * A message can be taken back to a mark: what lay before it then ends as if nothing had followed.
  *
  * Precision: what ⌊ ⌋ loses is part of the payload. At 48 bits it is below 6 bits in a million intervals for any total to
  * 2^22; at 32 bits below 1.61 · n · T / 2^24 bits for n intervals of totals to T.
@@ -46,6 +47,11 @@ export class RangeEncoder implements IntervalSink {
   #at = 0;
   #low = 0;
   #range = 0;
+  #markedAt = 0;
+  #markedLow = 0;
+  #markedRange = 0;
+  /** A carry has changed bytes before the mark. At most one can: what follows them stays below their last place. */
+  #carryPassedMark = false;
 
   constructor(writer: BitWriter, bits: RangeBits) {
     this.#writer = writer;
@@ -68,8 +74,55 @@ export class RangeEncoder implements IntervalSink {
     this.#start = this.#direct ? this.#writer.byteLength : 0;
     this.#at = this.#start;
     this.#bytes = this.#direct ? this.#writer.bytes : this.#kept;
+    this.#beginInterval();
+  }
+
+  /** As {@link begin}, but the writer stays free until {@link end}; a message begun before and not ended is forgotten. */
+  beginApart(): void {
+    this.#direct = false;
+    this.#start = 0;
+    this.#at = 0;
+    this.#bytes = this.#kept;
+    this.#beginInterval();
+  }
+
+  #beginInterval(): void {
     this.#low = 0;
     this.#range = this.#precision.initialRange;
+    this.mark();
+  }
+
+  /** Remembers the state, in place of the mark before; every message begins with one. */
+  mark(): void {
+    this.#markedAt = this.#at;
+    this.#markedLow = this.#low;
+    this.#markedRange = this.#range;
+    this.#carryPassedMark = false;
+  }
+
+  /** Back to the last mark. */
+  restore(): void {
+    if (this.#carryPassedMark) {
+      const bytes = this.#bytes;
+      let at = this.#markedAt - 1;
+      while (bytes[at] === 0) bytes[at--] = 255;
+      bytes[at]--;
+    }
+    this.#at = this.#markedAt;
+    this.#low = this.#markedLow;
+    this.#range = this.#markedRange;
+    this.#carryPassedMark = false;
+  }
+
+  /** Bits of the code string, were the message to end here. */
+  bitsIfEnded(continuation: 'zeros' | 'any'): number {
+    return 8 * (this.#at - this.#start) + this.#endingBitsFor(continuation);
+  }
+
+  #endingBitsFor(continuation: 'zeros' | 'any'): number {
+    return continuation === 'zeros'
+      ? endingByZeros(this.#precision, this.#low, this.#range)
+      : endingForAny(this.#precision, this.#low, this.#range);
   }
 
   /** Codes one interval; trusts the model's promises. */
@@ -102,9 +155,7 @@ export class RangeEncoder implements IntervalSink {
   end(continuation: 'zeros' | 'any'): void {
     const precision = this.#precision;
     const byZeros = continuation === 'zeros';
-    const bits = byZeros
-      ? endingByZeros(precision, this.#low, this.#range)
-      : endingForAny(precision, this.#low, this.#range);
+    const bits = this.#endingBitsFor(continuation);
     const shifted = this.#at - this.#start;
     this.writtenBits = 8 * shifted;
     this.endingBits = bits;
@@ -149,5 +200,6 @@ export class RangeEncoder implements IntervalSink {
     while (at >= this.#start && bytes[at] === 255) bytes[at--] = 0;
     if (at < this.#start) throw new BugError('a carry ran out of its message');
     bytes[at]++;
+    if (at < this.#markedAt) this.#carryPassedMark = true;
   }
 }

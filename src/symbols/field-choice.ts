@@ -3,7 +3,8 @@ import { nearestWord } from '../errors/nearest.ts';
 import type { RecordShape } from './record.ts';
 
 /**
- * How one field of a record is coded, in words: `transform` or `transform/context`, as in `delta` or `delta/last`.
+ * How one field of a record is coded, in words: `transform` or `transform/context`, as in `delta`
+ * or `delta/last`.
  *
  * Transforms, to the same field of the records before in the message:
  * - `raw`: the value itself;
@@ -65,7 +66,8 @@ export function fieldChoiceText({ transform, context }: FieldChoice): string {
 }
 
 /**
- * Checks what can be known of a map of choices before the layout is made: that its fields exist and its words are right.
+ * Checks what can be known of a map of choices before the layout is made: that its fields exist and
+ * its words are right.
  * @throws InputError that names the field
  */
 export function checkFieldMap(

@@ -5,12 +5,15 @@ import { bitRangeOf, checkFieldsApart, type RecordField, type RecordShape } from
 const LARGEST_RECORD_BYTES = 4096;
 
 /**
- * A record taken apart into integers and put together again: declared fields, and what lies between them.
+ * A record taken apart into integers and put together again: declared fields, and what lies between
+ * them.
  *
- * Every bit of the record belongs to exactly one part. Whole bytes that no field names are parts of their own, called `@` and
- * the byte; bits left over within a byte are too, called `@byte.bit`. Parts stand in the order of their first bit.
+ * Every bit of the record belongs to exactly one part. Whole bytes that no field names are parts of
+ * their own, called `@` and the byte; bits left over within a byte are too, called `@byte.bit`.
+ * Parts stand in the order of their first bit.
  *
- * A value is the part's bits as an unsigned integer below 2^width, two's complement for signed types.
+ * A value is the part's bits as an unsigned integer below 2^width, two's complement for signed
+ * types.
  */
 export class RecordLayout {
   readonly bytes: number;
@@ -19,7 +22,10 @@ export class RecordLayout {
   readonly widths: Uint8Array;
   /** 1 for parts whose values are signed. */
   readonly signed: Uint8Array;
-  /** For each part the byte of its least significant bits, the step to the next byte, and the number of bytes. */
+  /**
+   * For each part the byte of its least significant bits, the step to the next byte, and the number
+   * of bytes.
+   */
   readonly #lowAt: Int32Array;
   readonly #step: Int8Array;
   readonly #count: Uint8Array;

@@ -28,13 +28,15 @@ export interface RecordField {
   /** Bytes that the field lies in, wholly or in part. */
   readonly widthBytes: number;
   /**
-   * Of a bit field: its first bit in the first byte (0 is the least significant) and its width. It goes on in the least
-   * significant bits of the next byte.
+   * Of a bit field: its first bit in the first byte (0 is the least significant) and its width. It
+   * goes on in the least significant bits of the next byte.
    */
   readonly bits?: { readonly from: number; readonly width: number };
 }
 
-/** A fixed-size group of source bytes with named fields, in the order in which they were declared. */
+/**
+ * A fixed-size group of source bytes with named fields, in the order in which they were declared.
+ */
 export interface RecordShape {
   readonly bytes: number;
   readonly fields: readonly RecordField[];
@@ -46,9 +48,11 @@ function isFieldType(type: string): type is FieldType {
 }
 
 /**
- * Reads `type@offset`, for instance `s16le@4`, or `type@offset.bit` for a bit field: `u3@8.5` is bits 5 to 7 of byte 8.
+ * Reads `type@offset`, for instance `s16le@4`, or `type@offset.bit` for a bit field: `u3@8.5` is
+ * bits 5 to 7 of byte 8.
  * @param recordBytes  size of the record, in bytes; the field must lie inside
- * @throws InputError for another form, an unknown type or a field past the record; NotYetError for more than 32 bits
+ * @throws InputError for another form, an unknown type or a field past the record; NotYetError for
+ *   more than 32 bits
  */
 export function parseRecordField(name: string, text: string, recordBytes: number): RecordField {
   const parts = /^\s*([a-z0-9]+)\s*@\s*(\d{1,9})(?:\.([0-7]))?\s*$/.exec(text);
@@ -107,7 +111,10 @@ function refuseType(name: string, type: string, bit: string | undefined): never 
   });
 }
 
-/** The bits of the record that a field takes: bit b of byte B is 8 B + b. A field takes one run of them. */
+/**
+ * The bits of the record that a field takes: bit b of byte B is 8 B + b. A field takes one run of
+ * them.
+ */
 export function bitRangeOf(field: RecordField): { from: number; to: number } {
   const from = 8 * field.offsetBytes + (field.bits?.from ?? 0);
   return { from, to: from + (field.bits?.width ?? 8 * field.widthBytes) };

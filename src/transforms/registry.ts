@@ -10,10 +10,10 @@ import { xorTransform } from './xor.ts';
 import { zigzag } from './zigzag.ts';
 
 /** Furthest that a step looks back, in symbols. */
-export const LARGEST_LAG = 65_536;
+const LARGEST_LAG = 65_536;
 
 /** A step as a chain names it; one whose word ends in N takes a number there. */
-export interface TransformFamily {
+interface TransformFamily {
   readonly word: string;
   /** One line. */
   readonly summary: string;
@@ -21,7 +21,7 @@ export interface TransformFamily {
 }
 
 /** Every step there is. */
-export const transformFamilies: readonly TransformFamily[] = [
+const transformFamilies: readonly TransformFamily[] = [
   { word: 'delta', summary: 'difference to the symbol before, modulo m', create: () => delta },
   {
     word: 'delta2',
@@ -80,6 +80,9 @@ export function parseTransform(text: string): Transform {
     key: 'after',
     expected: `steps joined by dots, out of ${words.join(', ')}`,
     got: text,
-    ...(near === undefined ? {} : { advice: `Did you mean ${near}?` }),
+    advice:
+      near === undefined
+        ? `${transformFamilies.map(({ word, summary }) => `${word}: ${summary}`).join('. ')}.`
+        : `Did you mean ${near}?`,
   });
 }

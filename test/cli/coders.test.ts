@@ -169,7 +169,8 @@ describe('one coder', () => {
     for (const example of examples) {
       for (const candidate of parseCandidates(example)) {
         expect(candidate.declaration.name).toBe(name);
-        expect(candidate.create().declares).toBe(d);
+        // Parameters can change which policies the registry's entry declares.
+        expect(candidate.create().declares.name).toBe(name);
       }
     }
     for (const columns of [80, 100]) {

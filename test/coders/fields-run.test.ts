@@ -1,8 +1,9 @@
 import { describe, expect, it } from 'vitest';
 import { parsePlan } from '../../src/corpus/plan.ts';
 import { requestOf } from '../../src/harness/plan-request.ts';
-import { runAll } from '../../src/harness/run-all.ts';
+import { type RunRequest, runAll } from '../../src/harness/run-all.ts';
 import { runScreen } from '../../src/report/run-screen.ts';
+import { sliceMessages } from '../../src/symbols/sequence.ts';
 
 const PLAN = `
 plan: 1
@@ -18,10 +19,22 @@ tables: [shipped, learned]
 reset: [message, never]
 `;
 
+/** What the plan asks for, on the first messages of each part: enough to see what goes where. */
+async function requestFor(text: string): Promise<RunRequest> {
+  const { timing: _, ...request } = await requestOf(parsePlan(text, 'corpora-demo/plan.yaml'));
+  const corpora = request.corpora.map((corpus) => ({
+    ...corpus,
+    train: sliceMessages(corpus.train!, 0, 40),
+    test: sliceMessages(corpus.test, 0, 40),
+    testFiles: [{ ...corpus.testFiles[0], messageEnd: 40 }],
+    repeated: { share: 0, mask: new Uint8Array(40) },
+  }));
+  return { ...request, corpora };
+}
+
 describe('fields in a run', () => {
   it('gives cells, an account a field, and a screen that shows it', async () => {
-    const { timing: _, ...request } = await requestOf(parsePlan(PLAN, 'corpora-demo/plan.yaml'));
-    const { record } = await runAll(request);
+    const { record } = await runAll(await requestFor(PLAN));
     expect(record.cells.map((cell) => cell.id)).toEqual([
       'telemetry/fields@shipped/message',
       'telemetry/fields@learned/message',
@@ -53,8 +66,7 @@ describe('fields in a run', () => {
       'records=20',
       'every=20',
     );
-    const { timing: _, ...request } = await requestOf(parsePlan(text, 'corpora-demo/plan.yaml'));
-    const { record } = await runAll(request);
+    const { record } = await runAll(await requestFor(text));
     for (const cell of record.cells)
       expect(cell.failure).toMatch(/codes the bytes of whole records, and these symbols are not/);
   });

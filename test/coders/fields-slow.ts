@@ -1,6 +1,7 @@
 /**
- * A second, slow computation of what `fields` prices, from the description of the method: maps and plain numbers, nothing shared
- * with the coder but the words of a choice. Records of one-byte unsigned fields only.
+ * A second, slow computation of what `fields` prices, from the description of the method: maps and
+ * plain numbers, nothing shared with the coder but the words of a choice. Records of one-byte
+ * unsigned fields only.
  */
 
 export interface SlowField {
@@ -80,7 +81,10 @@ export function slowSteps(
 /** Tokens of a field of eight bits: 16, and two for each of the bit lengths 5 to 8. */
 const TOKENS = 24;
 
-/** Probability of each step after training on `train`, times 2^−extra, as the smoothing is described. */
+/**
+ * Probability of each step after training on `train`, times 2^−extra, as the smoothing is
+ * described.
+ */
 export function slowTrainedBits(
   train: readonly SlowStep[],
   steps: readonly SlowStep[],
@@ -107,15 +111,20 @@ export function slowTrainedBits(
   });
 }
 
-/** Bits of each step with counts that grow from 1 by 16 and are never halved. */
+/**
+ * Bits of each step with counts that grow from 1 by 16; a table whose counts pass 2^15 in all is
+ * halved, each count rounded up.
+ */
 export function slowLearnedBits(steps: readonly SlowStep[]): number[] {
-  const counts = new Map<string, number>();
+  const tables = new Map<string, number[]>();
+  const sum = (counts: readonly number[]) => counts.reduce((a, b) => a + b, 0);
   return steps.map(({ field, table, token, extraBits }) => {
     const name = `${field}: ${table}`;
-    const own = counts.get(`${name}: ${token}`) ?? 1;
-    const total = counts.get(name) ?? TOKENS;
-    counts.set(`${name}: ${token}`, own + 16);
-    counts.set(name, total + 16);
-    return Math.log2(total / own) + extraBits;
+    const counts = tables.get(name) ?? new Array<number>(TOKENS).fill(1);
+    const bits = Math.log2(sum(counts) / counts[token]) + extraBits;
+    counts[token] += 16;
+    const halved = sum(counts) > 2 ** 15 ? counts.map((count) => Math.ceil(count / 2)) : counts;
+    tables.set(name, halved);
+    return bits;
   });
 }

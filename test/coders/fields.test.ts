@@ -156,7 +156,10 @@ describe('against a slow computation of the method', () => {
     ],
   ];
 
-  /** Median, and bounds as trained: both are read off the coder's plan, and the median held against sorting. */
+  /**
+   * Median, and bounds as trained: both are read off the coder's plan, and the median held against
+   * sorting.
+   */
   it.each(maps)('shipped, %s', (map, fields) => {
     const coder = parseCandidate(`fields:map=${map}`).create();
     const setup = setupOf({ record });
@@ -200,6 +203,46 @@ describe('against a slow computation of the method', () => {
       expect(field.name).toBe(names[f]);
       expect(field.idealBits).toBeCloseTo(perField[f], 8);
     });
+  });
+
+  it.each(maps)(
+    'learned, contexts that run on over messages, tables that are halved, %s',
+    (map, fields) => {
+      const coder = parseCandidate(`fields:map=${map}`).create();
+      // Each round goes on where the last one ends, so that 40 of them are 4800 records.
+      const rounds = Array.from({ length: 40 }, () => records).flat();
+      const symbols = Uint8Array.from(rounds.flat());
+      const price = coder.price!(
+        inMessages(symbols, 4, 50),
+        setupOf({ record, policy: 'learned', reset: 'never' }),
+      );
+      const even = [32, 64, 96, 128, 160, 192, 224];
+      const facts = names.map(() => ({ reference: 0, bounds: even }));
+      const bits = slowLearnedBits(slowSteps(rounds, fields, facts));
+      expect(price.messageIdealBits.length).toBe(96);
+      price.messageIdealBits.forEach((got, i) => {
+        const own = bits.slice(200 * i, 200 * (i + 1)).reduce((x, y) => x + y, 0);
+        expect(got).toBeCloseTo(own, 8);
+      });
+    },
+  );
+
+  it('a message is never longer than is declared', () => {
+    const coder = parseCandidate('fields:map=a:delta+d:xor').create();
+    const setup = setupOf({ record, align: 1, lengths: 'known' });
+    const constant = inMessages(new Uint8Array(40_000), 4, 10);
+    const noise = new Uint8Array(4000).map(() => next());
+    for (const policy of ['shipped', 'primed'] as const) {
+      const tables = train(coder, { ...setup, policy }, [constant]);
+      const { messageEndsBits } = encode(coder, { ...setup, policy, tables }, [
+        inMessages(noise, 4, 10),
+      ]);
+      let from = 0;
+      for (const end of messageEndsBits) {
+        expect(end - from).toBeLessThanOrEqual(10 * 4 * (15 + 8) + 2);
+        from = end;
+      }
+    }
   });
 });
 
@@ -245,7 +288,8 @@ describe('on the demo’s telemetry, eight records a message', () => {
       const sum = perField!.reduce((bits, field) => bits + field.idealBits, 0);
       expect(Math.abs(sum - idealBits)).toBeLessThan(1e-6 * idealBits);
       expect(perField!.map(({ name }) => name)).toEqual(record.fields.map(({ name }) => name));
-      // Quantised to 2^14 under shipped; under primed the same intervals, and the stage loses next to nothing.
+      // Quantised to 2^14 under shipped; under primed the same intervals, and the stage loses next
+      // to nothing.
       const slack = policy === 'shipped' ? 0.01 * idealBits : 1;
       expect(Math.abs(result.payloadBits - idealBits)).toBeLessThan(slack);
     }

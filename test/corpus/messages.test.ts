@@ -54,13 +54,13 @@ describe('parseMessageRule', () => {
     }
   });
 
-  test('fill= is not built yet and names the way meanwhile', () => {
+  test('unit=row is not built yet and names the way meanwhile', () => {
     try {
-      parseMessageRule('fill=192,unit=24');
+      parseMessageRule('fill=192,unit=row');
       expect.unreachable();
     } catch (error) {
       expect(error).toBeInstanceOf(NotYetError);
-      expect((error as NotYetError).where.advice).toContain('records=8');
+      expect((error as NotYetError).where.advice).toContain('unit=line');
     }
   });
 });

@@ -1,6 +1,10 @@
 import { describe, expect, it } from 'vitest';
 import type { Coder, Decoded } from '../../src/coders/contract.ts';
-import { adaptiveCeilings, LARGEST_CEILING_BYTES } from '../../src/entropy/ceilings.ts';
+import {
+  adaptiveCeilings,
+  CeilingStop,
+  LARGEST_CEILING_BYTES,
+} from '../../src/entropy/ceilings.ts';
 import { LimitError, PromiseError } from '../../src/errors/errors.ts';
 import { SeededGenerator } from '../../src/statistics/generator.ts';
 import { oneMessage } from '../../src/symbols/sequence.ts';
@@ -61,8 +65,8 @@ describe('adaptiveCeilings', () => {
     expect(ceilings.map((c) => c.name)).toEqual(['fixed', 'arith:order=2']);
     expect(without.map((w) => w.name)).toEqual(['arith:order=0', 'arith:order=1']);
     for (const { error } of without) expect(error).toBeInstanceOf(PromiseError);
-    expect(without[0].error.where.symbolIndex).toBe(999);
-    expect(without[1].error.where.messageIndex).toBe(1);
+    expect(without[0].error!.where.symbolIndex).toBe(999);
+    expect(without[1].error!.where.messageIndex).toBe(1);
   });
 
   it('goes on after a limit, and not after a fault of another kind', () => {
@@ -72,13 +76,29 @@ describe('adaptiveCeilings', () => {
     };
     const { ceilings, without } = adaptiveCeilings(input, { upto: 2, coderOf: limited });
     expect(ceilings.map((c) => c.name)).toEqual(['fixed', 'arith:order=0', 'arith:order=2']);
-    expect(without.map((w) => [w.name, w.error.message])).toEqual([
+    expect(without.map((w) => [w.name, w.reason])).toEqual([
       ['arith:order=1', 'too many contexts'],
     ]);
     const faulty = () => {
       throw new TypeError('broken');
     };
     expect(() => adaptiveCeilings(input, { coderOf: faulty })).toThrow(TypeError);
+  });
+
+  it('stops after two orders in a row that need more than what is reached, and says so', () => {
+    const run: number[] = [];
+    const noting = (order: number): Coder => {
+      run.push(order);
+      return addOneCoder(0);
+    };
+    // The stand-in needs 3 bits whatever its order; 2.5 are reached already.
+    const { ceilings, without } = adaptiveCeilings(input, { best: 2.5, coderOf: noting });
+    expect(run).toEqual([0, 1]);
+    expect(ceilings).toHaveLength(3);
+    expect(without.map((w) => w.name)).toEqual(['arith:order=2', 'arith:order=3', 'arith:order=4']);
+    expect(without[0].reason).toBe(
+      'not run: arith:order=0 and arith:order=1 need more bits than what is reached already',
+    );
   });
 
   it('asks for nothing where there are no symbols', () => {
@@ -128,5 +148,24 @@ describe('adaptiveCeilings', () => {
     // The draw's own plug-in entropy lies within 0.002 of 2: five times (m − 1)/(2n ln 2), and its spread.
     expect(zero).toBeGreaterThan(2 - 0.002);
     expect(zero).toBeLessThan(2 + 100 / 20_000);
+  });
+});
+
+describe('CeilingStop', () => {
+  it('wants two lost orders in a row', () => {
+    const stop = new CeilingStop(8);
+    const rates = [7, 6, 6.5, 5.9, 6, 6.1];
+    const stopped = rates.map((bitsPerSymbol, order) => {
+      stop.note({ name: `order ${order}`, bitsPerSymbol });
+      return stop.reason !== undefined;
+    });
+    expect(stopped).toEqual([false, false, false, false, false, true]);
+    expect(stop.reason).toMatch(/order 4 and order 5 need more bits/);
+  });
+
+  it('goes on where a rate is only equalled', () => {
+    const stop = new CeilingStop(8);
+    for (let order = 0; order < 5; order++) stop.note({ name: '', bitsPerSymbol: 8 });
+    expect(stop.reason).toBeUndefined();
   });
 });

@@ -1,9 +1,9 @@
 import { describe, expect, it } from 'vitest';
 import { resolvedDifference, symbolsToResolve } from '../../src/entropy/data-needed.ts';
 import {
-  ageingOf,
   rateByTrainingSize,
   timedParts,
+  trainToTest,
 } from '../../src/entropy/data-needed-training.ts';
 import { InputError } from '../../src/errors/errors.ts';
 import { SeededGenerator } from '../../src/statistics/generator.ts';
@@ -99,11 +99,11 @@ describe('rateByTrainingSize', () => {
   it.each([0, 1, 127, 254])('has nothing to say of %i symbols', (length) => {
     const parts = timedParts(oneMessage(new Uint8Array(length), 2), undefined);
     expect(rateByTrainingSize(parts, options)).toBeUndefined();
-    if (length < 254) expect(ageingOf(parts, options)).toBeUndefined();
+    if (length < 254) expect(trainToTest(parts, options)).toBeUndefined();
   });
 });
 
-describe('ageingOf', () => {
+describe('trainToTest', () => {
   const options = { order: 0, contexts: 'running' as const };
 
   it('finds the divergence of two sources, by the closed form', () => {
@@ -116,7 +116,7 @@ describe('ageingOf', () => {
       bits('new', 100_000, () => 0.4),
       2,
     );
-    const found = ageingOf({ train, test }, options)!;
+    const found = trainToTest({ train, test }, options)!;
     expect(found.trainSymbols).toBe(50_000);
     expect(found.pricedSymbols).toBe(50_000);
     const divergence = 0.4 * Math.log2(4) + 0.6 * Math.log2(0.6 / 0.9);
@@ -128,7 +128,7 @@ describe('ageingOf', () => {
       bits('same', 100_000, () => 0.3),
       2,
     );
-    const found = ageingOf(timedParts(all, undefined), options)!;
+    const found = trainToTest(timedParts(all, undefined), options)!;
     expect(Math.abs(found.excess)).toBeLessThan(4 * found.standardError);
   });
 });

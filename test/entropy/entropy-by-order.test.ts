@@ -55,12 +55,9 @@ describe('entropyByOrder', () => {
       });
       expect(result.largestEstimable).toBe(3);
       for (const { plugIn, corrected, low, high } of result.orders) {
-        expect({ plugIn, corrected, low, high }).toEqual({
-          plugIn: 0,
-          corrected: 0,
-          low: 0,
-          high: 0,
-        });
+        expect({ plugIn, corrected, low }).toEqual({ plugIn: 0, corrected: 0, low: 0 });
+        // What another symbol may still hide behind; nothing where there is none.
+        expect(high > 0).toBe(alphabetSize > 1);
       }
     }
   });

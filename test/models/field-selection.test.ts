@@ -126,7 +126,8 @@ describe('selectFields', () => {
     };
     const total = (costs: number[]) => costs.reduce((a, b) => a + b, 0) / COST_PER_BIT;
     const map = selections.map(({ choice }, f) => `${layout.names[f]}:${fieldChoiceText(choice)}`);
-    // Each of the 3000 tokens costs at most two units of 1/65536 bit more than its logarithm; the stage loses less.
+    // Each of the 3000 tokens costs at most two units of 1/65536 bit more than its logarithm; the
+    // stage loses less.
     const slack = (2 * 3000) / COST_PER_BIT;
     expect(Math.abs(spent(map.join('+')) - total(selections.map((s) => s.cost)))).toBeLessThan(
       slack,

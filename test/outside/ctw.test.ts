@@ -24,7 +24,7 @@ describe('context-tree weighting', () => {
   );
 
   it.each(cases)('after %s, %s: the integer model costs as many bits', (past, sequence, c) => {
-    const model = new CtwModel(2, c.depth, sequence.length);
+    const model = new CtwModel(2, c.depth);
     for (const bit of past) model.see(Number(bit));
     let bits = 0;
     const symbols = Uint8Array.from(sequence, Number);

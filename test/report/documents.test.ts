@@ -3,7 +3,10 @@ import { describe, expect, it } from 'vitest';
 import { documents } from '../../src/report/documents.ts';
 
 describe('documents made from the code', () => {
-  it.each([...documents()])('docs/%s says what the code says (else: npm run docs)', (name, text) => {
-    expect(readFileSync(new URL(`../../docs/${name}`, import.meta.url), 'utf8')).toBe(text);
-  });
+  it.each([...documents()])(
+    'docs/%s says what the code says (else: npm run docs)',
+    (name, text) => {
+      expect(readFileSync(new URL(`../../docs/${name}`, import.meta.url), 'utf8')).toBe(text);
+    },
+  );
 });

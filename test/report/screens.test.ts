@@ -1,7 +1,6 @@
 import { describe, expect, it } from 'vitest';
 import type { Comparison } from '../../src/compare/compare-cells.ts';
 import { runRecordSchema } from '../../src/harness/run-record.ts';
-import { entropyScreen } from '../../src/report/entropy-screen.ts';
 import { runScreen } from '../../src/report/run-screen.ts';
 import { tryScreen } from '../../src/report/try-screen.ts';
 import { linesRecord, wholeRecord } from './sample-record.ts';
@@ -40,16 +39,6 @@ const screens: [name: string, make: (columns: number) => string][] = [
     'run',
     (columns) =>
       runScreen(linesRecord, { columns, comparisons, next: 'bitassay entropy plan.yaml' }),
-  ],
-  [
-    'entropy',
-    (columns) =>
-      entropyScreen(wholeRecord.corpora[0], wholeRecord.entropy, {
-        columns,
-        withoutCeilings: false,
-        sentenceOf: () => 'One sentence on what is estimable and what is useful.',
-        next: 'bitassay try uplink.bin',
-      }),
   ],
 ];
 

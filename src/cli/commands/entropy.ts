@@ -10,7 +10,7 @@ import { requestOf } from '../../harness/plan-request.ts';
 import { entropyScreen } from '../../report/entropy-screen.ts';
 import { CommandEnd, exitCodes } from '../exit.ts';
 import { whileInterruptible } from '../interrupt.ts';
-import { terminalColumns } from '../output.ts';
+import { terminalColours, terminalColumns, terminalShowsUnicode } from '../output.ts';
 import { addOutputOptions, type OutputOptions, writeResult } from '../output-options.ts';
 import { ProgressLine } from '../progress.ts';
 import {
@@ -24,6 +24,9 @@ import {
 interface EntropyOptions extends SourceOptions, OutputOptions {
   readonly upto: number;
   readonly rough?: boolean;
+  readonly all?: boolean;
+  readonly ascii?: boolean;
+  readonly resolve: number;
 }
 
 const isPlan = (path: string): boolean => /\.ya?ml$/i.test(path);
@@ -51,13 +54,19 @@ async function showEntropy(paths: readonly string[], options: EntropyOptions): P
   const report: EntropyReport = await whileInterruptible((interrupted) =>
     entropyReport(
       corpora,
-      { upto: options.upto, rough: options.rough === true },
+      {
+        upto: options.upto,
+        rough: options.rough === true,
+        all: options.all === true,
+        difference: options.resolve,
+      },
       {
         progress: (state) => progress.show(state),
         interrupted,
       },
     ),
   ).finally(() => progress.stop());
+  const colours = terminalColours();
   await writeResult({ corpora: report.corpora, entropy: report.entropy }, options, () =>
     report.corpora
       .map((corpus) =>
@@ -66,9 +75,13 @@ async function showEntropy(paths: readonly string[], options: EntropyOptions): P
           report.entropy.filter((e) => e.corpus === corpus.name),
           {
             columns: terminalColumns(),
+            all: options.all === true,
+            ascii: options.ascii === true || !terminalShowsUnicode(),
+            ...(colours.isColorSupported && options.output === undefined
+              ? { dim: colours.dim }
+              : {}),
             sentenceOf: (entropy) =>
               reconcileSentence(entropy.orders.map((o) => ({ ...o, useful: o.useful }))),
-            withoutCeilings: report.withoutCeilings.includes(corpus.name),
             next: isPlan(paths[0])
               ? `bitassay run ${paths[0]}`
               : `bitassay try ${paths.join(' ')}${typedOptions(options)}`,
@@ -86,7 +99,7 @@ export function registerEntropy(program: Command): void {
     .command('entropy')
     .summary('how low the rate can go: entropy by order, floor and band')
     .description(
-      'Counts the entropy of symbols given 0 to K predecessors, says which orders these data suffice for and which save bits, and sets the floor in its band.',
+      'Estimates the entropy of symbols given 0 to K predecessors, says which orders these data suffice for and which save bits, sets the floor in its band, and looks for change along the data.',
     )
     .argument(
       '<file...>',
@@ -96,8 +109,16 @@ export function registerEntropy(program: Command): void {
     .option('--upto <order>', 'highest order counted', numberOption(0, true), 4)
     .option(
       '--rough',
-      'count only: no coder is run, so no ceiling and nothing on which orders save bits',
-    );
+      'leave out what takes minutes: no coder is run, so no ceiling, and nothing on which orders save bits',
+    )
+    .option('--all', 'also other estimators, match lengths, extrapolation and blocks of symbols')
+    .option(
+      '--resolve <bits>',
+      'say how many symbols it takes to tell such a difference in bits per symbol',
+      numberOption(Number.MIN_VALUE, false),
+      0.01,
+    )
+    .option('--ascii', 'no characters beyond ASCII');
   addOutputOptions(command)
     .addHelpText(
       'after',
@@ -105,6 +126,7 @@ export function registerEntropy(program: Command): void {
 Examples:
   bitassay entropy telemetry.bin
   bitassay entropy events.log --messages lines --upto 3
+  bitassay entropy telemetry.bin --all --resolve 0.002
   bitassay entropy plan.yaml --json
   bitassay entropy large.bin --upto 2 --rough`,
     )

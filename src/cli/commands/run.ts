@@ -9,7 +9,7 @@ import { requestOf } from '../../harness/plan-request.ts';
 import { cellsOf, type RunRequest, runAll } from '../../harness/run-all.ts';
 import { writeRunFolder } from '../../harness/run-folder.ts';
 import { countText, durationText } from '../../report/figures.ts';
-import { runScreen } from '../../report/run-screen.ts';
+import { notFilledText, runScreen } from '../../report/run-screen.ts';
 import { CommandEnd, exitCodes } from '../exit.ts';
 import { whileInterruptible } from '../interrupt.ts';
 import { terminalColumns, writeStandardOutput } from '../output.ts';
@@ -65,10 +65,15 @@ async function guardCells(request: RunRequest, options: RunOptions): Promise<voi
 }
 
 async function listCellsOf(request: RunRequest, json: boolean): Promise<void> {
-  const { cells, undeclared } = cellsOf(request);
+  const { cells, undeclared, notFilled } = cellsOf(request);
   const seconds = await estimateSeconds(cells, request.corpora, request.align);
   if (json) {
-    const list = { cells: cells.map((c) => c.id), undeclared, seconds: Math.round(seconds) };
+    const list = {
+      cells: cells.map((c) => c.id),
+      undeclared,
+      ...(notFilled === 0 ? {} : { not_filled: notFilled }),
+      seconds: Math.round(seconds),
+    };
     await writeStandardOutput(`${JSON.stringify(list, null, 1)}\n`);
     return;
   }
@@ -79,6 +84,7 @@ async function listCellsOf(request: RunRequest, json: boolean): Promise<void> {
     ...(undeclared === 0
       ? []
       : [`${countText(undeclared)} combinations give no cell: the coder does not declare them.`]),
+    ...(notFilled === 0 ? [] : [notFilledText(notFilled)]),
   ];
   await writeStandardOutput(`${lines.join('\n')}\n`);
 }

@@ -42,9 +42,14 @@ const HALVES: SplitRule = { by: 'message', order: 'in_time', train: 0.5 };
 
 const collect = (value: string, before: string[]): string[] => [...before, value];
 
+const isFill = (options: TryOptions) => /^\s*fill\b/.test(options.messages);
+
 function policiesFor(options: TryOptions): readonly TablePolicy[] {
   if (options.tables.length > 0) return options.tables;
-  return options.messages === 'whole' ? ['sent', 'learned'] : ['shipped', 'sent', 'learned'];
+  if (options.messages === 'whole') return ['sent', 'learned'];
+  // Tables that are sent anew in each packet would be tried at every length of it.
+  if (isFill(options)) return ['shipped', 'learned'];
+  return ['shipped', 'sent', 'learned'];
 }
 
 async function tryFiles(files: readonly string[], options: TryOptions): Promise<void> {
@@ -61,7 +66,9 @@ async function tryFiles(files: readonly string[], options: TryOptions): Promise<
   const candidates = (options.coder.length > 0 ? options.coder : USUAL_CANDIDATES).flatMap(
     parseCandidates,
   );
-  const rule = trains ? HALVES : undefined;
+  const rule: SplitRule | undefined = trains
+    ? { ...HALVES, by: isFill(options) ? 'unit' : 'message' }
+    : undefined;
   const name = files.length === 1 ? basename(files[0]).replace(/[^A-Za-z0-9._-]/g, '_') : 'files';
   const corpus = await loadCorpusData(specFromOptions(name, files, options), process.cwd(), rule);
   const request: RunRequest = {
@@ -94,7 +101,11 @@ async function tryFiles(files: readonly string[], options: TryOptions): Promise<
 
 function nextCommand(files: readonly string[], options: TryOptions, whole: boolean): string {
   const names = files.map((file) => (/[^\w./-]/.test(file) ? `'${file}'` : file)).join(' ');
-  if (whole) return `bitassay try ${names}${typedOptions(options, 'every=192')}`;
+  if (whole) {
+    const { record } = options;
+    const messages = record === undefined ? 'every=192' : `fill=192,unit=${record}`;
+    return `bitassay try ${names}${typedOptions(options, messages)}`;
+  }
   return `bitassay entropy ${names}${typedOptions(options)}`;
 }
 
@@ -117,7 +128,7 @@ export function registerTry(program: Command): void {
     .addOption(
       new Option('--tables <policy...>', 'where a coder’s knowledge comes from')
         .choices(['shipped', 'sent', 'learned', 'primed'])
-        .default([], 'sent, learned; with messages also shipped'),
+        .default([], 'sent, learned; with messages also shipped; with fill shipped, learned'),
     )
     .addOption(
       new Option('--reset <when...>', 'when an adaptive coder forgets')
@@ -138,6 +149,7 @@ Examples:
   bitassay try telemetry.bin
   bitassay try events.log --messages lines
   bitassay try uplink.bin --record 24 --messages records=8 --coder huffman --coder arith:order=0..3
+  bitassay try uplink.bin --messages fill=192,unit=24
   bitassay try positions.csv --symbols csv:speed_knots --step 0.1
   bitassay try *.log --json -o first-look.json`,
     )
