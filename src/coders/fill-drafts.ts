@@ -106,10 +106,7 @@ export class WordDraft implements MessageDraft {
   }
 
   addedBits(symbols: SymbolArray, from: number, to: number): number {
-    const words = this.#words;
-    let bits = 0;
-    for (let i = from; i < to; i++) bits += words.lengthOf(symbols[i]);
-    return bits;
+    return this.#words.bitsOf(symbols, from, to);
   }
 
   contentBits(): number {

@@ -104,7 +104,7 @@ class MessageFiller {
     const unit = this.#next;
     for (;;) {
       const room = this.#budgetBits - draft.contentBits();
-      const guess = Math.floor((this.#trust * room) / this.#unitBits) - 1;
+      const guess = Math.floor((this.#trust * room) / this.#unitBits);
       const next = this.#next + guess;
       if (guess < 2 || next > ends.length) return;
       const to = ends[next - 1];

@@ -76,7 +76,11 @@ export function correctedInterval(
   };
 }
 
-/** The largest distance that the width at that distance still reaches; the search begins where nothing is reached. */
+/**
+ * The largest distance that the width at that distance still reaches. There is one: the width is above 0 at distance 0, and
+ * its square grows at most linearly.
+ * @param furthest  no width is larger
+ */
 function endAt(widthAt: (distance: number) => number, furthest: number): number {
   let reached = 0;
   let missed = furthest * (1 + 1e-9);

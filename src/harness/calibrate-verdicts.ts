@@ -1,9 +1,9 @@
 import type { CalibrationVerdict, IntervalLine } from './calibrate-record.ts';
 
 /** Least share of trusted 95 % intervals that must hold the truth. */
-export const LEAST_COVERAGE = 0.85;
+const LEAST_COVERAGE = 0.85;
 /** Most of them that may, where an interval has no reason to be wider than it says. */
-export const MOST_COVERAGE = 0.99;
+const MOST_COVERAGE = 0.99;
 /** Fewest repetitions that tell 99 % from 100 %. */
 const FEWEST_FOR_MOST = 200;
 /** False alarms allowed, as a share of runs; and how improbable under it a count must be to be held against it. */

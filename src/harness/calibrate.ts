@@ -20,7 +20,7 @@ import { toolVersion } from './environment.ts';
 import { Interrupted, pauseWith, type RunHooks } from './pause.ts';
 
 /** All stretches are drawn from this, the source's name, the length and the number of the repetition. */
-export const CALIBRATION_SEED = 'bitassay calibrate, stretches, 1';
+const CALIBRATION_SEED = 'bitassay calibrate, stretches, 1';
 
 /** The seed of one stretch. */
 export function stretchSeed(source: string, symbolCount: number, repetition: number): string {

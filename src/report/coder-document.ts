@@ -1,5 +1,6 @@
 import type { Declaration } from '../coders/contract.ts';
 import type { ParameterDeclaration } from '../coders/parameters.ts';
+import { transformFamilies } from '../transforms/registry.ts';
 
 function parameterRow(parameter: ParameterDeclaration): string {
   const values =
@@ -52,6 +53,17 @@ export function coderDocument(declarations: readonly Declaration[]): string {
     '',
     'Made from the registry by `npm run docs`; do not edit. A candidate is written `name` or `name:key=value,key=value`; a whole',
     'number may be a range, `arith:order=0..4`.',
+    '',
+    '## Keys of every coder',
+    '',
+    '| key | values | default | what it sets |',
+    '|---|---|---|---|',
+    '| `stored` | `on`, `off` | `off` | `on`: a message is sent raw where that is shorter; one selector bit a message, booked in `index`. |',
+    '| `after` | steps, joined by dots | none | Reversible steps before the coder, read left to right, as in `after=delta.zigzag`. |',
+    '',
+    'Steps of `after`:',
+    '',
+    ...transformFamilies.map(({ word, summary }) => `- \`${word}\`: ${summary}`),
     '',
     ...declarations.flatMap(section),
   ].join('\n');

@@ -50,6 +50,8 @@ const ASCII: Marks = {
 
 /** Marks of the scale above the plot. */
 const SCALE_MARKS = 5;
+/** The scale ends no lower, in bits: below it rates are all shown at 0. */
+const LEAST_SCALE = 0.001;
 
 /**
  * Rates as rows of marks over one scale from 0 bits: filled points with their bands, open points for what is not to be
@@ -61,7 +63,7 @@ export function ratePlot(rows: readonly PlotRow[], options: PlotOptions): string
   const labelWidth = Math.max(...rows.map((row) => [...row.label].length), 'ceiling'.length);
   const cells = Math.max(20, width - labelWidth - 3);
   const most = Math.max(
-    Number.MIN_VALUE,
+    LEAST_SCALE,
     ceiling?.rate ?? 0,
     ...rows.map((row) => Math.max(row.point, row.faint ? 0 : (row.high ?? 0))),
   );

@@ -21,7 +21,7 @@ interface TransformFamily {
 }
 
 /** Every step there is. */
-const transformFamilies: readonly TransformFamily[] = [
+export const transformFamilies: readonly TransformFamily[] = [
   { word: 'delta', summary: 'difference to the symbol before, modulo m', create: () => delta },
   {
     word: 'delta2',

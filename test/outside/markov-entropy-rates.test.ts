@@ -73,7 +73,7 @@ describe.each(chains)('$name', ({ source, rate }) => {
   });
 });
 
-it('the simple interval of an estimable order holds the rate about as often as it says', () => {
+it('the interval of an estimable order holds the rate about as often as it says', () => {
   const { source, rate } = chains.find((chain) =>
     chain.name.startsWith('two states, 0.1 and 0.3'),
   )!;

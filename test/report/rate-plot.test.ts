@@ -65,3 +65,11 @@ describe('heightRow', () => {
     expect(heightRow([1, 2], false)).toBe('▁█');
   });
 });
+
+describe('the scale', () => {
+  it.each([0, Number.MIN_VALUE, 1e-300])('ends where rates of %d do not', (rate) => {
+    const [scale, line] = ratePlot([row('order 0', rate)], { width: 40, ascii: true });
+    expect(scale.trim()).toMatch(/^0 +0\.000[25]/);
+    expect(line).toBe(' order 0 |*');
+  });
+});
