@@ -26,6 +26,8 @@ const CEILING_ORDER = 4;
 /** Entropies are counted at least up to this order, and no further than the second. */
 const LEAST_ORDER = 4;
 const MOST_ORDER = 6;
+/** Beside cells, context-tree weighting is run only on so many symbols: it takes about 15 µs for each. */
+const MOST_CTW_SYMBOLS = 2 ** 18;
 
 interface ScopedFloor {
   readonly entropy: EntropyByOrder;
@@ -120,7 +122,8 @@ export class CorpusFloors {
       }
     }
     const ceilings = [...ceilingsOf(results, this.#corpus)];
-    await this.build({ scopes, upto, useful: false, ceilings, run }, pause);
+    const ctw = run && this.#corpus.test.symbols.length <= MOST_CTW_SYMBOLS;
+    await this.build({ scopes, upto, useful: false, ceilings, run, ctw }, pause);
   }
 
   /**

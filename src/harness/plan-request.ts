@@ -11,7 +11,7 @@ const TIMING_SECONDS = 0.25;
  * The candidates of a plan, ranges opened.
  * @throws InputError that names the line of a candidate that cannot be read
  */
-export function candidatesOf(plan: Plan): Candidate[] {
+function candidatesOf(plan: Plan): Candidate[] {
   return plan.candidates.flatMap((text, i) => {
     try {
       return parseCandidates(text);
@@ -27,7 +27,7 @@ export function candidatesOf(plan: Plan): Candidate[] {
 }
 
 /** Whether any cell of the plan is trained, so that all cells are coded on the test part. */
-export function trains(plan: Plan, candidates: readonly Candidate[]): boolean {
+function trains(plan: Plan, candidates: readonly Candidate[]): boolean {
   return candidates.some(({ declaration }) =>
     declaration.policies.some(
       (policy) => (policy === 'shipped' || policy === 'primed') && plan.tables.includes(policy),

@@ -203,7 +203,8 @@ export function entropyScreen(
 ): string {
   const { columns, ascii } = options;
   const noun = symbolNoun(corpus.symbols_as);
-  const messages = corpus.message_count === 1 ? 'message' : 'messages';
+  const thing = corpus.unit_count === undefined ? 'message' : 'unit';
+  const messages = corpus.message_count === 1 ? thing : `${thing}s`;
   const alphabet =
     corpus.alphabet_size === undefined ? '' : `, alphabet of ${countInText(corpus.alphabet_size)}`;
   const lines: string[] = paragraph(
