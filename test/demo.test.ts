@@ -74,7 +74,7 @@ function bestOf(result: RunResult, select: (id: string) => boolean): string {
   return cells.reduce((a, b) => (b.rate! < a.rate! ? b : a)).id.slice('demo/'.length);
 }
 
-const families = ['huffman', 'block-huffman:n=2', 'arith:order=0..4'];
+const families = ['huffman', 'block-huffman:n=2', 'arith:order=0..6'];
 
 describe('kept as whole files', () => {
   // One block of 2048 bytes is one message here, and nothing resets: the same code as for a whole file, but with bits by

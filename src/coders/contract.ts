@@ -178,6 +178,8 @@ export interface Declaration {
   readonly needsWholeMessage: boolean;
   /** A general-purpose coder shown for scale; never a pick, its bits never gated. */
   readonly reference: boolean;
+  /** Codes only corpora whose symbols are the bytes of records; elsewhere it has no cell. */
+  readonly needsRecord?: boolean;
   /** Largest alphabet, in symbols. */
   readonly maxAlphabetSize: number;
   /** Longest a message of n symbols can become, in words and symbols. */

@@ -10,6 +10,7 @@ export const fieldsDeclaration: Declaration = {
   name: 'fields',
   summary:
     'Each field of a fixed record under a transform and tables of its own, all in one code string.',
+  needsRecord: true,
   parameters: [
     {
       key: 'choice',

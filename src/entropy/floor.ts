@@ -89,7 +89,9 @@ export function floorOf({
 
 function methodOf(lowest: Ceiling, order: number, estimated: boolean, beyond: boolean): string {
   if (estimated && !beyond) return `corrected entropy of order ${order} (Miller–Madow)`;
-  const giver = estimated ? 'match lengths' : `what ${lowest.name} reaches`;
+  const giver = estimated
+    ? 'match lengths, flagged (their interval holds chance, not bias)'
+    : `what ${lowest.name} reaches`;
   return `${giver}, below the corrected entropy of order ${order}`;
 }
 

@@ -28,9 +28,16 @@ function policiesOf(candidate: Candidate, asked: readonly TablePolicy[]): TableP
   return asked.filter((policy) => declared.includes(policy));
 }
 
+/** Names of corpora that differ in what cells they can have. */
+export interface CorpusTraits {
+  /** Messages are filled to a budget. */
+  readonly filled?: ReadonlySet<string>;
+  /** Symbols are the bytes of records. */
+  readonly records?: ReadonlySet<string>;
+}
+
 /**
  * Every cell of the given corpora and candidates, candidates within corpora, in the order given.
- * @param filled  names of corpora whose messages are filled
  * @throws InputError for a candidate that has no cell at all, or that stands twice in the list
  */
 export function listCells(
@@ -38,7 +45,7 @@ export function listCells(
   candidates: readonly Candidate[],
   policies: readonly TablePolicy[],
   resets: readonly Reset[],
-  filled: ReadonlySet<string> = new Set(),
+  { filled = new Set(), records = new Set() }: CorpusTraits = {},
 ): CellList {
   const cells: Cell[] = [];
   let undeclared = 0;
@@ -51,6 +58,11 @@ export function listCells(
   }
   for (const corpus of corpora) {
     for (const candidate of candidates) {
+      // A coder of records is for the corpora that have them, if any of the plan has.
+      if (candidate.declaration.needsRecord && records.size > 0 && !records.has(corpus)) {
+        undeclared += policies.length * resets.length;
+        continue;
+      }
       const used = policiesOf(candidate, policies);
       if (!candidate.declaration.policies.includes('none')) {
         undeclared += (policies.length - used.length) * resets.length;

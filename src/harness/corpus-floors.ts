@@ -62,8 +62,9 @@ export interface FloorOptions {
 }
 
 /**
- * What verified cells reach with contexts that never forget, in bits per symbol: ideal + tables + index, or all carried
- * bits where a coder has no ideal. Named by candidate; only a `learned` one takes the place of a ceiling run.
+ * What verified cells reach, in bits per symbol: ideal + tables + index, or all carried bits where a coder has no ideal. Any
+ * code that can be decoded bounds the entropy rate from above, whatever its tables and resets. Named by candidate; only a
+ * `learned` one that never resets takes the place of a ceiling run.
  */
 function ceilingsOf(results: readonly (CellBits | CellFailure)[], corpus: CorpusData): Ceiling[] {
   const { test } = corpus;
@@ -72,11 +73,11 @@ function ceilingsOf(results: readonly (CellBits | CellFailure)[], corpus: Corpus
     if ('failure' in result) continue;
     const { cell, totals } = result;
     const neverResets = cell.reset === 'never' || test.messageEnds.length <= 1;
-    if (!neverResets || cell.policy === 'shipped') continue;
     const { idealBits, tableBits, indexBits, carriedBits } = totals;
     const bits = idealBits === undefined ? carriedBits : idealBits + tableBits + indexBits;
+    const { policy, reset, candidate } = cell;
     const name =
-      cell.policy === 'learned' ? cell.candidate.id : `${cell.candidate.id}@${cell.policy}`;
+      policy === 'learned' && neverResets ? candidate.id : `${candidate.id}@${policy}/${reset}`;
     ceilings.push({ name, bitsPerSymbol: bits / test.symbols.length });
   }
   return ceilings;

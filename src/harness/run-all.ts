@@ -53,12 +53,13 @@ export function cellsOf(request: RunRequest): {
   notFilled: number;
 } {
   const filled = request.corpora.filter((c) => c.fill !== undefined).map((c) => c.name);
+  const records = request.corpora.filter((c) => c.record !== undefined).map((c) => c.name);
   const { cells, undeclared, notFilled } = listCells(
     request.corpora.map((c) => c.name),
     request.candidates,
     request.policies,
     request.resets,
-    new Set(filled),
+    { filled: new Set(filled), records: new Set(records) },
   );
   const { only } = request;
   return {

@@ -104,7 +104,7 @@ export function furtherNotes(entropy: EntropyRecord, noun: string): string[] {
   if (matches !== undefined) {
     notes.push(
       matches.valid
-        ? `Match lengths, an estimate: ${rateText(matches.rate)} bits/${noun} (${rateText(matches.low)} to ${rateText(matches.high)}), ${matches.reason}; ${rateText(matches.published)} before its bias is taken out. LZ76 components, an estimate whose bias is left in: ${rateText(matches.lempel_ziv)}.`
+        ? `Match lengths, an estimate: ${rateText(matches.rate)} bits/${noun} (${rateText(matches.low)} to ${rateText(matches.high)}), ${matches.reason}; ${rateText(matches.published)} before its bias is taken out. Flagged: that interval holds chance, not what is left of the bias, and may miss. LZ76 components, an estimate whose bias is left in: ${rateText(matches.lempel_ziv)}.`
         : `Match lengths give no estimate here: ${matches.reason}.`,
     );
   }

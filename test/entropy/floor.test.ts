@@ -65,7 +65,8 @@ describe('floorOf', () => {
         point: 2,
         low: 1.8,
         high: 8,
-        method: 'match lengths, below the corrected entropy of order 2',
+        method:
+          'match lengths, flagged (their interval holds chance, not bias), below the corrected entropy of order 2',
         cut: false,
         order: 2,
       });

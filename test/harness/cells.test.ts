@@ -47,6 +47,14 @@ describe('cells', () => {
     ]);
   });
 
+  it('of a coder of records stand where there are records, if anywhere there are', () => {
+    const list = (records: ReadonlySet<string>) =>
+      listCells(['a', 'b'], candidates('fields:auto'), ['shipped'], ['message'], { records }).cells;
+    expect(list(new Set(['b'])).map((cell) => cell.corpus)).toEqual(['b']);
+    // Without any, the cells stand and say what they lack.
+    expect(list(new Set()).map((cell) => cell.corpus)).toEqual(['a', 'b']);
+  });
+
   it('refuse a candidate that has none, and one listed twice', () => {
     expect(() => listCells(['a'], candidates('huffman'), ['learned'], ['message'])).toThrow(
       InputError,

@@ -114,7 +114,7 @@ describe('cells of filled corpora', () => {
       parseCandidates('arith:order=0'),
       ['shipped', 'sent', 'learned'],
       ['message', 'file', 'never', 'message*8'],
-      new Set(['filled']),
+      { filled: new Set(['filled']) },
     );
     expect(cells.filter((c) => c.corpus === 'filled').map((c) => c.id)).toEqual([
       'filled/arith:order=0@shipped/message',
@@ -127,7 +127,9 @@ describe('cells of filled corpora', () => {
 
   it('are missed by a candidate that has none', () => {
     const none = () =>
-      listCells(['a'], parseCandidates('arith:order=0'), ['learned'], ['never'], new Set(['a']));
+      listCells(['a'], parseCandidates('arith:order=0'), ['learned'], ['never'], {
+        filled: new Set(['a']),
+      });
     expect(none).toThrow(InputError);
     try {
       none();

@@ -51,6 +51,13 @@ describe.each(['moby.txt', 'brown-words.txt'])('%s in 27 symbols', (name) => {
     }
   });
 
+  it('prints its figures beside Brown and others 1992, as a sanity line and no law', () => {
+    const of = (rate: number): string => rate.toFixed(2);
+    const line = `${name} in 27 symbols: estimate ${of(matches.bitsPerSymbol)}, bound ${of(floor.high)} bits a letter; Brown and others 1992: ${BROWN}`;
+    console.info(line);
+    expect(line).not.toMatch(/NaN|Infinity/);
+  });
+
   it('has a floor between the two', () => {
     expect(floor.low).toBeGreaterThan(SHANNON_LOWER);
     expect(floor.point).toBeLessThan(floor.high);
