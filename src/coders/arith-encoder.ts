@@ -24,7 +24,7 @@ export const continuationOf = (lengths: Lengths): 'zeros' | 'any' =>
   lengths === 'link' ? 'zeros' : 'any';
 
 /** Codes messages one after another: count, table if sent, code string, padding. */
-export class ArithMessages implements PieceSink {
+class ArithMessages implements PieceSink {
   readonly writer = new BitWriter();
   readonly ledger: MessageLedger;
   readonly #settings: ArithSettings;
