@@ -317,7 +317,7 @@ describe('bad use and bad input', () => {
     ],
     [
       'a key that is not built yet',
-      () => ['try', put('x.txt', 'abc'), '--coder', 'huffman:after=delta'],
+      () => ['try', put('x.txt', 'abc'), '--coder', 'huffman:lanes=2'],
       /not built yet/,
     ],
     ['an unknown option', () => ['try', put('x.txt', 'abc'), '--mesages', 'lines'], /--messages/],
