@@ -167,7 +167,7 @@ function refuseOutsideMap(raw: RawCorpus, index: number, map: AlphabetMap): neve
       advice:
         map.kind === 'texts'
           ? 'Split with order: random, or use a larger share for train.'
-          : 'Give alphabet: N in the plan, split with order: random, or use a larger share for train.',
+          : 'Give alphabet: N in the plan (--alphabet N), split with order: random, or use a larger share for train.',
     },
   );
 }

@@ -1,5 +1,6 @@
 import type { CellRecord, CorpusRecord, EntropyRecord, RunRecord } from '../harness/run-record.ts';
 import { cellTable } from './cell-table.ts';
+import { delayNote } from './cost-lines.ts';
 import { fieldLines } from './field-lines.ts';
 import {
   countText,
@@ -12,6 +13,7 @@ import {
   wrapText,
 } from './figures.ts';
 import { bestCell, cellPhrase, cellsOfCorpus, entropyOf, floorRateOf } from './floor-lines.ts';
+import { tableSetLines } from './table-set-lines.ts';
 
 export interface SectionOptions {
   readonly columns: number;
@@ -20,9 +22,12 @@ export interface SectionOptions {
 }
 
 function floorRemark({ floor }: EntropyRecord, decimals: number): string {
-  const enough = floor.cut
-    ? `order ${floor.order} is not enough for this source`
-    : `order ${floor.order} is estimable`;
+  const enough =
+    floor.order < 0
+      ? 'no order is estimable from so few symbols of so large an alphabet'
+      : floor.cut
+        ? `order ${floor.order} is not enough for this source`
+        : `order ${floor.order} is estimable`;
   if (floor.low === floor.high) {
     return `the lowest that a coder reached; the true one may be lower, since ${enough}`;
   }
@@ -106,6 +111,9 @@ function remarks(record: RunRecord, corpus: CorpusRecord): string[] {
       `Each message holds as many whole units as fit into ${countText(corpus.fill_bytes)} coded bytes, all counted, so each candidate cuts messages of its own. A flipped bit can spoil a whole message and all its units; the link's own protection and your standards decide whether that is tolerable.`,
     );
   }
+  notes.push(...tableSetLines(cells, symbolNoun(corpus.symbols_as)));
+  const delay = delayNote(cells, corpus);
+  if (delay !== undefined) notes.push(delay);
   const reference = cells.find((c) => c.reference && best !== undefined && c.rate! < best.rate!);
   if (reference !== undefined) {
     notes.push(
@@ -181,6 +189,7 @@ export function corpusSection(
       columns,
       noun: symbolNoun(corpus.symbols_as),
       floorOf: (cell) => floorRateOf(record, cell),
+      ...(record.plan.product === undefined ? {} : { device: record.plan.product.device }),
       ...(options.markOf === undefined ? {} : { markOf: (cell) => options.markOf!(cell.id) }),
     }),
     '',
