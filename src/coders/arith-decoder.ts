@@ -71,10 +71,10 @@ function readTable(
   stage: RangeDecoder,
 ): SymbolModel {
   const { alphabetSize } = setup;
-  const { order } = settings;
+  const { order, positions } = settings;
   if (alphabetSize === 1) return new OneSymbol();
   stage.begin();
-  const tree = readSentTable(alphabetSize, order, maxPairs, stage);
+  const tree = readSentTable(alphabetSize, order, maxPairs, stage, positions);
   reader.seek(stage.end('any'));
   const bits = settings.totalBits(alphabetSize);
   return new StaticModel(compileTable(tree, order, 'none', { bits }));

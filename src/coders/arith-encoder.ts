@@ -44,7 +44,7 @@ class ArithMessages implements PieceSink {
     } else if (setup.policy !== 'sent') {
       this.#model = adaptiveModelFor(settings, setup);
     } else if (setup.reset === 'message') {
-      this.#ownPairs = new PairTree(setup.alphabetSize, settings.order);
+      this.#ownPairs = new PairTree(setup.alphabetSize, settings.order, settings.positions);
     } else {
       this.#tableIsDue = true;
     }

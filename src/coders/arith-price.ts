@@ -11,15 +11,15 @@ import type { Price, Setup } from './contract.ts';
 
 /**
  * Code lengths by the same model code as the encoder's, into a meter; static tables enter with their raw counts instead
- * of quantised frequencies.
+ * of quantised frequencies. Without a fit where contexts know positions, so that learning and structure are booked as one.
  */
 export function arithPrice(settings: ArithSettings, sequence: SymbolSequence, setup: Setup): Price {
   const { symbols, messageEnds, alphabetSize } = sequence;
-  const { order } = settings;
+  const { order, positions } = settings;
   const meter = new Meter();
   const ownPairs =
     setup.policy === 'sent' && setup.reset === 'message'
-      ? new PairTree(alphabetSize, order)
+      ? new PairTree(alphabetSize, order, positions)
       : undefined;
   let model = ownPairs === undefined ? pricedModel(settings, setup) : undefined;
   const messageIdealBits = new Float64Array(messageEnds.length);
@@ -41,6 +41,8 @@ export function arithPrice(settings: ArithSettings, sequence: SymbolSequence, se
   }
   // The model's memory may go before the counting takes its own.
   model = undefined;
+  // Whether one distribution for each context and position is estimable, entropy by order alone cannot judge.
+  if (positions > 1) return { idealBits, messageIdealBits };
   const bits = empiricalLengthBits(sequence, order, startsAtMessages(setup));
   return { idealBits, messageIdealBits, fit: { bits, of: { order } } };
 }

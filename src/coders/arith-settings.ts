@@ -24,6 +24,15 @@ export const arithDeclaration: Declaration = {
       summary: 'symbols before that are the context',
     },
     {
+      key: 'position',
+      kind: 'integer',
+      min: 1,
+      max: 65_536,
+      standard: 1,
+      summary:
+        'record length N: contexts also know the index in the message modulo N, kept when backing off; 1: they do not',
+    },
+    {
       key: 'backoff',
       kind: 'word',
       words: ['c', 'none'],
@@ -78,7 +87,7 @@ export const arithDeclaration: Declaration = {
   maxAlphabetSize: 65_536,
   worstCase: 'learned: about (k + 2) · 22 bits a symbol and 2 bits a message beside the tables',
   memory:
-    'about 25 bytes a context met and 4 to 8 a further symbol of it, at most 900 MiB; sent with reset message: the message too',
+    'about 25 bytes a context met and 4 to 8 a further symbol of it, at most 900 MiB; learned and primed also 33 bytes a symbol of the alphabet for each position met; sent with reset message: the message too',
   source:
     'G. N. N. Martin 1979; A. Moffat 1990 (method C); R. Krichevsky, V. Trofimov 1981; J. G. Cleary, I. H. Witten 1984',
 };
@@ -86,6 +95,8 @@ export const arithDeclaration: Declaration = {
 /** A candidate's parameters, and the choices that follow from them for an alphabet. */
 export class ArithSettings {
   readonly order: number;
+  /** N: contexts know the position modulo N. */
+  readonly positions: number;
   readonly rangeBits: RangeBits;
   readonly unseen: Unseen;
   /** Undefined: back-off. */
@@ -96,6 +107,7 @@ export class ArithSettings {
   /** Throws InputError where parameters contradict one another. */
   constructor(values: ParameterValues) {
     this.order = Number(values['order']);
+    this.positions = Number(values['position']);
     this.rangeBits = values['range'] === '32' ? 32 : 48;
     if (values['backoff'] === 'c' && values['counts'] !== 'kt') {
       throw new InputError('arith: counts= means nothing with back-off', {
@@ -134,8 +146,8 @@ export class ArithSettings {
   newModel(alphabetSize: number): AdaptiveModel {
     const halveAt = this.halveAt(alphabetSize);
     return this.added === undefined
-      ? new BackOffModel(alphabetSize, this.order, halveAt)
-      : new AdditiveModel(alphabetSize, this.order, this.added, halveAt);
+      ? new BackOffModel(alphabetSize, this.order, halveAt, this.positions)
+      : new AdditiveModel(alphabetSize, this.order, this.added, halveAt, this.positions);
   }
 
   /** Throws InputError when the setup cannot work with these parameters. */

@@ -36,19 +36,20 @@ export function tablesFor<P extends ArithTables['policy']>(
 /** A trainer for the policies that have tables. */
 export function arithTrainer(settings: ArithSettings, setup: Setup): Trainer {
   const { policy, alphabetSize } = setup;
+  const { order, positions } = settings;
   if (policy === 'primed') return primedTrainer(settings, setup);
   const startAtMessages = policy === 'shipped' || setup.reset === 'message';
   const trainer =
     setup.fill === undefined
-      ? new PairTrainer(alphabetSize, settings.order, startAtMessages)
-      : new UnitPairTrainer(alphabetSize, settings.order);
+      ? new PairTrainer(alphabetSize, order, startAtMessages, positions)
+      : new UnitPairTrainer(alphabetSize, order, positions);
   return {
     push: (chunk) => trainer.push(chunk),
     finish: (): ArithTables => {
       const { pairs } = trainer;
       if (policy === 'sent') return { coder: 'arith', policy, pairs };
       const bits = settings.totalBits(alphabetSize);
-      const table = compileTable(pairs.tree, settings.order, settings.unseen, { bits });
+      const table = compileTable(pairs.tree, order, settings.unseen, { bits });
       return { coder: 'arith', policy: 'shipped', pairs, table };
     },
   };

@@ -5,6 +5,8 @@ import { MOST_NGRAMS, ngramSpace } from './block-huffman-ngrams.ts';
 import { priceBlocks } from './block-huffman-price.ts';
 import { blockTables, blockTrainer, describeBlocks } from './block-huffman-tables.ts';
 import type { Coder, CoderEntry, Declaration, Setup, Tables } from './contract.ts';
+import { blockCosts } from './cost-blocks.ts';
+import { PREFIX_WINDOW_BYTES } from './cost-prefix.ts';
 import { symbolWidth } from './fixed.ts';
 import type { ParameterValues } from './parameters.ts';
 
@@ -120,6 +122,13 @@ function createBlock(values: ParameterValues): Coder {
       const shipped = setup.policy === 'shipped' ? readerOf(setup) : undefined;
       return blockDecoder(setup, limits, n, maxBits, shipped);
     },
+
+    costs: (setup) =>
+      setup.policy === 'shipped'
+        ? blockCosts(fitBlocks(blockTables(setup, n), setup, maxBits), n, setup.alphabetSize)
+        : undefined,
+
+    decoderHolds: () => PREFIX_WINDOW_BYTES,
 
     price: (sequence, setup) => priceBlocks(sequence, setup, n),
 

@@ -6,12 +6,14 @@ import { filling } from './fill.ts';
 import { type ParameterValues, resolveParameters, writeParameters } from './parameters.ts';
 import { coderEntries } from './registry.ts';
 import { stored } from './stored.ts';
+import { MOST_TABLES, tableSet } from './table-set.ts';
 import { transformed } from './transformed.ts';
 
 /** A coder with all parameters set, and its stable name. */
 export interface Candidate {
   /**
-   * `name` or `name:key=value,…`, parameters in declared order, defaults left out; then `stored=on` and, last, `after=`.
+   * `name` or `name:key=value,…`, parameters in declared order, defaults left out; then `tables_in_set=`, `stored=on` and, last,
+   * `after=`.
    */
   readonly id: string;
   /** Of this very coder: its parameters can narrow what the registry's entry declares. */
@@ -21,11 +23,11 @@ export interface Candidate {
   create(): Coder;
 }
 
-/** Keys that every coder takes, besides its own: raw messages where they are shorter, and steps before the coder. */
-const COMMON_KEYS = ['stored', 'after'];
+/** Keys that every coder takes besides its own: several shipped tables, raw messages where shorter, steps before it. */
+const COMMON_KEYS = ['tables_in_set', 'stored', 'after'];
 
 /** Names of keys that a later version will understand, for every coder. */
-const LATER_KEYS = ['tables_in_set', 'stage', 'lanes', 'refresh', 'position'];
+const LATER_KEYS = ['stage', 'lanes', 'refresh'];
 
 /** The registry entry of that name. Throws InputError with the nearest name. */
 export function coderEntryOf(name: string): CoderEntry {
@@ -141,17 +143,20 @@ export function parseCandidate(text: string): Candidate {
 /** The candidate of an entry and the texts of its keys. */
 function candidateOf(entry: CoderEntry, given: Readonly<Record<string, string>>): Candidate {
   const { name, parameters } = entry.declaration;
-  const { after, stored: storedText, ...own } = given;
+  const { after, stored: storedText, tables_in_set: tablesText, ...own } = given;
   const values = resolveParameters(name, parameters, own, COMMON_KEYS);
   const chain = after === undefined ? undefined : parseTransformChain(after);
   const keepsRaw = storedText !== undefined && parseStored(name, storedText);
+  const tableCount = tablesText === undefined ? undefined : parseTableCount(name, tablesText);
   const create = () => {
     let coder = entry.create(values);
     if (chain !== undefined) coder = transformed(coder, chain);
+    if (tableCount !== undefined) coder = tableSet(coder, tableCount);
     // Outside of the steps, so that a raw message is the product's own symbols.
     return filling(keepsRaw ? stored(coder) : coder);
   };
   const common = {
+    ...(tableCount === undefined ? {} : { tables_in_set: tableCount }),
     ...(keepsRaw ? { stored: 'on' } : {}),
     ...(chain === undefined ? {} : { after: chain.name }),
   };
@@ -173,6 +178,17 @@ function parseStored(coder: string, text: string): boolean {
     coder,
     key: 'stored',
     expected: 'on | off',
+    got: text,
+  });
+}
+
+function parseTableCount(coder: string, text: string): number {
+  const count = Number(text);
+  if (/^\d+$/.test(text) && count >= 1 && count <= MOST_TABLES) return count;
+  throw new InputError(`${coder}: the value of tables_in_set is not allowed`, {
+    coder,
+    key: 'tables_in_set',
+    expected: `an integer from 1 to ${MOST_TABLES}`,
     got: text,
   });
 }

@@ -1,5 +1,6 @@
 import type { RecordShape } from '../symbols/record.ts';
 import type { SymbolChunk, SymbolSequence } from '../symbols/sequence.ts';
+import type { BothEnds, EndCost, EndOperations } from './cost.ts';
 import type { ParameterDeclaration, ParameterValues } from './parameters.ts';
 
 /** Where a coder's knowledge comes from; `none` for coders that need no tables and keep no state between messages. */
@@ -56,7 +57,7 @@ export interface Setup {
   readonly fields?: Readonly<Record<string, string>>;
 }
 
-/** Exact integers, in bits, summed over messages; `payloadBits` is the one real number (see DESIGN of the account). */
+/** Exact integers, in bits, summed over messages; `payloadBits` is the one real number (docs/account.md). */
 export interface IntegerAccount {
   /** Code words, or whole bytes shifted out of an arithmetic coder. */
   writtenBits: number;
@@ -99,9 +100,9 @@ export interface CodedInput {
   /** Only under `known`. */
   readonly symbolCounts?: Uint32Array;
   /**
-   * Only under `known`, from a coder that wraps this one and puts bits of its own between the messages. Called for each
-   * message in turn, before anything of it is read, with the bit where the message before it ended (0 at first); gives the
-   * bit where this one starts, and may set its entry of `symbolCounts`.
+   * Only from a coder that wraps this one and puts bits of its own between the messages. Called for each message in turn,
+   * before anything of it is read, with the bit where the message before it ended (0 at first); gives the bit where this one
+   * starts, and may, under `known`, set its entry of `symbolCounts`.
    */
   readonly startOf?: (messageIndex: number, endBits: number) => number;
 }
@@ -211,6 +212,15 @@ export interface Coder {
   decoder(setup: Setup, limits: DecodeLimits): Decoder;
   /** Absent for coders that have no probabilities (references). `sequence` is one whole unit. */
   price?(sequence: SymbolSequence, setup: Setup): Price;
+  /**
+   * What each end would take on a device. Absent, or undefined under this setup: no exported form is known.
+   * @param longestCodedBytes  coded bytes of the longest message
+   */
+  costs?(setup: Setup, longestCodedBytes: number): BothEnds<EndCost> | undefined;
+  /** Operations of each end, counted over one whole unit in a pass of its own; as `costs` where not known. */
+  operations?(sequence: SymbolSequence, setup: Setup): EndOperations | undefined;
+  /** Coded bytes that a decoder holds before its first symbol, tables sent apart; `message`: the whole message. */
+  decoderHolds?(setup: Setup): number | 'message';
   /** Lines that show the tables to a person: sizes, bits, a few rows. */
   describeTables?(tables: Tables, setup: Setup): string[];
 }

@@ -1,10 +1,11 @@
 import { fieldChoiceText } from '../symbols/field-choice.ts';
 import type { Coder, CoderEntry } from './contract.ts';
+import { fieldsCosts } from './cost-fields.ts';
 import { fieldsDecoder } from './fields-decoder.ts';
 import { fieldsEncoder, fieldsFiller } from './fields-encoder.ts';
 import { fieldsPrice } from './fields-price.ts';
 import { FieldsSettings, fieldsDeclaration } from './fields-settings.ts';
-import { type FieldsTables, fieldsTrainer } from './fields-tables.ts';
+import { adaptiveTablesFor, type FieldsTables, fieldsTrainer, tablesFor } from './fields-tables.ts';
 import type { ParameterValues } from './parameters.ts';
 
 /**
@@ -44,6 +45,14 @@ function create(values: ParameterValues): Coder {
       settings.check(setup);
       return fieldsPrice(settings, sequence, setup);
     },
+    costs: (setup, longestCodedBytes) => {
+      const { plan } =
+        setup.policy === 'shipped'
+          ? tablesFor(setup, 'shipped')
+          : adaptiveTablesFor(settings, setup);
+      return fieldsCosts(plan, setup.policy, settings.rangeBits, longestCodedBytes);
+    },
+    decoderHolds: () => settings.rangeBits / 8,
     describeTables: (tables) => describe(tables as FieldsTables),
   };
 }

@@ -5,6 +5,7 @@ import { PrefixDecoder } from '../stages/prefix-decoder.ts';
 import { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import { newSymbolArray } from '../symbols/sequence.ts';
 import type { Coder, CoderEntry, Declaration, Setup } from './contract.ts';
+import { fixedCosts, fixedOperations } from './cost-fixed.ts';
 import { MessageWalk, writeSymbolCount } from './message-frame.ts';
 import { MessageLedger } from './message-ledger.ts';
 import { MessagePieces } from './message-pieces.ts';
@@ -136,6 +137,12 @@ const coder: Coder = {
       },
     };
   },
+
+  costs: () => fixedCosts(),
+
+  operations: (sequence) => fixedOperations(sequence),
+
+  decoderHolds: (setup) => Math.ceil(symbolWidth(setup.alphabetSize) / 8),
 
   price(sequence, setup) {
     const width = symbolWidth(setup.alphabetSize);

@@ -1,7 +1,9 @@
 import type { BitReader } from '../bits/bit-reader.ts';
 import type { BitWriter } from '../bits/bit-writer.ts';
+import type { OperationTally } from '../models/counting-tally.ts';
 import type { SymbolArray } from '../symbols/sequence.ts';
 import type { CoderEntry } from './contract.ts';
+import { countUnaryWord } from './cost-integer-words.ts';
 import { DivisorChoice, divisorWidth, LARGEST_DIVISOR } from './golomb-choice.ts';
 import { integerCoder, integerDeclaration } from './integer-coder.ts';
 import type { IntegerFamily } from './integer-family.ts';
@@ -24,6 +26,8 @@ export const golombFamily: IntegerFamily = {
   decode,
   encodeAdaptive,
   decodeAdaptive,
+  countWord,
+  countAdapting,
 };
 
 export const golomb: CoderEntry = {
@@ -117,4 +121,29 @@ function decodeAdaptive(
     symbols[i] = symbol;
     mean.add(symbol);
   }
+}
+
+/**
+ * Encoder: quotient, its product, whether the remainder is a short one. Decoder: the longest quotient, the product; twice
+ * whether there is a remainder at all, then whether it is a long one; whether the symbol lies in the alphabet.
+ */
+function countWord(symbol: number, m: number, encoder: OperationTally, decoder: OperationTally) {
+  const quotient = Math.floor(symbol / m);
+  const width = divisorWidth(m);
+  const isShort = symbol - quotient * m < (1 << width) - m;
+  countUnaryWord(quotient, isShort ? width - 1 : width, encoder, decoder);
+  encoder.divides += 1;
+  encoder.multiplies += 1;
+  encoder.branches += 1;
+  decoder.divides += 1;
+  decoder.multiplies += 1;
+  decoder.branches += width > 0 ? 4 : 3;
+}
+
+/** Sum and count are weighed and divided; the quotient is held to 1 at least. */
+function countAdapting(mean: RunningMean, tally: OperationTally): number {
+  tally.multiplies += 2;
+  tally.divides += 1;
+  tally.branches += 1;
+  return adaptedDivisor(mean);
 }

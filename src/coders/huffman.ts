@@ -2,6 +2,7 @@ import { InputError } from '../errors/errors.ts';
 import { PrefixDecoder } from '../stages/prefix-decoder.ts';
 import { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import type { Coder, CoderEntry, Declaration, Setup, Tables } from './contract.ts';
+import { PREFIX_WINDOW_BYTES, prefixCosts, prefixOperations } from './cost-prefix.ts';
 import { WordDraft } from './fill-drafts.ts';
 import { fillingEncoder } from './fill-messages.ts';
 import { symbolWidth } from './fixed.ts';
@@ -143,6 +144,21 @@ function createHuffman(values: ParameterValues): Coder {
       if (setup.policy === 'shipped') return shippedReader(setup, limits, shippedDecoder(setup));
       return sentReader(setup, limits, maxBits);
     },
+
+    costs: (setup) =>
+      setup.policy === 'shipped'
+        ? prefixCosts(
+            fitTables(huffmanTables(setup), setup, maxBits, added).table,
+            setup.alphabetSize,
+          )
+        : undefined,
+
+    operations: (sequence, setup) =>
+      setup.policy === 'shipped'
+        ? prefixOperations(fitTables(huffmanTables(setup), setup, maxBits, added).table, sequence)
+        : undefined,
+
+    decoderHolds: () => PREFIX_WINDOW_BYTES,
 
     price: (sequence, setup) => priceHuffman(sequence, setup, added),
 

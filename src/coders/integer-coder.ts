@@ -1,6 +1,7 @@
 import { InputError } from '../errors/errors.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { Coder, Declaration, Price, Setup } from './contract.ts';
+import { INTEGER_WINDOW_BYTES, integerCosts, integerOperations } from './cost-integer.ts';
 import { SymbolCounts } from './huffman-counts.ts';
 import { integerDecoder } from './integer-decoder.ts';
 import { integerEncoder } from './integer-encoder.ts';
@@ -102,6 +103,12 @@ export function integerCoder(
     growsSteadily: () => true,
 
     decoder: (setup, limits) => integerDecoder(family, setup, limits, given),
+
+    costs: (setup) => integerCosts(setup.policy),
+
+    operations: (sequence, setup) => integerOperations(family, sequence, setup, given),
+
+    decoderHolds: () => INTEGER_WINDOW_BYTES,
 
     price: (sequence, setup) => price(family, sequence, setup, given),
   };

@@ -1,5 +1,6 @@
 import type { BitReader } from '../bits/bit-reader.ts';
 import type { BitWriter } from '../bits/bit-writer.ts';
+import type { OperationTally } from '../models/counting-tally.ts';
 import type { SymbolArray } from '../symbols/sequence.ts';
 import type { SymbolCounts } from './huffman-counts.ts';
 import type { RunningMean } from './integer-mean.ts';
@@ -68,6 +69,15 @@ export interface IntegerFamily {
     mean: RunningMean,
     alphabetSize: number,
   ): void;
+  /** Adds what the word for `symbol` takes in `encode` and in `decode`. */
+  countWord(
+    symbol: number,
+    parameter: number,
+    encoder: OperationTally,
+    decoder: OperationTally,
+  ): void;
+  /** The parameter that follows from the mean; adds what its rule takes, the same at both ends. */
+  countAdapting(mean: RunningMean, tally: OperationTally): number;
 }
 
 /**

@@ -42,6 +42,7 @@ export function referenceCoder(
         got: `tables ${setup.policy}; reset ${setup.reset}`,
       });
     },
+    decoderHolds: () => 'message',
     encoder: (setup) => referenceEncoder(setup, methodOf(setup)),
     decoder: (setup, limits) => referenceDecoder(setup, limits, methodOf(setup)),
   };

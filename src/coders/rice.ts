@@ -1,7 +1,9 @@
 import type { BitReader } from '../bits/bit-reader.ts';
 import type { BitWriter } from '../bits/bit-writer.ts';
+import type { OperationTally } from '../models/counting-tally.ts';
 import type { SymbolArray } from '../symbols/sequence.ts';
 import type { CoderEntry } from './contract.ts';
+import { countUnaryWord } from './cost-integer-words.ts';
 import { symbolWidth } from './fixed.ts';
 import { integerCoder, integerDeclaration } from './integer-coder.ts';
 import { chooseByTrial, type IntegerFamily } from './integer-family.ts';
@@ -26,6 +28,8 @@ export const riceFamily: IntegerFamily = {
   decode,
   encodeAdaptive,
   decodeAdaptive,
+  countWord,
+  countAdapting,
 };
 
 export const rice: CoderEntry = {
@@ -106,4 +110,17 @@ function decodeAdaptive(
     symbols[i] = symbol;
     mean.add(symbol);
   }
+}
+
+function countWord(symbol: number, k: number, encoder: OperationTally, decoder: OperationTally) {
+  countUnaryWord(symbol >>> k, k, encoder, decoder);
+  // Whether the symbol lies in the alphabet.
+  decoder.branches += 1;
+}
+
+/** The rule's loop is tested k + 1 times. */
+function countAdapting(mean: RunningMean, tally: OperationTally): number {
+  const k = adaptedK(mean);
+  tally.branches += k + 1;
+  return k;
 }

@@ -44,6 +44,8 @@ export function stored(coder: Coder): Coder {
 
     encoder: (setup) => new StoredEncoder(coder, setup),
 
+    decoderHolds: () => 'message',
+
     growsSteadily: (setup) => coder.growsSteadily?.(innerSetup(setup)) ?? false,
 
     decoder: (setup, limits) => storedDecoder(coder, setup, limits),

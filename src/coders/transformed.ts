@@ -10,7 +10,7 @@ import type { CodedInput, Coder, Declaration, Decoder, Setup } from './contract.
  * - each message starts the chain anew where messages start the coder anew (reset `message`, `shipped`, no tables); under
  *   reset `never` the chain runs on over message ends, in training too; in training it also runs on over units of a fill;
  * - a symbol count that the coder writes is the count after the chain, which `byte-planes` and `bit-planes` multiply;
- * - the price has no fit: a chain has no best member (DESIGN, the bit account).
+ * - the price has no fit: a chain has no best member (docs/account.md).
  */
 export function transformed(coder: Coder, chain: TransformChain): Coder {
   const declares = declarationOf(coder.declares, chain);
@@ -94,6 +94,13 @@ export function transformed(coder: Coder, chain: TransformChain): Coder {
             const { fit, ...price } = coder.price!(transformedSequence, innerSetup(setup));
             return price;
           },
+        }),
+
+    ...(coder.decoderHolds === undefined
+      ? {}
+      : {
+          decoderHolds: (setup: Setup) =>
+            chain.needsWholeMessage ? ('message' as const) : coder.decoderHolds!(innerSetup(setup)),
         }),
 
     ...(coder.describeTables === undefined

@@ -32,7 +32,7 @@ export type MessageRule =
   | { readonly kind: 'prefix'; readonly type: PrefixType }
   | { readonly kind: 'fill'; readonly bytes: number; readonly unit: number | 'line' };
 
-/** What the decoder gets for free; see DESIGN of the framing. */
+/** What the decoder gets for free: symbol counts, where messages end, or neither. */
 export type LengthsGranted = 'known' | 'link' | 'sent';
 
 const FORMS =

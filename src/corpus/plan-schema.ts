@@ -161,7 +161,7 @@ export const planSchema = object({
   product: object({ device: oneOf('encoder', 'decoder') }).optional(),
   limits: limits.optional(),
   cost: object({
-    price_per_megabyte: positive(),
+    price_per_megabyte: positive().optional(),
     currency: text('a currency, as in EUR').optional(),
     bill_step_bytes: COUNT.optional(),
     units_per_day: positive().optional(),

@@ -26,6 +26,10 @@ export interface Plan {
   readonly reset: readonly ('message' | 'file' | 'never' | `message*${number}`)[];
   /** Share of messages lost on the way, 0 … 1, where the plan gives one. */
   readonly lossRate?: number;
+  /** Bytes in which the link bills each message, where the plan says. */
+  readonly billStepBytes?: number;
+  /** The small end of the product, where the plan names it. */
+  readonly device?: 'encoder' | 'decoder';
   readonly align: 1 | 8 | 16 | 32 | 64;
   readonly check: 'none';
   readonly timing: { readonly repeats: number; readonly pacer: 'deflate-huffman' };
@@ -108,6 +112,10 @@ function planOf(
     reset: (written.reset ?? ['message']) as Plan['reset'],
     align: written.align ?? 8,
     ...(written.loss === undefined ? {} : { lossRate: written.loss.rate }),
+    ...(written.cost?.bill_step_bytes === undefined
+      ? {}
+      : { billStepBytes: written.cost.bill_step_bytes }),
+    ...(written.product === undefined ? {} : { device: written.product.device }),
     check: 'none',
     timing: { repeats: timing.repeats ?? 20, pacer: 'deflate-huffman' },
     chosen,

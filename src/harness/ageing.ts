@@ -3,8 +3,8 @@ import { firstAbove } from '../corpus/corpus.ts';
 import { messageCountOf, type SymbolSequence, sliceMessages } from '../symbols/sequence.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
-import { fillSetup } from './run-cell.ts';
 import type { RunRecord } from './run-record.ts';
+import { setupBase } from './setup-base.ts';
 import { trainOn } from './verify.ts';
 
 /** One stretch of the test part, in time. */
@@ -59,20 +59,12 @@ export function ageingOf(
   align: number,
   messageEnds: Uint32Array = corpus.test.messageEnds,
 ): Ageing | undefined {
-  const { train, alphabetSize, lengths } = corpus;
+  const { train } = corpus;
   const test: SymbolSequence = { ...corpus.test, messageEnds };
   const messageCount = messageCountOf(test);
   const coder = cell.candidate.create();
   if (train === undefined || coder.price === undefined || messageCount < SEGMENTS) return undefined;
-  const base: Setup = {
-    policy: 'shipped',
-    alphabetSize,
-    reset: 'message',
-    lengths,
-    align,
-    ...(corpus.record === undefined ? {} : { record: corpus.record }),
-    ...fillSetup(corpus),
-  };
+  const base = setupBase(corpus, 'shipped', 'message', align);
   const withTables = (parts: readonly SymbolSequence[]): Setup => {
     const trainer = coder.trainer!(base);
     for (const part of parts) trainer.push(part);

@@ -1,8 +1,10 @@
 import { bitAccount } from '../account/bit-account.ts';
 import type { FieldPrice } from '../coders/contract.ts';
+import { type BillingFigures, billingFigures } from './billing.ts';
 import { decodesAlone } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import type { CorpusFloors } from './corpus-floors.ts';
+import { costRecord } from './cost-figures.ts';
 import { bitsOfCorpusMessages, type FillFigures, fillFigures } from './fill-figures.ts';
 import { type LossFigures, lossFigures } from './loss.ts';
 import type { CellBits, CellFailure } from './run-cell.ts';
@@ -59,13 +61,21 @@ function rateWithoutRepeats(bits: CellBits, corpus: CorpusData): number | undefi
   return symbols === 0 ? undefined : carried / symbols;
 }
 
+/** Figures that only some plans ask for. */
+export interface AskedFigures {
+  /** Share of messages lost on the way. */
+  readonly lossRate?: number;
+  /** Bytes in which a link bills each message. */
+  readonly billStepBytes?: number;
+}
+
 /** What a run record says of one cell. */
 export function cellRecordOf(
   result: CellBits | CellFailure,
   corpus: CorpusData,
   floors: CorpusFloors,
   speed: { encode: Speed; decode: Speed } | undefined,
-  lossRate: number | undefined,
+  asked: AskedFigures,
 ): CellRecord {
   const { cell } = result;
   const base = {
@@ -81,6 +91,8 @@ export function cellRecordOf(
     messages_as: corpus.messagesAs,
   };
   if ('failure' in result) return { ...base, verified: false, failure: result.failure };
+  const { lossRate, billStepBytes } = asked;
+  const filled = corpus.fill === undefined ? undefined : fillFigures(result, corpus);
   const symbolCount = corpus.test.symbols.length;
   const without = rateWithoutRepeats(result, corpus);
   return {
@@ -94,11 +106,17 @@ export function cellRecordOf(
     rate: symbolCount === 0 ? 0 : result.totals.carriedBits / symbolCount,
     account: bitAccount(floors.admit(result), floors.shareOf(cell)),
     ...(result.messageBits.length === 0 ? {} : { message_bytes: messageBytes(result.messageBits) }),
-    ...(corpus.fill === undefined ? {} : filledRecord(fillFigures(result, corpus))),
-    ...(lossRate === undefined ? {} : { loss: lossRecord(lossFigures(cell, corpus, lossRate)) }),
+    ...filledRecord(filled),
+    ...(lossRate === undefined
+      ? {}
+      : { loss: lossRecord(lossFigures(cell, corpus, lossRate, filled?.mean)) }),
+    ...(billStepBytes === undefined
+      ? {}
+      : { billing: billingRecord(billingFigures(result, corpus, billStepBytes)) }),
     ...(without === undefined ? {} : { rate_without_repeats: without }),
     files: filesOf(result, corpus),
     ...(result.perField === undefined ? {} : { fields: fieldsOf(result.perField) }),
+    ...costRecord(result.cost),
     ...(speed === undefined
       ? {}
       : { encode: speedRecord(speed.encode), decode: speedRecord(speed.decode) }),
@@ -121,8 +139,18 @@ function fieldsOf(fields: readonly FieldPrice[]): NonNullable<CellRecord['fields
   }));
 }
 
-function lossRecord({ share, perLostMessage }: LossFigures): NonNullable<CellRecord['loss']> {
-  return { share, per_lost_message: perLostMessage };
+function lossRecord(figures: LossFigures): NonNullable<CellRecord['loss']> {
+  const { share, perLostMessage, unitsPerLostMessage } = figures;
+  return {
+    share,
+    per_lost_message: perLostMessage,
+    ...(unitsPerLostMessage === undefined ? {} : { units_per_lost_message: unitsPerLostMessage }),
+  };
+}
+
+function billingRecord(figures: BillingFigures): NonNullable<CellRecord['billing']> {
+  const { stepBytes, steps, stepsPerUnit, unusedShare } = figures;
+  return { step_bytes: stepBytes, steps, steps_per_unit: stepsPerUnit, unused_share: unusedShare };
 }
 
 function speedRecord(speed: Speed): NonNullable<CellRecord['encode']> {

@@ -8,19 +8,39 @@ export interface LossFigures {
   readonly share: number;
   /** Messages that cannot be decoded for each one lost. */
   readonly perLostMessage: number;
+  /** The same in units, where messages are filled with them: a message holds its mean of units. */
+  readonly unitsPerLostMessage?: number;
 }
 
 /**
  * Messages lost independently, each with probability `rate`: the i-th message after a reset decodes only if it and all
  * before it since that reset arrive, with probability (1 − rate)^i. Exact for that model; losses in bursts spoil fewer
  * messages for each lost one.
- * @param rate  above 0, below 1
+ * @param rate             above 0, below 1
+ * @param unitsPerMessage  mean units of a message of the cell, where messages are filled
  */
-export function lossFigures(cell: Cell, corpus: CorpusData, rate: number): LossFigures {
+export function lossFigures(
+  cell: Cell,
+  corpus: CorpusData,
+  rate: number,
+  unitsPerMessage?: number,
+): LossFigures {
+  const share = lostShare(cell, corpus, rate);
+  const perLostMessage = share / rate;
+  return {
+    share,
+    perLostMessage,
+    ...(unitsPerMessage === undefined
+      ? {}
+      : { unitsPerLostMessage: perLostMessage * unitsPerMessage }),
+  };
+}
+
+function lostShare(cell: Cell, corpus: CorpusData, rate: number): number {
   const groups = decodesAlone(cell)
     ? undefined
     : unitsOf(corpus, cell.reset).map((unit) => unit.messageEnds.length);
-  if (groups === undefined) return { share: rate, perLostMessage: 1 };
+  if (groups === undefined) return rate;
   // Σ over i = 1 … g of 1 − (1 − rate)^i, in a form that stays exact for rare losses.
   const lostBySize = new Map<number, number>();
   let lost = 0;
@@ -35,6 +55,5 @@ export function lossFigures(cell: Cell, corpus: CorpusData, rate: number): LossF
     lost += own;
     messageCount += size;
   }
-  const share = messageCount === 0 ? 0 : lost / messageCount;
-  return { share, perLostMessage: share / rate };
+  return messageCount === 0 ? 0 : lost / messageCount;
 }

@@ -49,6 +49,8 @@ export async function requestOf(plan: Plan): Promise<RunRequest> {
     resets: plan.reset,
     align: plan.align,
     ...(plan.lossRate === undefined ? {} : { lossRate: plan.lossRate }),
+    ...(plan.billStepBytes === undefined ? {} : { billStepBytes: plan.billStepBytes }),
+    ...(plan.device === undefined ? {} : { device: plan.device }),
     split: describeSplit(rule),
     ageing: rule !== undefined && rule.order === 'in_time',
     timing: { repeats: plan.timing.repeats, seconds: TIMING_SECONDS },

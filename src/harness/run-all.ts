@@ -24,6 +24,10 @@ export interface RunRequest {
   readonly align: number;
   /** Share of messages lost on the way; absent: not asked. */
   readonly lossRate?: number;
+  /** Bytes in which a link bills each message; absent: not asked. */
+  readonly billStepBytes?: number;
+  /** The small end of the product, where the plan names it. */
+  readonly device?: 'encoder' | 'decoder';
   /** How train and test were parted, in words. */
   readonly split: string;
   /** Train lies before test in time: say how shipped tables age. */
@@ -117,7 +121,7 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
     entropy.push(...floors.records());
     for (const result of results) {
       const speed = speeds.get(result.cell.id);
-      cellRecords.push(cellRecordOf(result, corpus, floors, speed, request.lossRate));
+      cellRecords.push(cellRecordOf(result, corpus, floors, speed, request));
       if (!('failure' in result)) {
         messages.set(result.cell.id, {
           bits: bitsOfCorpusMessages(result, corpus),
@@ -145,6 +149,8 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
         tables: [...request.policies],
         resets: [...request.resets],
         ...(request.lossRate === undefined ? {} : { loss_rate: request.lossRate }),
+        ...(request.billStepBytes === undefined ? {} : { bill_step_bytes: request.billStepBytes }),
+        ...(request.device === undefined ? {} : { product: { device: request.device } }),
       },
       environment: describeEnvironment(),
       corpora: request.corpora.map(corpusRecordOf),

@@ -4,6 +4,8 @@ import { BitassayError, BugError } from '../errors/errors.ts';
 import { messageCountOf, type SymbolSequence } from '../symbols/sequence.ts';
 import { type Cell, unitResetOf } from './cells.ts';
 import { type CorpusData, unitsOf } from './corpus-data.ts';
+import { type CostFigures, costFigures } from './cost-figures.ts';
+import { setupBase } from './setup-base.ts';
 import { compareDecoded, decodeUnit, trainOn } from './verify.ts';
 
 /** What coding a cell gave, before it is held against a floor. */
@@ -20,6 +22,8 @@ export interface CellBits {
   readonly messageIdealBits?: Float64Array;
   /** Ideal bits of each field, for coders that code a record by its fields. */
   readonly perField?: readonly FieldPrice[];
+  /** What it would take on a device. */
+  readonly cost: CostFigures;
   /** Carried bits of the alphabet map, padding included, sent once before the messages. */
   readonly mapBits: number;
   /** The units as coded, for timing. */
@@ -50,29 +54,13 @@ function sendsMap(cell: Cell): boolean {
   return cell.policy === 'sent' || cell.policy === 'learned' || cell.policy === 'none';
 }
 
-/** What setups say of filling. */
-export function fillSetup({ fill }: CorpusData): Pick<Setup, 'fill' | 'unitSymbols'> {
-  if (fill === undefined) return {};
-  const { bytes, unitSymbols } = fill;
-  return { fill: { bytes }, ...(unitSymbols === undefined ? {} : { unitSymbols }) };
-}
-
 /** The sequence with the messages that its encoder made of it. */
 function messagesOf(sequence: SymbolSequence, { symbolEnds }: Coded): SymbolSequence {
   return symbolEnds === undefined ? sequence : { ...sequence, messageEnds: symbolEnds };
 }
 
 function setupOf(cell: Cell, corpus: CorpusData, align: number, unit?: SymbolSequence): Setup {
-  const base: Setup = {
-    policy: cell.policy,
-    alphabetSize: corpus.alphabetSize,
-    reset: unitResetOf(cell),
-    lengths: corpus.lengths,
-    align,
-    ...(corpus.record === undefined ? {} : { record: corpus.record }),
-    ...(corpus.fields === undefined ? {} : { fields: corpus.fields }),
-    ...fillSetup(corpus),
-  };
+  const base = setupBase(corpus, cell.policy, unitResetOf(cell), align);
   cell.candidate.create().check?.(base);
   let from: SymbolSequence | undefined;
   if (cell.policy === 'shipped' || cell.policy === 'primed') {
@@ -201,6 +189,9 @@ export async function runCell(
   const sentBits = sendsMap(cell) && corpus.sentMap !== undefined ? corpus.sentMap.bits : 0;
   const mapBits = Math.ceil(sentBits / align) * align;
   const messageBits = messageBitsOf(units);
+  await pause('price');
+  const cost = guarded(() => costFigures(coder, units, mapBits));
+  if ('failure' in cost) return cost;
   let carriedBits = mapBits;
   for (const bits of messageBits) carriedBits += bits;
   return {
@@ -219,6 +210,7 @@ export async function runCell(
       corpus.fill === undefined ? corpus.test.messageEnds : units[0].messages.messageEnds,
     ...(priced ? { messageIdealBits: joined(idealBitsOfUnits) } : {}),
     ...(perField === undefined ? {} : { perField }),
+    cost,
     mapBits,
     units,
   };

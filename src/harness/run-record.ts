@@ -21,6 +21,28 @@ const account = z.strictObject(
   >,
 );
 
+const operation = z.strictObject({
+  total: z.number().describe('over all symbols, exact'),
+  mean: z.number().describe('for each symbol'),
+  worst: z.number().describe('most of one symbol'),
+});
+
+const deviceEnd = z
+  .strictObject({
+    flash_bytes: z.number().optional().describe('tables'),
+    ram_bytes: z.number().optional().describe('state, own buffers, stack (an estimate)'),
+    code_bytes: z.number().optional().describe('an estimate'),
+    operations: z
+      .strictObject({
+        multiplies: operation,
+        divides: operation,
+        table_reads: operation,
+        branches: operation,
+      })
+      .optional(),
+  })
+  .describe('what this end would take on a device, as far as the coder tells');
+
 const cell = z.strictObject({
   id: z.string(),
   corpus: z.string(),
@@ -31,7 +53,14 @@ const cell = z.strictObject({
   reset: z.string(),
   reference: z.boolean(),
   loss: z
-    .strictObject({ share: z.number(), per_lost_message: z.number() })
+    .strictObject({
+      share: z.number(),
+      per_lost_message: z.number(),
+      units_per_lost_message: z
+        .number()
+        .optional()
+        .describe('where messages are filled with units'),
+    })
     .optional()
     .describe(
       'messages that cannot be decoded at the loss rate of the plan, and for each one lost',
@@ -63,6 +92,17 @@ const cell = z.strictObject({
     .optional()
     .describe('where messages are filled with units'),
   unit_count: z.number().optional().describe('where messages are filled with units'),
+  billing: z
+    .strictObject({
+      step_bytes: z.number(),
+      steps: z.number().describe('each message rounded up to whole steps'),
+      steps_per_unit: z
+        .number()
+        .describe('for each message of the source, or unit where messages are filled'),
+      unused_share: z.number().describe('of the billed bytes'),
+    })
+    .optional()
+    .describe('what a link charges for that bills in steps, where the plan asks'),
   rate_without_repeats: z
     .number()
     .optional()
@@ -82,6 +122,16 @@ const cell = z.strictObject({
     )
     .optional()
     .describe('by coders that code a record by its fields'),
+  encoder: deviceEnd.optional(),
+  decoder: deviceEnd.optional(),
+  decode_delay_bytes: z
+    .number()
+    .optional()
+    .describe('coded bytes that a decoder holds before its first symbol, on average'),
+  holds_whole_message: z
+    .literal(true)
+    .optional()
+    .describe('the decoder gives no symbol before it has the whole message'),
   encode: speed.optional(),
   decode: speed.optional(),
   failure: z.string().optional(),
@@ -133,6 +183,11 @@ export const runRecordSchema = z.strictObject({
     tables: z.array(z.string()),
     resets: z.array(z.string()),
     loss_rate: z.number().optional(),
+    bill_step_bytes: z.number().optional(),
+    product: z
+      .strictObject({ device: z.enum(['encoder', 'decoder']) })
+      .optional()
+      .describe('which end is the small one'),
   }),
   environment: z.strictObject({
     node: z.string(),

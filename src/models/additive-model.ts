@@ -1,9 +1,9 @@
 import type { SymbolArray } from '../symbols/sequence.ts';
-import { NODE_FIRST, NODE_SECOND, NODE_SYMBOL, NODE_WORDS } from './context-tree.ts';
+import { ContextTree, NODE_FIRST, NODE_SECOND, NODE_SYMBOL, NODE_WORDS } from './context-tree.ts';
 import type { IntervalSink, IntervalSource } from './interval.ts';
+import { PositionSums } from './position-sums.ts';
 import type { AdaptiveModel } from './symbol-model.ts';
 import { countEntry, HAS_RUN, SymbolRuns } from './symbol-runs.ts';
-import { SymbolSums } from './symbol-sums.ts';
 
 /** Pseudo-count added to every symbol, p / q: 1/2 for Krichevsky–Trofimov, 1 for Laplace. */
 export interface AddedCount {
@@ -19,6 +19,8 @@ export interface AddedCount {
  * order of the alphabet (order 0: all in the order of the alphabet). A context is halved, c to
  * ⌊c/2⌋, when q·n + p·m passes `halveAt` or a count fills its entry; the total never passes halveAt.
  *
+ * With `positions` N above 1 contexts also know the position of the symbol they code, modulo N from the start contexts on.
+ *
  * Without halving, the code length of a context's symbols is the Dirichlet–multinomial form
  * log2 [Γ(n + mα) Γ(α)^m ÷ (Γ(mα) Π Γ(c + α))], α = p/q.
  *
@@ -31,7 +33,8 @@ export class AdditiveModel implements AdaptiveModel {
   readonly #added: AddedCount;
   readonly #halveAt: number;
   readonly #runs: SymbolRuns;
-  readonly #sums: SymbolSums | undefined;
+  /** Order 0 only. */
+  readonly #sums: PositionSums | undefined;
   #hasResetState = false;
 
   constructor(
@@ -39,22 +42,39 @@ export class AdditiveModel implements AdaptiveModel {
     order: number,
     added: AddedCount,
     halveAt: number,
+    positions = 1,
     from?: AdditiveModel,
   ) {
     this.#alphabetSize = alphabetSize;
     this.#order = order;
     this.#added = added;
     this.#halveAt = halveAt;
-    this.#runs = from ? from.#runs.clone() : new SymbolRuns(alphabetSize, order, 'down');
-    this.#sums = from
-      ? from.#sums?.clone()
-      : order === 0
-        ? new SymbolSums(alphabetSize, 'down')
-        : undefined;
+    this.#runs = from
+      ? from.#runs.clone()
+      : new SymbolRuns(
+          alphabetSize,
+          order,
+          'down',
+          new ContextTree(alphabetSize, order, positions),
+        );
+    if (order > 0) return;
+    const { memory } = this.#runs.tree;
+    const fromSums = from ? from.#sums : undefined;
+    this.#sums = fromSums
+      ? fromSums.clone(memory)
+      : new PositionSums(alphabetSize, positions, 'down', memory);
   }
 
   clone(): AdditiveModel {
-    return new AdditiveModel(this.#alphabetSize, this.#order, this.#added, this.#halveAt, this);
+    const { positions } = this.#runs.tree;
+    return new AdditiveModel(
+      this.#alphabetSize,
+      this.#order,
+      this.#added,
+      this.#halveAt,
+      positions,
+      this,
+    );
   }
 
   markResetState(): void {
@@ -215,7 +235,7 @@ export class AdditiveModel implements AdaptiveModel {
   }
 
   #encodeEmpty(
-    sums: SymbolSums,
+    positionSums: PositionSums,
     symbols: SymbolArray,
     from: number,
     to: number,
@@ -223,6 +243,8 @@ export class AdditiveModel implements AdaptiveModel {
   ): void {
     const { p, q } = this.#added;
     const base = p * this.#alphabetSize;
+    const tree = this.#runs.tree;
+    let sums = positionSums.at(tree.contexts[0]);
     for (let i = from; i < to; i++) {
       const symbol = symbols[i];
       const total = q * sums.sum + base;
@@ -230,11 +252,15 @@ export class AdditiveModel implements AdaptiveModel {
       const low = q * sums.increment(symbol) + p * symbol;
       if (this.#alphabetSize > 1) sink.put(low, weight, total);
       while (q * sums.sum + base > this.#halveAt) sums.halve();
+      if (tree.positions > 1) {
+        tree.advance(symbol);
+        sums = positionSums.at(tree.contexts[0]);
+      }
     }
   }
 
   #decodeEmpty(
-    sums: SymbolSums,
+    positionSums: PositionSums,
     source: IntervalSource,
     symbols: SymbolArray,
     from: number,
@@ -242,6 +268,8 @@ export class AdditiveModel implements AdaptiveModel {
   ): void {
     const { p, q } = this.#added;
     const base = p * this.#alphabetSize;
+    const tree = this.#runs.tree;
+    let sums = positionSums.at(tree.contexts[0]);
     for (let i = from; i < to; i++) {
       let symbol = 0;
       if (this.#alphabetSize > 1) {
@@ -251,6 +279,10 @@ export class AdditiveModel implements AdaptiveModel {
       }
       symbols[i] = symbol;
       while (q * sums.sum + base > this.#halveAt) sums.halve();
+      if (tree.positions > 1) {
+        tree.advance(symbol);
+        sums = positionSums.at(tree.contexts[0]);
+      }
     }
   }
 }

@@ -1,15 +1,10 @@
 import type { SymbolArray } from '../symbols/sequence.ts';
-import {
-  type ContextTree,
-  NODE_FIRST,
-  NODE_SECOND,
-  NODE_SYMBOL,
-  NODE_WORDS,
-} from './context-tree.ts';
+import { ContextTree, NODE_FIRST, NODE_SECOND, NODE_SYMBOL, NODE_WORDS } from './context-tree.ts';
 import type { IntervalSink, IntervalSource } from './interval.ts';
+import { PositionSums } from './position-sums.ts';
 import type { AdaptiveModel } from './symbol-model.ts';
 import { countEntry, HAS_RUN, SymbolRuns } from './symbol-runs.ts';
-import { SymbolSums } from './symbol-sums.ts';
+import type { SymbolSums } from './symbol-sums.ts';
 
 /** Contexts from this order on keep runs; the empty one keeps sums. */
 const LOWEST_RUN = 1;
@@ -31,6 +26,9 @@ const NOT_CODED = -1;
  * - A context is halved, c to ⌈c/2⌉, when n + q passes `halveAt` and n is at least 2q (so that halving helps), or a count
  *   fills its entry (2^24 − 1, or 2^16 − 1 for alphabets above 256). No total passes max(halveAt, 3m) + 1.
  *
+ * With `positions` N above 1 every context, the empty one too, also knows the position of the symbol it codes, modulo N from
+ * the start contexts on: backing off keeps the position to the last.
+ *
  * So the symbols of a context are always among those of its suffixes.
  *
  * Cost: time goes with the symbols of a context that stand before the one coded, and with all of them on escape.
@@ -43,8 +41,10 @@ export class BackOffModel implements AdaptiveModel {
   readonly #halveAt: number;
   readonly #runs: SymbolRuns;
   readonly #tree: ContextTree;
-  /** The empty context. */
-  readonly #sums: SymbolSums;
+  readonly #positionSums: PositionSums;
+  readonly #isPositional: boolean;
+  /** The empty context, at the present position. */
+  #sums: SymbolSums;
   /** Up to this n + q nothing is due after a symbol but its count. */
   readonly #plainTotal: number;
   #hasResetState = false;
@@ -55,45 +55,73 @@ export class BackOffModel implements AdaptiveModel {
   readonly #excluded: Uint32Array;
   #excludedCount = 0;
 
-  constructor(alphabetSize: number, order: number, halveAt: number, from?: BackOffModel) {
+  constructor(
+    alphabetSize: number,
+    order: number,
+    halveAt: number,
+    positions = 1,
+    from?: BackOffModel,
+  ) {
     this.#alphabetSize = alphabetSize;
     this.#order = order;
     this.#halveAt = halveAt;
-    this.#runs = from ? from.#runs.clone() : new SymbolRuns(alphabetSize, order, 'up');
+    this.#runs = from
+      ? from.#runs.clone()
+      : new SymbolRuns(alphabetSize, order, 'up', new ContextTree(alphabetSize, order, positions));
     this.#tree = this.#runs.tree;
+    const { memory } = this.#tree;
+    this.#positionSums = from
+      ? from.#positionSums.clone(memory)
+      : new PositionSums(alphabetSize, positions, 'up', memory);
+    this.#isPositional = positions > 1;
+    this.#sums = this.#positionSums.at(this.#tree.contexts[0]);
     // With one symbol nothing is ever coded: no shortcut for it.
     this.#plainTotal = alphabetSize === 1 ? 0 : Math.min(halveAt, this.#runs.largestCount) - 1;
-    this.#sums = from ? from.#sums.clone() : new SymbolSums(alphabetSize, 'up');
     this.#stamps = new Int32Array(alphabetSize);
     this.#excluded = new Uint32Array(alphabetSize);
   }
 
   clone(): BackOffModel {
-    return new BackOffModel(this.#alphabetSize, this.#order, this.#halveAt, this);
+    const { positions } = this.#tree;
+    return new BackOffModel(this.#alphabetSize, this.#order, this.#halveAt, positions, this);
   }
 
   markResetState(): void {
     this.#runs.mark();
-    this.#sums.mark();
+    this.#positionSums.mark();
+    this.#enterPosition();
     this.#hasResetState = true;
   }
 
   reset(): void {
     if (this.#hasResetState) {
       this.#runs.restore();
-      this.#sums.restore();
+      this.#positionSums.restore();
     }
-    this.#tree.start();
+    this.startContexts();
   }
 
   startContexts(): void {
     this.#tree.start();
+    this.#enterPosition();
+  }
+
+  #advanceEmpty(symbol: number): void {
+    this.#tree.advance(symbol);
+    this.#enterPosition();
+  }
+
+  #enterPosition(): void {
+    this.#sums = this.#positionSums.at(this.#tree.contexts[0]);
   }
 
   encode(symbols: SymbolArray, from: number, to: number, sink: IntervalSink): void {
     if (this.#order < LOWEST_RUN) {
       this.#excludedCount = 0;
-      for (let i = from; i < to; i++) this.#encodeBelowRuns(symbols[i], sink);
+      for (let i = from; i < to; i++) {
+        this.#encodeBelowRuns(symbols[i], sink);
+        if (this.#isPositional) this.#advanceEmpty(symbols[i]);
+      }
       return;
     }
     const runs = this.#runs;
@@ -104,6 +132,7 @@ export class BackOffModel implements AdaptiveModel {
     const longest = this.#order;
     const plainTotal = this.#plainTotal;
     const markedNodes = runs.markedNodes;
+    const isPositional = this.#isPositional;
     const { table, width } = tree.longestContexts();
     let pool = runs.pool;
     let words = tree.words;
@@ -151,6 +180,7 @@ export class BackOffModel implements AdaptiveModel {
         this.#encodeAny(symbol, sink);
       }
       tree.advance(symbol);
+      if (isPositional) this.#enterPosition();
       node = contexts[longest];
       last = symbol;
       words = tree.words;
@@ -162,7 +192,10 @@ export class BackOffModel implements AdaptiveModel {
   decode(source: IntervalSource, symbols: SymbolArray, from: number, to: number): void {
     if (this.#order < LOWEST_RUN) {
       this.#excludedCount = 0;
-      for (let i = from; i < to; i++) symbols[i] = this.#decodeBelowRuns(source);
+      for (let i = from; i < to; i++) {
+        symbols[i] = this.#decodeBelowRuns(source);
+        if (this.#isPositional) this.#advanceEmpty(symbols[i]);
+      }
       return;
     }
     const runs = this.#runs;
@@ -173,6 +206,7 @@ export class BackOffModel implements AdaptiveModel {
     const longest = this.#order;
     const plainTotal = this.#plainTotal;
     const markedNodes = runs.markedNodes;
+    const isPositional = this.#isPositional;
     const { table, width } = tree.longestContexts();
     let pool = runs.pool;
     let words = tree.words;
@@ -225,6 +259,7 @@ export class BackOffModel implements AdaptiveModel {
         symbols[i] = symbol;
       }
       tree.advance(symbol);
+      if (isPositional) this.#enterPosition();
       node = contexts[longest];
       last = symbol;
       words = tree.words;

@@ -1,6 +1,6 @@
 import { MemoryBound, MODEL_MEMORY_BYTES } from './memory-bound.ts';
 
-/** Node of the empty context. */
+/** Node of the empty context; of the one at position 0 where there are several. */
 export const ROOT = 0;
 
 /** Words of a node: its parent, its symbol (with a flag above it), and two that belong to the tree's user. */
@@ -31,8 +31,12 @@ export interface ContextHead {
  * follows. A node is the string of its parent with one more symbol at the recent end, so the contexts after a symbol are
  * children of the contexts before it, each one longer: one independent look-up for each order.
  *
- * Strings begin with the start value m where a message starts. Nodes are found by direct tables for one symbol, and for
- * two while (m + 1)² is small, else by open addressing with exact keys. Nodes are numbered in the order they are met:
+ * Strings begin with the start value m where a message starts. Where contexts know the position of the next symbol in its
+ * record, position modulo N, strings are told apart by the position of their first symbol, and so by that of whatever comes
+ * after them: node p < N is the empty context at position p, and the start values before position 0 count backwards.
+ *
+ * Nodes are found by direct tables for one symbol, and for
+ * two while (m + 1)² is small and N is 1, else by open addressing with exact keys. Nodes are numbered in the order they are met:
  * a parent, and every suffix, comes before its children.
  *
  * Memory: 16 bytes a node and 4 to 14 a node for finding it, beside the direct tables.
@@ -40,12 +44,14 @@ export interface ContextHead {
 export class ContextTree {
   readonly alphabetSize: number;
   readonly depth: number;
+  /** N ≥ 1: empty contexts there are, one for each position. */
+  readonly positions: number;
   readonly memory: MemoryBound;
   /** NODE_WORDS words a node. Replaced when it grows: read it anew after {@link advance}. */
   words: Uint32Array;
-  /** Nodes there are, the root included. */
-  nodeCount = 1;
-  /** Node of the last j symbols, j = 0 … depth. */
+  /** Nodes there are, the empty contexts included. */
+  nodeCount: number;
+  /** Node of the last j symbols, j = 0 … depth; the first is the position too. */
   readonly contexts: Uint32Array;
 
   readonly #startNodes: Uint32Array;
@@ -58,23 +64,39 @@ export class ContextTree {
   #hashed = 0;
   #last: number;
 
-  /** @param depth  longest string, in symbols, ≥ 0 */
-  constructor(alphabetSize: number, depth: number, memory = new MemoryBound(MODEL_MEMORY_BYTES)) {
+  /**
+   * @param depth      longest string, in symbols, ≥ 0
+   * @param positions  N: contexts know the position modulo N; 1: they do not
+   */
+  constructor(
+    alphabetSize: number,
+    depth: number,
+    positions = 1,
+    memory = new MemoryBound(MODEL_MEMORY_BYTES),
+  ) {
     this.alphabetSize = alphabetSize;
     this.depth = depth;
+    this.positions = positions;
     this.memory = memory;
+    this.nodeCount = positions;
     const width = alphabetSize + 1;
-    this.words = memory.grow(NO_WORDS, NODE_WORDS * 64);
-    this.#one = memory.grow(NO_WORDS, depth >= 1 ? width : 0);
+    this.words = memory.grow(NO_WORDS, NODE_WORDS * Math.max(64, 2 * positions));
+    for (let root = 1; root < positions; root++) this.words[root * NODE_WORDS + NODE_PARENT] = root;
+    const isOneDirect = positions === 1 || positions * width <= LARGEST_DIRECT;
+    this.#one = memory.grow(NO_WORDS, depth >= 1 && isOneDirect ? positions * width : 0);
     this.#two = memory.grow(
       NO_WORDS,
-      depth >= 2 && width * width <= LARGEST_DIRECT ? width * width : 0,
+      depth >= 2 && positions === 1 && width * width <= LARGEST_DIRECT ? width * width : 0,
     );
-    if (depth > 2 || (depth === 2 && this.#two.length === 0)) this.#makeSlots(64);
+    if (depth > 2 || (depth === 2 && this.#two.length === 0) || (depth === 1 && !isOneDirect)) {
+      this.#makeSlots(64);
+    }
     this.contexts = new Uint32Array(depth + 1);
     this.#last = alphabetSize;
     for (let j = 1; j <= depth; j++) {
-      this.contexts[j] = this.#child(this.contexts[j - 1], alphabetSize, j);
+      let node = this.#positionBack(j);
+      for (let length = 1; length <= j; length++) node = this.#child(node, alphabetSize, length);
+      this.contexts[j] = node;
     }
     this.#startNodes = this.contexts.slice();
     this.#startCount = this.nodeCount;
@@ -84,8 +106,23 @@ export class ContextTree {
   start(): void {
     const contexts = this.contexts;
     const startNodes = this.#startNodes;
-    for (let j = 1; j < contexts.length; j++) contexts[j] = startNodes[j];
+    for (let j = 0; j < contexts.length; j++) contexts[j] = startNodes[j];
     this.#last = this.alphabetSize;
+  }
+
+  /** Node of the `length` start values before a message. */
+  startNode(length: number): number {
+    return this.#startNodes[length];
+  }
+
+  /** Nodes of the empty contexts and of start values alone: what a tree that met nothing has. */
+  get startCount(): number {
+    return this.#startCount;
+  }
+
+  /** The empty context one position after that of `root`. */
+  nextRoot(root: number): number {
+    return root + 1 === this.positions ? ROOT : root + 1;
   }
 
   /** The contexts of a message's start, apart from the tree's own. */
@@ -108,6 +145,14 @@ export class ContextTree {
   /** Moves every context on by one symbol; strings never met become nodes whose two words are 0. */
   advance(symbol: number): void {
     const contexts = this.contexts;
+    if (this.positions > 1) {
+      for (let j = this.depth; j > 0; j--) {
+        contexts[j] = this.#child(contexts[j - 1], symbol, j);
+      }
+      contexts[0] = this.nextRoot(contexts[0]);
+      this.#last = symbol;
+      return;
+    }
     let j = this.depth;
     if (j === 0) return;
     const two = this.#two;
@@ -125,11 +170,11 @@ export class ContextTree {
 
   /**
    * For kernels that follow the longest context alone: node after `symbol` is `table[last · width + symbol]`, or not made
-   * yet where that is 0. An empty table: the depth is not 1 or 2, or the alphabet too large. After following it,
+   * yet where that is 0. An empty table: the depth is not 1 or 2, the alphabet too large, or N above 1. After following it,
    * {@link moveTo} brings the tree's own contexts up to date.
    */
   longestContexts(): { readonly table: Uint32Array; readonly width: number } {
-    if (this.depth === 1) return { table: this.#one, width: 0 };
+    if (this.depth === 1 && this.positions === 1) return { table: this.#one, width: 0 };
     return { table: this.depth === 2 ? this.#two : NO_WORDS, width: this.alphabetSize + 1 };
   }
 
@@ -148,7 +193,9 @@ export class ContextTree {
 
   /** The node of `parent` with `symbol` added, or 0 when that string was never met. */
   find(parent: number, symbol: number): number {
-    if (parent === ROOT) return this.#one[symbol];
+    if (parent < this.positions && this.#one.length > 0) {
+      return this.#one[parent * (this.alphabetSize + 1) + symbol];
+    }
     const words = this.words;
     const at = parent * NODE_WORDS;
     if (this.#two.length > 0 && words[at + NODE_PARENT] === ROOT) {
@@ -159,9 +206,9 @@ export class ContextTree {
 
   /** As {@link find}, but makes the node when there is none. */
   add(parent: number, symbol: number): number {
-    if (parent === ROOT) return this.#child(ROOT, symbol, 1);
+    if (parent < this.positions) return this.#child(parent, symbol, 1);
     const at = parent * NODE_WORDS;
-    if (this.words[at + NODE_PARENT] !== ROOT) return this.#child(parent, symbol, 3);
+    if (this.words[at + NODE_PARENT] >= this.positions) return this.#child(parent, symbol, 3);
     const last = this.#last;
     this.#last = this.words[at + NODE_SYMBOL] & SYMBOL_MASK;
     const node = this.#child(parent, symbol, 2);
@@ -178,8 +225,9 @@ export class ContextTree {
       const parent = words[at + NODE_PARENT];
       const symbol = words[at + NODE_SYMBOL] & SYMBOL_MASK;
       const parentAt = parent * NODE_WORDS;
-      if (parent === ROOT) this.#one[symbol] = 0;
-      else if (this.#two.length > 0 && words[parentAt + NODE_PARENT] === ROOT) {
+      if (parent < this.positions && this.#one.length > 0) {
+        this.#one[parent * (this.alphabetSize + 1) + symbol] = 0;
+      } else if (this.#two.length > 0 && words[parentAt + NODE_PARENT] === ROOT) {
         const before = words[parentAt + NODE_SYMBOL] & SYMBOL_MASK;
         this.#two[before * (this.alphabetSize + 1) + symbol] = 0;
       } else {
@@ -193,7 +241,7 @@ export class ContextTree {
 
   /** A copy that shares nothing, with the same contexts. */
   clone(memory = new MemoryBound(MODEL_MEMORY_BYTES)): ContextTree {
-    const copy = new ContextTree(this.alphabetSize, this.depth, memory);
+    const copy = new ContextTree(this.alphabetSize, this.depth, this.positions, memory);
     copy.words = memory.grow(this.words, this.words.length);
     copy.nodeCount = this.nodeCount;
     copy.contexts.set(this.contexts);
@@ -207,11 +255,12 @@ export class ContextTree {
   }
 
   #child(parent: number, symbol: number, length: number): number {
-    if (length === 1) {
-      const known = this.#one[symbol];
+    if (length === 1 && this.#one.length > 0) {
+      const index = parent * (this.alphabetSize + 1) + symbol;
+      const known = this.#one[index];
       if (known !== 0) return known;
       const node = this.#newNode(parent, symbol);
-      this.#one[symbol] = node;
+      this.#one[index] = node;
       return node;
     }
     if (length === 2 && this.#two.length > 0) {
@@ -256,6 +305,11 @@ export class ContextTree {
     }
   }
 
+  /** The position `distance` before position 0. */
+  #positionBack(distance: number): number {
+    return (this.positions - (distance % this.positions)) % this.positions;
+  }
+
   #newNode(parent: number, symbol: number): number {
     const node = this.nodeCount++;
     const at = node * NODE_WORDS;
@@ -280,10 +334,10 @@ export class ContextTree {
     this.#slots = new Uint32Array(size);
     this.#slotMask = size - 1;
     const words = this.words;
-    for (let node = 1; old.length > 0 && node < this.nodeCount; node++) {
+    for (let node = this.positions; old.length > 0 && node < this.nodeCount; node++) {
       const at = node * NODE_WORDS;
       const parent = words[at + NODE_PARENT];
-      if (parent === ROOT) continue;
+      if (parent < this.positions && this.#one.length > 0) continue;
       if (this.#two.length > 0 && words[parent * NODE_WORDS + NODE_PARENT] === ROOT) continue;
       this.#slots[this.#slotOf(parent, words[at + NODE_SYMBOL] & SYMBOL_MASK)] = node;
     }

@@ -12,9 +12,10 @@ export class PairTree {
   readonly tree: ContextTree;
   readonly #running: ContextHead;
 
-  constructor(alphabetSize: number, order: number) {
+  /** @param positions  N: contexts know the position modulo N, from {@link start} on; 1: they do not */
+  constructor(alphabetSize: number, order: number, positions = 1) {
     this.order = order;
-    this.tree = new ContextTree(alphabetSize, order + 1);
+    this.tree = new ContextTree(alphabetSize, order + 1, positions);
     this.#running = this.tree.startHead();
   }
 
@@ -66,8 +67,8 @@ export class PairTrainer {
   readonly pairs: PairTree;
   readonly #startAtMessages: boolean;
 
-  constructor(alphabetSize: number, order: number, startAtMessages: boolean) {
-    this.pairs = new PairTree(alphabetSize, order);
+  constructor(alphabetSize: number, order: number, startAtMessages: boolean, positions = 1) {
+    this.pairs = new PairTree(alphabetSize, order, positions);
     this.#startAtMessages = startAtMessages;
   }
 
@@ -93,8 +94,8 @@ export class UnitPairTrainer {
   /** Symbols of the unit so far. The first unit runs on from a start as it is, so it has no head. */
   #place = Number.POSITIVE_INFINITY;
 
-  constructor(alphabetSize: number, order: number) {
-    this.pairs = new PairTree(alphabetSize, order);
+  constructor(alphabetSize: number, order: number, positions = 1) {
+    this.pairs = new PairTree(alphabetSize, order, positions);
     this.#start = this.pairs.tree.startHead();
     this.#head = this.pairs.tree.startHead();
   }

@@ -1,12 +1,5 @@
 import { CorruptStreamError, LimitError } from '../errors/errors.ts';
-import {
-  ContextTree,
-  NODE_SECOND,
-  NODE_SYMBOL,
-  NODE_WORDS,
-  ROOT,
-  SYMBOL_MASK,
-} from './context-tree.ts';
+import { ContextTree, NODE_SECOND, NODE_SYMBOL, NODE_WORDS, SYMBOL_MASK } from './context-tree.ts';
 import type { IntervalSink, IntervalSource } from './interval.ts';
 import { bitLength, IntegerModel, putBits, SmallModel, takeBits } from './small-model.ts';
 import { childrenOf, suffixesOf } from './static-table.ts';
@@ -15,6 +8,7 @@ import { childrenOf, suffixesOf } from './static-table.ts';
  * How a table of `sent` is carried: the set of strings of 1, 2 … k + 1 symbols that occur, level by level, then how often
  * each longest one occurs.
  *
+ * - Where contexts know positions, the empty string stands for as many, and a string without its oldest symbol begins one later.
  * - The symbols that follow a string are among those that follow it without its oldest symbol (the whole alphabet for the
  *   empty string). Their number is written, then which ones: while at least one candidate in 16 is wanted, one yes or no
  *   each, of exactly the odds that remain; else the number of candidates skipped.
@@ -60,16 +54,13 @@ export function writeSentTable(tree: ContextTree, order: number, sink: IntervalS
   const { starts, children } = childrenOf(tree);
   const suffixes = suffixesOf(tree);
   const { words } = tree;
-  let level = [ROOT];
-  let startNode = ROOT;
+  const { positions } = tree;
+  let level = rootsOf(tree);
   for (let length = 0; length <= order; length++) {
     const longer: number[] = [];
-    if (length < order) {
-      startNode = tree.find(startNode, tree.alphabetSize);
-      longer.push(startNode);
-    }
+    if (length < order) longer.push(tree.startNode(length + 1));
     for (const node of level) {
-      const isEmpty = node === ROOT;
+      const isEmpty = node < positions;
       const from = isEmpty ? 0 : starts[suffixes[node]];
       const candidates = isEmpty ? tree.alphabetSize : starts[suffixes[node] + 1] - from;
       const wanted = starts[node + 1] - starts[node];
@@ -107,28 +98,27 @@ export function readSentTable(
   order: number,
   maxPairs: number,
   source: IntervalSource,
+  positions = 1,
 ): ContextTree {
   const models = new TableModels(alphabetSize);
-  const tree = new ContextTree(alphabetSize, order + 1);
+  const tree = new ContextTree(alphabetSize, order + 1, positions);
   const starts: number[] = [];
   const ends: number[] = [];
   const children: number[] = [];
-  let suffixes: number[] = [ROOT];
-  let level = [ROOT];
-  let startNode = ROOT;
+  let level = rootsOf(tree);
+  let suffixes: number[] = level;
   for (let length = 0; length <= order; length++) {
     const longer: number[] = [];
     const longerSuffixes: number[] = [];
     if (length < order) {
-      longerSuffixes.push(startNode);
-      startNode = tree.find(startNode, alphabetSize);
-      longer.push(startNode);
+      longerSuffixes.push(tree.startNode(length));
+      longer.push(tree.startNode(length + 1));
     }
     let pairs = 0;
     for (let n = 0; n < level.length; n++) {
       const node = level[n];
       const suffix = suffixes[n];
-      const isEmpty = node === ROOT;
+      const isEmpty = node < positions;
       const from = isEmpty ? 0 : starts[suffix];
       const candidates = isEmpty ? alphabetSize : ends[suffix] - from;
       starts[node] = children.length;
@@ -155,7 +145,7 @@ export function readSentTable(
         let count = 1;
         if (length < order) {
           longer.push(child);
-          longerSuffixes.push(isEmpty ? ROOT : candidate);
+          longerSuffixes.push(isEmpty ? tree.nextRoot(node) : candidate);
         } else {
           count = readCount(models, source, symbol);
         }
@@ -168,6 +158,10 @@ export function readSentTable(
   }
   return tree;
 }
+
+/** The empty contexts, one for each position. */
+const rootsOf = (tree: ContextTree): number[] =>
+  Array.from({ length: tree.positions }, (_, position) => position);
 
 function writePlace(
   models: TableModels,

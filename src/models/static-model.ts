@@ -40,7 +40,7 @@ export class StaticModel implements SymbolModel {
   }
 
   #encodeEscaping(symbol: number, sink: IntervalSink): void {
-    const { totals, unseenFrom, suffix, lows, frequencies, next } = this.#table;
+    const { totals, unseenFrom, suffix, lows, frequencies, next, positions } = this.#table;
     let context = this.#context;
     for (;;) {
       const total = totals[context];
@@ -53,16 +53,16 @@ export class StaticModel implements SymbolModel {
         }
         sink.put(unseenFrom[context], total - unseenFrom[context], total);
       }
-      if (context === 0) break;
+      if (context < positions) break;
       context = suffix[context];
     }
     const size = this.#table.alphabetSize;
     if (size > 1) sink.put(symbol, 1, size);
-    this.#context = 0;
+    this.#context = this.#nextEmpty(context);
   }
 
   #decodeEscaping(source: IntervalSource): number {
-    const { totals, unseenFrom, suffix, lows, frequencies, next, symbols } = this.#table;
+    const { totals, unseenFrom, suffix, lows, frequencies, next, symbols, positions } = this.#table;
     let context = this.#context;
     for (;;) {
       const total = totals[context];
@@ -79,11 +79,11 @@ export class StaticModel implements SymbolModel {
         }
         source.take(from, total - from);
       }
-      if (context === 0) break;
+      if (context < positions) break;
       context = suffix[context];
     }
     const size = this.#table.alphabetSize;
-    this.#context = 0;
+    this.#context = this.#nextEmpty(context);
     if (size === 1) return 0;
     const symbol = source.target(size);
     source.take(symbol, 1);
@@ -150,12 +150,17 @@ export class StaticModel implements SymbolModel {
 
   /** The longest known context after a symbol that `context` itself has not seen. */
   #after(context: number, symbol: number): number {
-    const { suffix, next } = this.#table;
+    const { suffix, next, positions } = this.#table;
     for (let shorter = context; ; shorter = suffix[shorter]) {
       const entry = this.#find(shorter, symbol);
       if (entry !== NONE) return next[entry];
-      if (shorter === 0) return 0;
+      if (shorter < positions) return this.#nextEmpty(shorter);
     }
+  }
+
+  /** The empty context of the position after that of `context`, an empty one too. */
+  #nextEmpty(context: number): number {
+    return context + 1 === this.#table.positions ? 0 : context + 1;
   }
 
   /** First entry of the context whose symbol is `symbol` or larger. */

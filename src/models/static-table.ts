@@ -5,7 +5,6 @@ import {
   NODE_SECOND,
   NODE_SYMBOL,
   NODE_WORDS,
-  ROOT,
   SYMBOL_MASK,
 } from './context-tree.ts';
 import { Quantiser } from './quantise.ts';
@@ -26,12 +25,13 @@ export type TableTotal = { readonly bits: number } | 'exact';
 /**
  * Frequencies of a static order-k model, laid out so that one state, the longest known context, is enough to code.
  *
- * Contexts are numbered; context 0 is the empty one. Entries of context i are `entryStart[i] … entryStart[i + 1] − 1`, by
+ * Contexts are numbered; the first `positions` are the empty ones, one for each position of a symbol. Entries of context i are `entryStart[i] … entryStart[i + 1] − 1`, by
  * symbol. With `unseen: none` or `add`, only contexts of full length have intervals; the shorter ones lead to them.
  */
 export interface StaticTable {
   readonly alphabetSize: number;
   readonly order: number;
+  readonly positions: number;
   readonly unseen: Unseen;
   readonly entryStart: Uint32Array;
   readonly symbols: Uint32Array;
@@ -92,15 +92,17 @@ function nodesBySymbol(tree: ContextTree, total: number): Uint32Array {
   return sorted;
 }
 
-/** Each node's string without its oldest symbol. A parent and every suffix come before a node. */
+/** Each node's string without its oldest symbol; 0 for the empty strings. A parent and every suffix come before a node. */
 export function suffixesOf(tree: ContextTree): Uint32Array {
-  const { words, nodeCount } = tree;
+  const { words, nodeCount, positions } = tree;
   const suffix = new Uint32Array(nodeCount);
-  for (let node = 1; node < nodeCount; node++) {
+  for (let node = positions; node < nodeCount; node++) {
     const at = node * NODE_WORDS;
     const parent = words[at + NODE_PARENT];
-    if (parent !== ROOT)
-      suffix[node] = tree.find(suffix[parent], words[at + NODE_SYMBOL] & SYMBOL_MASK);
+    suffix[node] =
+      parent < positions
+        ? tree.nextRoot(parent)
+        : tree.find(suffix[parent], words[at + NODE_SYMBOL] & SYMBOL_MASK);
   }
   return suffix;
 }
@@ -116,11 +118,11 @@ export function compileTable(
   total: TableTotal,
   countOf: (count: number) => number = (count) => count,
 ): StaticTable {
-  const { words, nodeCount, alphabetSize } = tree;
+  const { words, nodeCount, alphabetSize, positions } = tree;
   const { starts, children } = childrenOf(tree);
   const suffix = suffixesOf(tree);
   const length = new Uint8Array(nodeCount);
-  for (let node = 1; node < nodeCount; node++) {
+  for (let node = positions; node < nodeCount; node++) {
     length[node] = length[words[node * NODE_WORDS + NODE_PARENT]] + 1;
   }
   const symbols = new Uint32Array(children.length);
@@ -183,11 +185,10 @@ export function compileTable(
     }
     unseenFrom[context] = low;
   }
-  let startContext = ROOT;
-  for (let j = 0; j < order; j++) startContext = tree.find(startContext, alphabetSize);
   return {
     alphabetSize,
     order,
+    positions,
     unseen,
     entryStart: starts,
     symbols,
@@ -199,6 +200,6 @@ export function compileTable(
     totals,
     unseenFrom,
     unseenFrequency,
-    startContext,
+    startContext: tree.startNode(order),
   };
 }

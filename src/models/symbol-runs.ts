@@ -1,5 +1,5 @@
 import { ContextTree, NODE_FIRST, NODE_SECOND, NODE_SYMBOL, NODE_WORDS } from './context-tree.ts';
-import { MemoryBound, MODEL_MEMORY_BYTES } from './memory-bound.ts';
+import type { MemoryBound } from './memory-bound.ts';
 
 /** Set in a node's symbol word when it has two symbols or more, and so a run. */
 export const HAS_RUN = 0x20000;
@@ -71,7 +71,7 @@ export class SymbolRuns {
     alphabetSize: number,
     depth: number,
     halving: Halving,
-    tree = new ContextTree(alphabetSize, depth, new MemoryBound(MODEL_MEMORY_BYTES)),
+    tree = new ContextTree(alphabetSize, depth),
   ) {
     this.tree = tree;
     this.symbolBits = alphabetSize <= 256 ? 8 : 16;

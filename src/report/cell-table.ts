@@ -18,6 +18,8 @@ export interface CellTableOptions {
   readonly noun: string;
   /** Floor in bits per symbol, for each cell's own contexts. */
   floorOf(cell: CellRecord): number;
+  /** The end whose flash and RAM are shown; absent: none. */
+  readonly device?: 'encoder' | 'decoder';
   /** A mark of one character before the name, blank for most. */
   markOf?(cell: CellRecord): string;
 }
@@ -71,7 +73,7 @@ function columnsFor(cells: readonly CellRecord[], options: CellTableOptions): Co
     columns.push(
       always(['units/', 'message'], true, (c) => c.units_per_message?.mean.toFixed(1) ?? ''),
       {
-        spare: 3,
+        spare: 4,
         head: ['', 'messages'],
         right: true,
         text: (c) => (c.message_count === undefined ? '' : countText(c.message_count)),
@@ -79,7 +81,7 @@ function columnsFor(cells: readonly CellRecord[], options: CellTableOptions): Co
     );
   } else if (cells.some((c) => (c.message_count ?? 0) > 1)) {
     columns.push({
-      spare: 3,
+      spare: 4,
       head: ['bytes/', 'message'],
       right: true,
       text: (c) => c.message_bytes?.mean.toFixed(1) ?? '',
@@ -92,10 +94,31 @@ function columnsFor(cells: readonly CellRecord[], options: CellTableOptions): Co
       ),
     );
   }
+  if (cells.some((c) => c.billing !== undefined)) {
+    columns.push({
+      spare: 1,
+      head: ['steps/', 'unit'],
+      right: true,
+      text: (c) => c.billing?.steps_per_unit.toPrecision(3) ?? '',
+    });
+  }
+  const { device } = options;
+  if (device !== undefined) {
+    const bytesText = (bytes: number | undefined) => (bytes === undefined ? '–' : countText(bytes));
+    columns.push(
+      {
+        spare: 1,
+        head: [device, 'flash'],
+        right: true,
+        text: (c) => bytesText(c[device]?.flash_bytes),
+      },
+      { spare: 1, head: ['', 'RAM'], right: true, text: (c) => bytesText(c[device]?.ram_bytes) },
+    );
+  }
   if (cells.some((c) => c.encode !== undefined)) {
     for (const end of ['encode', 'decode'] as const) {
       columns.push({
-        spare: end === 'encode' ? 1 : 2,
+        spare: end === 'encode' ? 2 : 3,
         head: [end === 'encode' ? 'speed' : '', end],
         right: true,
         text: (c) => (c[end] === undefined ? '' : speedText(c[end].speed)),

@@ -58,6 +58,7 @@ export function coderDocument(declarations: readonly Declaration[]): string {
     '',
     '| key | values | default | what it sets |',
     '|---|---|---|---|',
+    '| `tables_in_set` | 1 … 64 | one table | Tables `shipped` only: so many tables, each trained on the messages that it codes best; a message names its table in a selector of ⌈log2⌉ bits, booked in `index`. |',
     '| `stored` | `on`, `off` | `off` | `on`: a message is sent raw where that is shorter; one selector bit a message, booked in `index`. |',
     '| `after` | steps, joined by dots | none | Reversible steps before the coder, read left to right, as in `after=delta.zigzag`. |',
     '',

@@ -1,8 +1,10 @@
 import type { Comparison } from '../compare/compare-cells.ts';
 import type { RunRecord } from '../harness/run-record.ts';
 import { corpusSection } from './corpus-section.ts';
+import { deviceNote } from './cost-lines.ts';
 import { countText, rateText, sizeText, symbolNoun, wrapText } from './figures.ts';
 import { cellPhrase } from './floor-lines.ts';
+import { resetLines } from './loss-lines.ts';
 
 export interface RunScreenOptions {
   readonly columns: number;
@@ -76,6 +78,10 @@ export function runScreen(record: RunRecord, options: RunScreenOptions): string 
         markOf: (id) => (equal.has(id) ? '=' : ' '),
       }),
       ...comparisonLines(record, corpus.name, options),
+      ...resetLines(
+        record.cells.filter((cell) => cell.corpus === corpus.name),
+        symbolNoun(corpus.symbols_as),
+      ).flatMap((line) => wrapText(line, options.columns - 1, ' ')),
       ...ageingLines(record, corpus.name, options.columns),
       '',
     );
@@ -86,9 +92,15 @@ export function runScreen(record: RunRecord, options: RunScreenOptions): string 
       'Speed is the time of the pacer (deflate-huffman on the whole test part) by that of the cell, in the same round; above ×1 is faster.',
     );
   }
+  if (record.plan.product !== undefined) notes.push(deviceNote(record.plan.product.device));
   if (record.plan.loss_rate !== undefined) {
     notes.push(
       `With ${Number((record.plan.loss_rate * 100).toPrecision(3))} % of the messages lost on the way, independently: % lost counts all messages that cannot be decoded then. Losses in bursts spoil fewer for each one lost. Whether that is tolerable, your link's own protection and standards decide.`,
+    );
+  }
+  if (record.plan.bill_step_bytes !== undefined) {
+    notes.push(
+      `The link bills each message in steps of ${countText(record.plan.bill_step_bytes)} bytes: steps/unit is for each message of the source, or each unit where messages are filled.`,
     );
   }
   if (record.undeclared > 0) {

@@ -33,6 +33,8 @@ export class RangeEncoder implements IntervalSink {
   endingBits = 0;
   /** −log2(final range ÷ initial range), bytes shifted out counted. */
   payloadBits = 0;
+  /** Bytes that carries have looked at since the encoder was made, for counting operations. */
+  carriedBytes = 0;
 
   readonly #precision: RangePrecision;
   readonly #top: number;
@@ -66,6 +68,11 @@ export class RangeEncoder implements IntervalSink {
   state(): { readonly shifted: Uint8Array; readonly low: number; readonly range: number } {
     const shifted = this.#bytes.slice(this.#start, this.#at);
     return { shifted, low: this.#low, range: this.#range };
+  }
+
+  /** Bytes of the message shifted out so far. */
+  get shiftedBytes(): number {
+    return this.#at - this.#start;
   }
 
   /** Starts a message at the writer's position; the writer is not to be used until {@link end}. */
@@ -200,6 +207,7 @@ export class RangeEncoder implements IntervalSink {
     while (at >= this.#start && bytes[at] === 255) bytes[at--] = 0;
     if (at < this.#start) throw new BugError('a carry ran out of its message');
     bytes[at]++;
+    this.carriedBytes += this.#at - at;
     if (at < this.#markedAt) this.#carryPassedMark = true;
   }
 }

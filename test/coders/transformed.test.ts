@@ -150,7 +150,9 @@ describe('the keys that every coder takes', () => {
     ['huffman:strored=on', /Did you mean stored/],
     ['huffman:after=delta.zagzig', /zigzag/],
     ['huffman:after=dleta', /Did you mean delta/],
-    ['huffman:tables_in_set=4', /not built yet/],
+    ['huffman:lanes=4', /not built yet/],
+    ['huffman:tables_in_set=65', /from 1 to 64/],
+    ['fixed:tables_in_set=2', /shipped/],
   ])('%s is refused with a hint', (text, hint) => {
     let error: unknown;
     try {

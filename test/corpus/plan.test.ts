@@ -374,7 +374,7 @@ describe('what is not yet built', () => {
       'cost: {price_per_megabyte: 900, currency: EUR, bill_step_bytes: 192, units_per_day: 480, devices: 14000}',
       'cost',
     ],
-    ['product: {device: encoder}', 'product'],
+    ['cost: {bill_step_bytes: 192, devices: 14000}', 'cost'],
     ['budget: {cell_seconds: 120, cell_memory: 2GB}', 'budget'],
     ['sample: {every: 12, block: 1MB}', 'sample'],
     ['memory: 512MB', 'memory'],
@@ -411,10 +411,11 @@ describe('what is not yet built', () => {
     if (messages !== 'lines' && symbols === 'bytes') expect(error.message).toContain('unit=line');
   });
 
-  test.each(['huffman:tables_in_set=4'])('the candidate %s', (candidate) => {
-    const error = refusal(SHORT.replace('huffman', `"${candidate}"`));
-    expect(error).toBeInstanceOf(NotYetError);
-    expect(error.where.key).toBe('candidates[0]');
+  test('a billing step alone is built', () => {
+    expect(parsePlan(`${SHORT}cost: {bill_step_bytes: 192}\n`, 'p.yaml').billStepBytes).toBe(192);
+    expect(parsePlan(SHORT, 'p.yaml').billStepBytes).toBeUndefined();
+    expect(refusal(`${SHORT}cost: {bill_step_bytes: 0}\n`)).toBeInstanceOf(InputError);
+    expect(refusal(`${SHORT}cost: {bill_step_bytes: 1.5}\n`)).toBeInstanceOf(InputError);
   });
 
   test('beside a real fault it is an InputError, and both are named', () => {

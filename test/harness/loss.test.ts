@@ -44,6 +44,19 @@ describe('loss', () => {
     }
   });
 
+  it('speaks of units besides where a message holds several: its mean of them for each message', () => {
+    const corpus = corpusOf(1000);
+    // Alone: one message, 7.5 units. In groups of 4, rare losses: 5/2 messages.
+    expect(lossFigures(cellOf('shipped', 'message'), corpus, 0.01, 7.5).unitsPerLostMessage).toBe(
+      7.5,
+    );
+    const grouped = lossFigures(cellOf('learned', 'message*4'), corpus, 1e-7, 8);
+    expect(grouped.unitsPerLostMessage).toBeCloseTo(20, 4);
+    expect(lossFigures(cellOf('shipped', 'message'), corpus, 0.01)).not.toHaveProperty(
+      'unitsPerLostMessage',
+    );
+  });
+
   it('is what a simulation finds', () => {
     const messages = 200;
     const rate = 0.05;

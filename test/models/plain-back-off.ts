@@ -8,8 +8,11 @@ export class PlainBackOff {
   readonly halveAt: number;
   contexts = new Map<string, Map<number, number>>();
   history: number[] = [];
+  readonly positions: number;
+  position = 0;
 
-  constructor(alphabetSize: number, order: number, halveAt: number) {
+  constructor(alphabetSize: number, order: number, halveAt: number, positions = 1) {
+    this.positions = positions;
     this.alphabetSize = alphabetSize;
     this.order = order;
     this.halveAt = halveAt;
@@ -18,6 +21,7 @@ export class PlainBackOff {
 
   start(): void {
     this.history = new Array(this.order).fill(this.alphabetSize);
+    this.position = 0;
   }
 
   /** The intervals of the next symbol as `frequency/total`; then counts it. */
@@ -53,11 +57,12 @@ export class PlainBackOff {
     }
     this.history = [...this.history, symbol].slice(1);
     if (this.order === 0) this.history = [];
+    this.position = (this.position + 1) % this.positions;
     return ratios;
   }
 
   countsOf(length: number): Map<number, number> {
-    const key = `${length}:${this.history.slice(this.order - length).join()}`;
+    const key = `${this.position}/${length}:${this.history.slice(this.order - length).join()}`;
     let counts = this.contexts.get(key);
     if (counts === undefined) {
       counts = new Map();

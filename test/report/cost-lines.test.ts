@@ -1,0 +1,95 @@
+import { describe, expect, it } from 'vitest';
+import { type CellRecord, type RunRecord, runRecordSchema } from '../../src/harness/run-record.ts';
+import { delayNote, deviceNote } from '../../src/report/cost-lines.ts';
+import { runScreen } from '../../src/report/run-screen.ts';
+import { linesRecord } from './sample-record.ts';
+
+const end = (flash_bytes: number, ram_bytes: number) => ({
+  flash_bytes,
+  ram_bytes,
+  code_bytes: 400,
+});
+
+/** The record with costs for all but references, and the plan's small end if given. */
+function recordWith(device?: 'encoder' | 'decoder'): RunRecord {
+  const cells = linesRecord.cells.map(
+    (cell): CellRecord =>
+      cell.reference
+        ? cell
+        : { ...cell, encoder: end(12_345, 678), decoder: end(23_456, 789), decode_delay_bytes: 6 },
+  );
+  const plan = { ...linesRecord.plan, ...(device === undefined ? {} : { product: { device } }) };
+  return { ...linesRecord, plan, cells };
+}
+
+const screen = (record: RunRecord, columns: number) =>
+  runScreen(record, { columns, comparisons: [], next: 'bitassay entropy plan.yaml' });
+
+describe('flash and RAM on the screen', () => {
+  it('are those of the end that the plan names', () => {
+    const encoder = screen(recordWith('encoder'), 120);
+    expect(encoder).toContain('12 345  678');
+    expect(encoder).not.toContain('23 456');
+    expect(encoder).toMatch(/ encoder +.*\n.* flash {2}RAM /);
+    const decoder = screen(recordWith('decoder'), 120);
+    expect(decoder).toContain('23 456  789');
+    expect(decoder).not.toContain('12 345');
+  });
+
+  it('say what they hold', () => {
+    const text = screen(recordWith('decoder'), 120).replace(/\s+/g, ' ');
+    expect(text).toContain(deviceNote('decoder'));
+  });
+
+  it('are dropped where the plan names no end: the screen is as without costs', () => {
+    expect(screen(recordWith(), 100)).toBe(screen(linesRecord, 100));
+  });
+
+  it.each([100, 80, 60])('keep to %i columns', (columns) => {
+    for (const line of screen(recordWith('encoder'), columns).split('\n'))
+      expect([...line].length, line).toBeLessThanOrEqual(columns);
+  });
+
+  it('go after the speeds and before letters get too little room', () => {
+    const shown = (columns: number): string => {
+      const text = screen(recordWith('encoder'), columns);
+      return `${/ flash /.test(text) ? 'flash' : ''} ${/ encode /.test(text) ? 'speed' : ''}`.trim();
+    };
+    const seen: string[] = [];
+    for (let columns = 130; columns >= 60; columns--)
+      if (seen.at(-1) !== shown(columns)) seen.push(shown(columns));
+    expect(seen).toEqual(['flash speed', 'flash', '']);
+  });
+
+  it('lie in a record that keeps the schema', () => {
+    expect(runRecordSchema.safeParse(recordWith('encoder')).error?.issues).toBeUndefined();
+  });
+});
+
+describe('the note of decoders that need the whole message', () => {
+  const corpus = linesRecord.corpora[0];
+  const [first] = linesRecord.cells;
+  const cell = (candidate: string, more: Partial<CellRecord>): CellRecord => ({
+    ...first,
+    candidate,
+    ...more,
+  });
+  const cells = [
+    cell('huffman', { decode_delay_bytes: 4 }),
+    cell('deflate', { holds_whole_message: true }),
+    cell('huffman:stored=on', { holds_whole_message: true }),
+    cell('deflate', { holds_whole_message: true, reset: 'file' }),
+    cell('brotli', { holds_whole_message: true, verified: false }),
+  ];
+
+  it.each(['fill=192,unit=24', 'records=8'])('names each once under %s', (messages_as) => {
+    expect(delayNote(cells, { ...corpus, messages_as })).toBe(
+      'Need the whole message before their first symbol can be decoded: deflate, huffman:stored=on.',
+    );
+  });
+
+  it('is left out where messages are no packets, or none needs it', () => {
+    expect(delayNote(cells, { ...corpus, messages_as: 'lines' })).toBeUndefined();
+    expect(delayNote(cells.slice(0, 1), { ...corpus, messages_as: 'records=8' })).toBeUndefined();
+  });
+});
