@@ -19,7 +19,7 @@ const PART_STATE_BYTES = 5 * 4;
  * in bits, transform and context (1), the part asked, its first table, the value before the first in as many bytes as the
  * width needs; where the last value is the context, the bounds of its classes. Once a table, and once more: its first slot.
  */
-export function fieldPlanBytes(plan: FieldPlan): number {
+function fieldPlanBytes(plan: FieldPlan): number {
   const { layout, partCount, tableCount, slotCount, contexts } = plan;
   const partBytes =
     2 +

@@ -35,10 +35,10 @@ export interface CodeEstimate {
 const BYTES_A_STATEMENT = 12;
 const BYTES_A_FRAME = 32;
 
-export const codeBytesOf = ({ statements }: CodeEstimate): number =>
+const codeBytesOf = ({ statements }: CodeEstimate): number =>
   Math.ceil((statements * BYTES_A_STATEMENT) / 16) * 16;
 
-export const stackBytesOf = ({ nestedCalls }: CodeEstimate): number => nestedCalls * BYTES_A_FRAME;
+const stackBytesOf = ({ nestedCalls }: CodeEstimate): number => nestedCalls * BYTES_A_FRAME;
 
 /** Bytes of an unsigned integer up to `greatest`, below 2^32: 0, 1, 2 or 4. */
 export function integerBytes(greatest: number): number {

@@ -1,5 +1,6 @@
 import { bitAccount } from '../account/bit-account.ts';
 import type { FieldPrice } from '../coders/contract.ts';
+import { bcaMean } from '../statistics/bca.ts';
 import { type BillingFigures, billingFigures } from './billing.ts';
 import { decodesAlone } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
@@ -15,12 +16,19 @@ function quantile(sorted: Float64Array, share: number): number {
   return sorted[Math.min(sorted.length - 1, Math.max(0, Math.ceil(share * sorted.length) - 1))];
 }
 
+/** Messages between which the interval of their mean is drawn: fewer say too little, more need none. */
+const FEWEST_MESSAGES = 8;
+const MOST_MESSAGES = 20_000;
+
 function messageBytes(bits: Float64Array): NonNullable<CellRecord['message_bytes']> {
   const bytes = Float64Array.from(bits, (b) => b / 8).sort();
   let sum = 0;
   for (const value of bytes) sum += value;
+  const drawn = bytes.length >= FEWEST_MESSAGES && bytes.length <= MOST_MESSAGES;
+  const interval = drawn ? bcaMean(bytes, { seed: 1, repetitions: 400 }) : undefined;
   return {
     mean: sum / bytes.length,
+    ...(interval === undefined ? {} : { mean_low: interval.low, mean_high: interval.high }),
     p50: quantile(bytes, 0.5),
     p95: quantile(bytes, 0.95),
     p99: quantile(bytes, 0.99),

@@ -78,6 +78,13 @@ const cell = z.strictObject({
   message_bytes: z
     .strictObject({
       mean: z.number(),
+      mean_low: z
+        .number()
+        .optional()
+        .describe(
+          '95 % BCa interval of the mean over messages as if independent; absent for few or very many',
+        ),
+      mean_high: z.number().optional(),
       p50: z.number(),
       p95: z.number(),
       p99: z.number(),
