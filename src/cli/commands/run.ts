@@ -96,8 +96,12 @@ async function runPlanFile(planFile: string, options: RunOptions): Promise<void>
   const request = options.only === undefined ? whole : { ...whole, only: options.only };
   if (options.cells) return listCellsOf(request, options.json === true);
   await guardCells(request, options);
-  for (const choice of plan.chosen)
-    process.stderr.write(`bitassay: the plan leaves open ${choice}\n`);
+  // A split that nothing uses needs no word.
+  const open = plan.chosen.filter(
+    (choice) =>
+      request.corpora.some((corpus) => corpus.train !== undefined) || !choice.startsWith('split'),
+  );
+  for (const choice of open) process.stderr.write(`bitassay: the plan leaves open ${choice}\n`);
   const progress = new ProgressLine(true);
   const result = await whileInterruptible((interrupted) =>
     runAll(request, { progress: (state) => progress.show(state), interrupted }),
