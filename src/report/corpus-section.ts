@@ -127,12 +127,14 @@ function remarks(record: RunRecord, corpus: CorpusRecord): string[] {
     );
   }
   for (const entropy of record.entropy.filter((e) => e.corpus === corpus.name)) {
-    const below = cells.filter(
-      (c) => entropyOf(record, c) === entropy && c.rate! < entropy.floor.low,
-    );
-    if (below.length > 0) {
+    const order = entropy.orders.find((o) => o.k === entropy.floor.order);
+    const low = order?.low;
+    const below = cells
+      .filter((c) => entropyOf(record, c) === entropy && low !== undefined && c.rate! < low)
+      .sort((a, b) => a.rate! - b.rate!)[0];
+    if (order !== undefined && below !== undefined) {
       notes.push(
-        `${below[0].candidate} lies below the band (${rateText(below[0].rate!)} against ${rateText(entropy.floor.low)}): the estimate was wrong for what this cell knows, such as trained tables.`,
+        `${cellPhrase(below)} needs ${rateText(below.rate!)}, below the corrected entropy of order ${order.k} (${rateText(order.corrected)}) and below its whole interval: as a floor that estimate was wrong, so the band ends at what coders reach.`,
       );
     }
   }

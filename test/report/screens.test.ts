@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { Comparison } from '../../src/compare/compare-cells.ts';
 import { runRecordSchema } from '../../src/harness/run-record.ts';
+import { corpusSection } from '../../src/report/corpus-section.ts';
 import { runScreen } from '../../src/report/run-screen.ts';
 import { tryScreen } from '../../src/report/try-screen.ts';
 import { linesRecord, wholeRecord } from './sample-record.ts';
@@ -50,6 +51,24 @@ describe.each([100, 80])('screens at %i columns', (columns) => {
     // biome-ignore lint/suspicious/noControlCharactersInRegex: the escape that starts a colour
     expect(text).not.toMatch(/\u001b/);
     await expect(text).toMatchFileSnapshot(`screens/${name}-${columns}.txt`);
+  });
+});
+
+describe('a corpus section', () => {
+  const withRate = (rate: number): string => {
+    const [first, ...rest] = wholeRecord.cells;
+    const cells = [{ ...first, candidate: 'rice', rate, carried_bits: rate * 100_000 }, ...rest];
+    return corpusSection({ ...wholeRecord, cells }, wholeRecord.corpora[0], { columns: 200 }).join(
+      '\n',
+    );
+  };
+
+  it('says that the estimate was wrong where a cell lies below its whole interval, and only there', () => {
+    // The corrected entropy of order 2 is 3.00 in 2.95 to 3.05.
+    expect(withRate(2.5)).toMatch(
+      /rice needs 2\.50, below the corrected entropy of order 2 \(3\.00\).*was wrong/,
+    );
+    expect(withRate(2.97)).not.toMatch(/was wrong/);
   });
 });
 
