@@ -42,8 +42,10 @@ const LINE_WORDS: Readonly<Record<string, string>> = {
 const REFERENCE = ' reference';
 
 interface Column {
-  /** Left out first, highest first, where letters would have too little room; 0 stays always. */
+  /** Moved to a table of its own first, highest first, where letters would have too little room; 0 stays always. */
   readonly spare: number;
+  /** Tells the rows apart, so it stands in both tables. */
+  readonly names?: boolean;
   readonly head: readonly [string, string];
   readonly right: boolean;
   text(cell: CellRecord): string;
@@ -58,12 +60,16 @@ function columnsFor(cells: readonly CellRecord[], options: CellTableOptions): Co
     right,
     text,
   });
+  const naming = (head: string, text: Column['text']): Column => ({
+    ...always(['', head], false, text),
+    names: true,
+  });
   const columns: Column[] = [
-    always(['', 'candidate'], false, (c) => c.candidate),
-    always(['', 'tables'], false, (c) => (c.tables === 'none' ? '–' : c.tables)),
+    naming('candidate', (c) => c.candidate),
+    naming('tables', (c) => (c.tables === 'none' ? '–' : c.tables)),
   ];
   if (new Set(cells.map((c) => c.reset)).size > 1) {
-    columns.push(always(['', 'reset'], false, (c) => c.reset));
+    columns.push(naming('reset', (c) => c.reset));
   }
   columns.push(
     always(['bits/', noun], true, (c) => rateText(c.rate!, decimals)),
@@ -135,26 +141,90 @@ interface Layout {
   readonly columns: readonly Column[];
   readonly rows: readonly (readonly string[])[];
   readonly widths: readonly number[];
-  /** Characters left for letters. */
-  readonly room: number;
 }
 
-/** Texts and widths; columns that can be spared go until the letters have room. */
-function layOut(cells: readonly CellRecord[], options: CellTableOptions): Layout {
+interface SpelledLayout extends Layout {
+  /** Characters left for letters. */
+  readonly room: number;
+  /** Columns that letters left no room for. */
+  readonly moved: readonly Column[];
+}
+
+function layOut(cells: readonly CellRecord[], columns: readonly Column[]): Layout {
+  const rows = cells.map((cell) => columns.map((column) => column.text(cell)));
+  const widths = columns.map((column, i) =>
+    Math.max(...column.head.map((h) => h.length), ...rows.map((row) => [...row[i]].length)),
+  );
+  return { columns, rows, widths };
+}
+
+/** Texts and widths; columns that can be spared move out until the letters have room. */
+function layOutSpelled(cells: readonly CellRecord[], options: CellTableOptions): SpelledLayout {
   const tail = cells.some((cell) => cell.reference) ? REFERENCE.length : 0;
-  let columns = columnsFor(cells, options);
+  const all = columnsFor(cells, options);
+  let columns = all;
   for (;;) {
-    const rows = cells.map((cell) => columns.map((column) => column.text(cell)));
-    const widths = columns.map((column, i) =>
-      Math.max(...column.head.map((h) => h.length), ...rows.map((row) => [...row[i]].length)),
-    );
-    const room = options.columns - widths.reduce((sum, width) => sum + width + 2, 2) - tail;
+    const layout = layOut(cells, columns);
+    const used = layout.widths.reduce((sum, width) => sum + width + 2, 2);
+    const room = options.columns - used - tail;
     const spare = Math.max(...columns.map((column) => column.spare));
     if (room >= LEAST_ROOM || spare === 0) {
-      return { columns, rows, widths, room: Math.max(8, room) };
+      const moved = all.filter((column) => !columns.includes(column));
+      return { ...layout, room: Math.max(8, room), moved };
     }
     columns = columns.filter((column) => column.spare !== spare);
   }
+}
+
+function writeRow({ columns, widths }: Layout, texts: readonly string[]): string {
+  return texts
+    .map((text, i) => (columns[i].right ? padLeft(text, widths[i]) : padRight(text, widths[i])))
+    .join('  ');
+}
+
+function headRows(layout: Layout, last: string): string[] {
+  const { columns } = layout;
+  const lines: string[] = [];
+  if (columns.some((c) => c.head[0] !== '')) {
+    lines.push(
+      `  ${writeRow(
+        layout,
+        columns.map((c) => c.head[0]),
+      )}`.trimEnd(),
+    );
+  }
+  lines.push(
+    `  ${writeRow(
+      layout,
+      columns.map((c) => c.head[1]),
+    )}${last}`.trimEnd(),
+  );
+  return lines;
+}
+
+/** A second table is worth its lines when it holds what was asked for, or the encoder's speed. */
+const WORTH_A_TABLE = 2;
+
+/** The columns that the spelled table had no room for, in a table of their own, as far as it has room. */
+function movedTable(
+  cells: readonly CellRecord[],
+  columns: readonly Column[],
+  moved: readonly Column[],
+  width: number,
+): string[] {
+  if (!moved.some((column) => column.spare <= WORTH_A_TABLE)) return [];
+  const layout = layOut(cells, [...columns.filter((column) => column.names === true), ...moved]);
+  if (layout.widths.reduce((sum, own) => sum + own + 2, 0) > width) {
+    const spare = Math.max(...moved.map((column) => column.spare));
+    return movedTable(
+      cells,
+      columns,
+      moved.filter((column) => column.spare !== spare),
+      width,
+    );
+  }
+  const rows = layout.rows.map((row) => `  ${writeRow(layout, row)}`.trimEnd());
+  return ['', ...headRows(layout, ''), ...rows];
 }
 
 /** The verified cells as a table, best rate first, each with its gap over the floor spelled; then the failed ones. */
@@ -164,7 +234,8 @@ export function cellTable(cells: readonly CellRecord[], options: CellTableOption
     .sort((a, b) => a.rate! - b.rate! || (a.id < b.id ? -1 : 1));
   const lines: string[] = [];
   if (good.length > 0) {
-    const { columns, rows, widths, room } = layOut(good, options);
+    const layout = layOutSpelled(good, options);
+    const { columns, rows, room, moved } = layout;
     const scale = good.filter((cell) => !cell.reference && cell.coder !== 'fixed');
     const gaps = (scale.length > 0 ? scale : good).map((cell) => {
       const { above, below } = gapExtent(cell.account ?? {}, cell.symbol_count ?? 0);
@@ -175,23 +246,15 @@ export function cellTable(cells: readonly CellRecord[], options: CellTableOption
     const anyBelow = spell(pieceFor(gaps, room)).some((text) => text.startsWith('('));
     const piece = pieceFor(gaps, room - (anyBelow ? 3 : 0));
     const spelled = spell(piece);
-    const write = (texts: readonly string[]): string =>
-      texts
-        .map((text, i) => (columns[i].right ? padLeft(text, widths[i]) : padRight(text, widths[i])))
-        .join('  ');
-    lines.push(...legend(spelled, piece, options, anyBelow));
-    lines.push('');
-    if (columns.some((c) => c.head[0] !== ''))
-      lines.push(`  ${write(columns.map((c) => c.head[0]))}`.trimEnd());
-    lines.push(
-      `  ${write(columns.map((c) => c.head[1]))}  ${room >= 23 ? 'over the floor, spelled' : 'spelled'}`.trimEnd(),
-    );
+    lines.push(...legend(spelled, piece, options, anyBelow), '');
+    lines.push(...headRows(layout, `  ${room >= 23 ? 'over the floor, spelled' : 'spelled'}`));
     good.forEach((cell, i) => {
       const mark = options.markOf?.(cell) ?? ' ';
       lines.push(
-        `${mark} ${write(rows[i])}  ${spelled[i]}${cell.reference ? REFERENCE : ''}`.trimEnd(),
+        `${mark} ${writeRow(layout, rows[i])}  ${spelled[i]}${cell.reference ? REFERENCE : ''}`.trimEnd(),
       );
     });
+    lines.push(...movedTable(good, columns, moved, options.columns));
   }
   for (const cell of cells.filter((c) => !c.verified)) {
     lines.push(

@@ -2,7 +2,7 @@ import type { CellRecord, CorpusRecord } from '../harness/run-record.ts';
 
 /** Says what the columns of flash and RAM hold. */
 export function deviceNote(device: 'encoder' | 'decoder'): string {
-  return `Flash and RAM are shown where the screen has room: flash is the ${device}'s tables in bytes, without code; RAM its state, buffers and an estimate of its stack. Where there is –, the coder does not tell. Code, operations and the other end are in the run record; measure on your device before you rely on them.`;
+  return `Flash is the ${device}'s tables in bytes, without code; RAM its state, buffers and an estimate of its stack. Where there is –, the coder does not tell. Code, operations and the other end are in the run record; measure on your device before you rely on them.`;
 }
 
 /** In packets: the candidates whose decoder gives no symbol before it has the whole message; undefined where none. */
