@@ -1,30 +1,8 @@
 import { readdir, readFile, stat } from 'node:fs/promises';
 import { basename, dirname } from 'node:path';
-import { type BitassayError, EnvironmentError, InputError } from '../errors/errors.ts';
+import { type BitassayError, InputError } from '../errors/errors.ts';
+import { explainFileError } from '../errors/fs-faults.ts';
 import { nearestWord } from '../errors/nearest.ts';
-
-/** What the system answers when the path that the caller gave is at fault, in our words. */
-const CALLERS_FAULTS: Record<string, string> = {
-  ENOENT: 'does not exist',
-  ENOTDIR: 'does not exist: a part of its path is no folder',
-  EACCES: 'may not be read: its permissions forbid it',
-  EPERM: 'may not be read: its permissions forbid it',
-  EISDIR: 'is a folder, where a file is wanted',
-  ELOOP: 'cannot be reached: its links run in a circle',
-  ENAMETOOLONG: 'has a name longer than the file system allows',
-};
-
-/**
- * The error behind a system's refusal to read `file`: the caller's mistake where the path is at fault, else the
- * environment's. Anything that is no system error comes back unchanged.
- */
-export function readFault(error: unknown, file: string): unknown {
-  const code = error instanceof Error ? Reflect.get(error, 'code') : undefined;
-  if (typeof code !== 'string') return error;
-  if (Object.hasOwn(CALLERS_FAULTS, code))
-    return new InputError(`${file} ${CALLERS_FAULTS[code]}`, { file, got: code }, error);
-  return new EnvironmentError(`${file} could not be read`, { file, got: code }, error);
-}
 
 /** For a missing file: the name in the same folder that is nearest to it. */
 async function neighbourOf(path: string): Promise<string | undefined> {
@@ -35,9 +13,10 @@ async function neighbourOf(path: string): Promise<string | undefined> {
   }
 }
 
-async function explain(error: unknown, path: string, shown: string): Promise<unknown> {
-  const fault = readFault(error, shown);
-  if (!(fault instanceof InputError) || fault.where.got !== 'ENOENT') return fault;
+/** The system's refusal in words; for a missing file with the name in the same folder that is nearest. */
+async function explain(error: unknown, path: string, shown: string): Promise<BitassayError> {
+  const fault = explainFileError(error, shown);
+  if ((error as NodeJS.ErrnoException).code !== 'ENOENT') return fault;
   const near = await neighbourOf(path);
   if (near === undefined) return fault;
   return new InputError(
@@ -60,7 +39,7 @@ export async function inputFileBytes(path: string, shown: string): Promise<numbe
     throw await explain(error, path, shown);
   }
   if (found.isDirectory()) {
-    throw new InputError(`${shown} ${CALLERS_FAULTS['EISDIR']}`, {
+    throw new InputError(`${shown}: this is a folder, not a file`, {
       file: shown,
       advice: `To take the files in it, write ${shown.replace(/\/?$/, '/*')}.`,
     });

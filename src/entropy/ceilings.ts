@@ -1,6 +1,8 @@
 import { parseCandidate } from '../coders/candidate.ts';
 import type { Coded, Coder, Decoded, Setup } from '../coders/contract.ts';
-import { BitassayError, LimitError, PromiseError } from '../errors/errors.ts';
+import { symbolWidth } from '../coders/fixed.ts';
+import { compareDecoded, symbolCountsOf } from '../coders/verify.ts';
+import { BitassayError, LimitError } from '../errors/errors.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { Ceiling } from './floor.ts';
 
@@ -82,7 +84,7 @@ export function adaptiveCeilings(
 ): Ceilings {
   const { from = 0, upto = 4, progress } = options;
   const coderOf = options.coderOf ?? ((order) => parseCandidate(nameOf(order)).create());
-  const ceilings: Ceiling[] = [equalLengths(sequence.alphabetSize)];
+  const ceilings: Ceiling[] = [equalLengthsCeiling(sequence.alphabetSize)];
   const without: NoCeiling[] = [];
   const stop = new CeilingStop(options.best ?? ceilings[0].bitsPerSymbol);
   for (let order = from; order <= upto && sequence.symbols.length > 0; order++) {
@@ -106,10 +108,9 @@ export function adaptiveCeilings(
 
 const nameOf = (order: number): string => `arith:order=${order}`;
 
-function equalLengths(alphabetSize: number): Ceiling {
-  let width = 0;
-  while (2 ** width < alphabetSize) width++;
-  return { name: 'fixed', bitsPerSymbol: width };
+/** A code of equal lengths needs no run to be known. */
+export function equalLengthsCeiling(alphabetSize: number): Ceiling {
+  return { name: 'fixed', bitsPerSymbol: symbolWidth(alphabetSize) };
 }
 
 /**
@@ -133,7 +134,7 @@ function verifiedRate(coder: Coder, sequence: SymbolSequence): number {
   }
   coder.check?.(setup);
   const coded = encode(coder, setup, sequence);
-  verify(decode(coder, setup, coded, sequence), coder, sequence);
+  compareDecoded(decode(coder, setup, coded, sequence), coded, sequence);
   const { tableBits, indexBits } = coded.account;
   return (coded.payloadBits + tableBits + indexBits) / sequence.symbols.length;
 }
@@ -145,38 +146,10 @@ function encode(coder: Coder, setup: Setup, sequence: SymbolSequence): Coded {
   return encoder.finish();
 }
 
-function decode(
-  coder: Coder,
-  setup: Setup,
-  coded: Coded,
-  { symbols, messageEnds }: SymbolSequence,
-) {
-  const symbolCounts = messageEnds.map((end, m) => end - (m === 0 ? 0 : messageEnds[m - 1]));
-  return coder
-    .decoder(setup, { maxSymbols: symbols.length })
-    .decode({ bytes: coded.bytes, messageCount: messageEnds.length, symbolCounts });
-}
-
-function verify(decoded: Decoded, coder: Coder, { symbols, messageEnds }: SymbolSequence): void {
-  const symbolIndex = firstDifference(decoded.sequence.symbols, symbols);
-  if (symbolIndex >= 0) {
-    throw new PromiseError('the decoder gave back other symbols than were coded', {
-      coder: coder.declares.name,
-      symbolIndex,
-    });
-  }
-  const messageIndex = firstDifference(decoded.sequence.messageEnds, messageEnds);
-  if (messageIndex >= 0) {
-    throw new PromiseError('the decoder gave back other message ends than were coded', {
-      coder: coder.declares.name,
-      messageIndex,
-    });
-  }
-}
-
-/** Index of the first difference, −1 where there is none. */
-function firstDifference(a: ArrayLike<number>, b: ArrayLike<number>): number {
-  const length = Math.max(a.length, b.length);
-  for (let i = 0; i < length; i++) if (a[i] !== b[i]) return i;
-  return -1;
+function decode(coder: Coder, setup: Setup, coded: Coded, sequence: SymbolSequence): Decoded {
+  return coder.decoder(setup, { maxSymbols: sequence.symbols.length }).decode({
+    bytes: coded.bytes,
+    messageCount: sequence.messageEnds.length,
+    symbolCounts: symbolCountsOf(sequence),
+  });
 }

@@ -1,11 +1,11 @@
 import type { Setup } from '../coders/contract.ts';
+import { trainOn } from '../coders/verify.ts';
 import { firstAbove } from '../corpus/corpus.ts';
 import { messageCountOf, type SymbolSequence, sliceMessages } from '../symbols/sequence.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import type { RunRecord } from './run-record.ts';
 import { setupBase } from './setup-base.ts';
-import { trainOn } from './verify.ts';
 
 /** One stretch of the test part, in time. */
 export interface AgeingSegment {

@@ -1,11 +1,11 @@
 import { type Candidate, parseCandidate } from '../coders/candidate.ts';
 import type { Setup, TablePolicy } from '../coders/contract.ts';
+import { compareDecoded, decodeUnit, trainOn } from '../coders/verify.ts';
 import { BitassayError } from '../errors/errors.ts';
 import { oneMessage, type SymbolArray } from '../symbols/sequence.ts';
 import type { CoderLine } from './calibrate-record.ts';
 import { askedOrder, type CalibrationSource } from './calibrate-source.ts';
 import { judgeCoder } from './calibrate-verdicts.ts';
-import { compareDecoded, decodeUnit, trainOn } from './verify.ts';
 
 /** Largest alphabet whose pairs are coded as blocks. */
 const MOST_FOR_BLOCKS = 256;

@@ -1,9 +1,9 @@
 import type { CodedTotals, FloorShare } from '../account/bit-account.ts';
 import type { FitClass } from '../coders/contract.ts';
-import { symbolWidth } from '../coders/fixed.ts';
 import {
   adaptiveCeilings,
   CeilingStop,
+  equalLengthsCeiling,
   type NoCeiling,
   noCeilingReason,
 } from '../entropy/ceilings.ts';
@@ -81,10 +81,6 @@ function ceilingsOf(results: readonly (CellBits | CellFailure)[], corpus: Corpus
     ceilings.push({ name, bitsPerSymbol: bits / test.symbols.length });
   }
   return ceilings;
-}
-
-function equalLengthsCeiling(alphabetSize: number): Ceiling {
-  return { name: 'fixed', bitsPerSymbol: symbolWidth(alphabetSize) };
 }
 
 /** The index one past each file's last symbol. */

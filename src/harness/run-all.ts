@@ -1,5 +1,6 @@
 import type { Candidate } from '../coders/candidate.ts';
 import type { Reset, TablePolicy } from '../coders/contract.ts';
+import { symbolCountsOf } from '../coders/verify.ts';
 import { ageingOf, ageingRecordOf } from './ageing.ts';
 import { cellRecordOf } from './cell-record.ts';
 import { type Cell, listCells } from './cells.ts';
@@ -12,7 +13,6 @@ import { Interrupted, pauseWith, type RunHooks } from './pause.ts';
 import { type CellBits, type CellFailure, runCell } from './run-cell.ts';
 import type { CellRecord, RunRecord } from './run-record.ts';
 import { Pacer, type Speed } from './speed.ts';
-import { symbolCountsOf } from './verify.ts';
 
 /** Everything a run is made of, once plan and files are read. */
 export interface RunRequest {

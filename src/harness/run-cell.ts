@@ -1,12 +1,12 @@
 import type { CodedTotals } from '../account/bit-account.ts';
 import type { Coded, FieldPrice, FitClass, Setup } from '../coders/contract.ts';
+import { compareDecoded, decodeUnit, trainOn } from '../coders/verify.ts';
 import { BitassayError, BugError } from '../errors/errors.ts';
 import { messageCountOf, type SymbolSequence } from '../symbols/sequence.ts';
 import { type Cell, unitResetOf } from './cells.ts';
 import { type CorpusData, unitsOf } from './corpus-data.ts';
 import { type CostFigures, costFigures } from './cost-figures.ts';
 import { setupBase } from './setup-base.ts';
-import { compareDecoded, decodeUnit, trainOn } from './verify.ts';
 
 /** What coding a cell gave, before it is held against a floor. */
 export interface CellBits {

@@ -1,10 +1,10 @@
 import seedrandom from 'seedrandom';
 import { parseCandidate } from '../coders/candidate.ts';
 import type { Coded, Decoder, Setup } from '../coders/contract.ts';
+import { decoderSetup, symbolCountsOf, trainOn } from '../coders/verify.ts';
 import { oneMessage, type SymbolSequence } from '../symbols/sequence.ts';
 import type { CellBits, CodedUnit } from './run-cell.ts';
 import { encodeUnit } from './run-cell.ts';
-import { decoderSetup, symbolCountsOf, trainOn } from './verify.ts';
 
 /** How fast a cell is, as a multiple of the pacer's speed in the same round. */
 export interface Speed {

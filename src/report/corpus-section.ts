@@ -1,3 +1,4 @@
+import { symbolWidth } from '../coders/fixed.ts';
 import type { CellRecord, CorpusRecord, EntropyRecord, RunRecord } from '../harness/run-record.ts';
 import { cellTable } from './cell-table.ts';
 import { delayNote } from './cost-lines.ts';
@@ -43,7 +44,7 @@ function headLines(record: RunRecord, corpus: CorpusRecord, options: SectionOpti
   const n = corpus.symbol_count;
   const decimals = decimalsFor(best?.rate ?? 1);
   const rows: [string, string, string, string][] = [];
-  const width = Math.ceil(Math.log2(Math.max(1, corpus.alphabet_size)));
+  const width = symbolWidth(corpus.alphabet_size);
   rows.push([
     'at a fixed width',
     `${rateText(width, decimals)} bits/${noun}`,

@@ -174,7 +174,7 @@ describe('bad input is one paragraph', () => {
       'missing file',
       'abd.bin',
       {},
-      'abd.bin does not exist',
+      'abd.bin: there is no such file or folder',
       { advice: 'In the same folder there is abc.bin.' },
     ],
     ['pattern without a match', 'logs/*.ndjson', {}, 'no file matches "logs/*.ndjson"', {}],
@@ -184,7 +184,7 @@ describe('bad input is one paragraph', () => {
       'folder',
       'logs',
       {},
-      'logs is a folder',
+      'logs: this is a folder, not a file',
       { advice: 'To take the files in it, write logs/*.' },
     ],
     [

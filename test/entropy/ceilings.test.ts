@@ -5,7 +5,7 @@ import {
   CeilingStop,
   LARGEST_CEILING_BYTES,
 } from '../../src/entropy/ceilings.ts';
-import { LimitError, PromiseError } from '../../src/errors/errors.ts';
+import { CorruptStreamError, LimitError } from '../../src/errors/errors.ts';
 import { SeededGenerator } from '../../src/statistics/generator.ts';
 import { oneMessage } from '../../src/symbols/sequence.ts';
 import { addOneCoder } from './stand-in-coder.ts';
@@ -64,7 +64,7 @@ describe('adaptiveCeilings', () => {
     });
     expect(ceilings.map((c) => c.name)).toEqual(['fixed', 'arith:order=2']);
     expect(without.map((w) => w.name)).toEqual(['arith:order=0', 'arith:order=1']);
-    for (const { error } of without) expect(error).toBeInstanceOf(PromiseError);
+    for (const { error } of without) expect(error).toBeInstanceOf(CorruptStreamError);
     expect(without[0].error!.where.symbolIndex).toBe(999);
     expect(without[1].error!.where.messageIndex).toBe(1);
   });

@@ -2,11 +2,11 @@ import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import { parseCandidate } from '../../src/coders/candidate.ts';
 import type { Coder, CoderEntry, Setup } from '../../src/coders/contract.ts';
+import { decoderSetup } from '../../src/coders/verify.ts';
 import { listCells } from '../../src/harness/cells.ts';
 import type { CorpusData } from '../../src/harness/corpus-data.ts';
 import { runAll } from '../../src/harness/run-all.ts';
 import { runCell } from '../../src/harness/run-cell.ts';
-import { decoderSetup } from '../../src/harness/verify.ts';
 import { oneMessage, type SymbolSequence } from '../../src/symbols/sequence.ts';
 
 const pause = async (): Promise<void> => {};

@@ -1,7 +1,7 @@
-import type { Candidate } from '../coders/candidate.ts';
-import type { Coded, Decoded, Setup, Tables } from '../coders/contract.ts';
 import { CorruptStreamError } from '../errors/errors.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
+import type { Candidate } from './candidate.ts';
+import type { Coded, Decoded, Setup, Tables } from './contract.ts';
 
 /** Symbols of each message of a whole sequence. */
 export function symbolCountsOf(sequence: SymbolSequence): Uint32Array {
