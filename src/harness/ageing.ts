@@ -56,7 +56,6 @@ function tableBitsOf(cell: Cell, setup: Setup, sequence: SymbolSequence): number
 export function ageingOf(
   cell: Cell,
   corpus: CorpusData,
-  align: number,
   messageEnds: Uint32Array = corpus.test.messageEnds,
 ): Ageing | undefined {
   const { train } = corpus;
@@ -64,7 +63,7 @@ export function ageingOf(
   const messageCount = messageCountOf(test);
   const coder = cell.candidate.create();
   if (train === undefined || coder.price === undefined || messageCount < SEGMENTS) return undefined;
-  const base = setupBase(corpus, 'shipped', 'message', align);
+  const base = setupBase(corpus, 'shipped', 'message', cell.align);
   const withTables = (parts: readonly SymbolSequence[]): Setup => {
     const trainer = coder.trainer!(base);
     for (const part of parts) trainer.push(part);

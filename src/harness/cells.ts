@@ -6,7 +6,12 @@ import { InputError } from '../errors/errors.ts';
 export interface Cell {
   /** `corpus/candidate@policy/reset` */
   readonly id: string;
+  /** Name of the corpus. */
   readonly corpus: string;
+  /** Key of the corpus data that it codes ({@link CorpusData.key}): the name, and what the plan varies. */
+  readonly dataKey: string;
+  /** Each message's bits are padded to a multiple of this. */
+  readonly align: number;
   readonly candidate: Candidate;
   readonly policy: TablePolicy;
   /** Always `message` for `shipped` and `none`, which have nothing to forget. */
@@ -34,6 +39,8 @@ export interface CorpusTraits {
   readonly filled?: ReadonlySet<string>;
   /** Symbols are the bytes of records. */
   readonly records?: ReadonlySet<string>;
+  /** Of all cells; 8 unless said. */
+  readonly align?: number;
 }
 
 /**
@@ -45,7 +52,7 @@ export function listCells(
   candidates: readonly Candidate[],
   policies: readonly TablePolicy[],
   resets: readonly Reset[],
-  { filled = new Set(), records = new Set() }: CorpusTraits = {},
+  { filled = new Set(), records = new Set(), align = 8 }: CorpusTraits = {},
 ): CellList {
   const cells: Cell[] = [];
   let undeclared = 0;
@@ -83,6 +90,8 @@ export function listCells(
           cells.push({
             id: `${corpus}/${candidate.id}@${policy}/${reset}`,
             corpus,
+            dataKey: corpus,
+            align,
             candidate,
             policy,
             reset,

@@ -6,6 +6,8 @@ import { type SymbolSequence, sliceMessages } from '../symbols/sequence.ts';
 /** One corpus as cells see it: what trains, what is coded, and what both ends know of it. */
 export interface CorpusData {
   readonly name: string;
+  /** The name, and what the plan varies of how it is parted or cut: no two data of a run share one. */
+  readonly key: string;
   readonly sha256: string;
   readonly symbolsAs: string;
   readonly messagesAs: string;

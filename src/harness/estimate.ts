@@ -37,17 +37,16 @@ function beginningOfCorpus(corpus: CorpusData): CorpusData {
 export async function estimateSeconds(
   cells: readonly Cell[],
   corpora: readonly CorpusData[],
-  align: number,
 ): Promise<number> {
-  const samples = new Map(corpora.map((c) => [c.name, { whole: c, part: beginningOfCorpus(c) }]));
+  const samples = new Map(corpora.map((c) => [c.key, { whole: c, part: beginningOfCorpus(c) }]));
   const start = performance.now();
   const stride = Math.max(1, Math.ceil(cells.length / SAMPLE_CELLS));
   let tried = 0;
   let seconds = 0;
   for (let i = 0; i < cells.length; i += stride) {
-    const { whole, part } = samples.get(cells[i].corpus)!;
+    const { whole, part } = samples.get(cells[i].dataKey)!;
     const before = performance.now();
-    await runCell(cells[i], part, align, async () => {});
+    await runCell(cells[i], part, async () => {});
     const scale =
       (whole.test.symbols.length + (whole.train?.symbols.length ?? 0)) /
       Math.max(1, part.test.symbols.length + (part.train?.symbols.length ?? 0));

@@ -40,6 +40,7 @@ function factsOf(
   const takesBytes = corpus.symbolsAs === 'bytes' && corpus.alphabet.kind === 'natural';
   return {
     name: corpus.name,
+    key: corpus.name,
     sha256: corpus.sha256,
     symbolsAs: corpus.symbolsAs,
     messagesAs: corpus.messagesAs,

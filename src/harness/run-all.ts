@@ -63,7 +63,7 @@ export function cellsOf(request: RunRequest): {
     request.candidates,
     request.policies,
     request.resets,
-    { filled: new Set(filled), records: new Set(records) },
+    { filled: new Set(filled), records: new Set(records), align: request.align },
   );
   const { only } = request;
   return {
@@ -85,7 +85,7 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
   const pauseFor = (current: string) =>
     pauseWith(hooks, () => ({ cellsDone, cellsTotal: cells.length, current }));
   for (const corpus of request.corpora) {
-    const own = cells.filter((cell) => cell.corpus === corpus.name);
+    const own = cells.filter((cell) => cell.dataKey === corpus.key);
     if (own.length === 0 || partial) continue;
     const results: (CellBits | CellFailure)[] = [];
     const speeds = new Map<string, { encode: Speed; decode: Speed }>();
@@ -97,7 +97,7 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
     try {
       for (const cell of own) {
         const pause = pauseFor(cell.id);
-        const result = await runCell(cell, corpus, request.align, pause);
+        const result = await runCell(cell, corpus, pause);
         if (!('failure' in result) && pacer !== undefined) {
           await pause();
           speeds.set(cell.id, pacer.time(result, { ...request.timing!, seed: cellsDone }));
@@ -132,7 +132,7 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
     const shipped = partial || !request.ageing ? undefined : bestShipped(results);
     if (shipped !== undefined) {
       hooks.progress?.({ cellsDone, cellsTotal: cells.length, current: `${corpus.name}: ageing` });
-      const found = ageingOf(shipped.cell, corpus, request.align, shipped.messageEnds);
+      const found = ageingOf(shipped.cell, corpus, shipped.messageEnds);
       if (found !== undefined) ageing.push(ageingRecordOf(corpus.name, found));
     }
   }

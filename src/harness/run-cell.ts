@@ -59,8 +59,8 @@ function messagesOf(sequence: SymbolSequence, { symbolEnds }: Coded): SymbolSequ
   return symbolEnds === undefined ? sequence : { ...sequence, messageEnds: symbolEnds };
 }
 
-function setupOf(cell: Cell, corpus: CorpusData, align: number, unit?: SymbolSequence): Setup {
-  const base = setupBase(corpus, cell.policy, unitResetOf(cell), align);
+function setupOf(cell: Cell, corpus: CorpusData, unit?: SymbolSequence): Setup {
+  const base = setupBase(corpus, cell.policy, unitResetOf(cell), cell.align);
   cell.candidate.create().check?.(base);
   let from: SymbolSequence | undefined;
   if (cell.policy === 'shipped' || cell.policy === 'primed') {
@@ -127,7 +127,6 @@ function messageBitsOf(units: readonly CodedUnit[]): Float64Array {
 export async function runCell(
   cell: Cell,
   corpus: CorpusData,
-  align: number,
   pause: (step: CellStep) => Promise<void>,
 ): Promise<CellBits | CellFailure> {
   const units: CodedUnit[] = [];
@@ -150,7 +149,7 @@ export async function runCell(
   const sequences = unitsOf(corpus, cell.reset);
   for (const sequence of sequences) {
     await pause('train');
-    const setup = guarded(() => setupOf(cell, corpus, align, sequence));
+    const setup = guarded(() => setupOf(cell, corpus, sequence));
     if ('failure' in setup) return setup;
     await pause('encode');
     const coded = guarded(() => encodeUnit(cell, setup, sequence));
@@ -187,7 +186,7 @@ export async function runCell(
   }
   const sum = sumCoded(units);
   const sentBits = sendsMap(cell) && corpus.sentMap !== undefined ? corpus.sentMap.bits : 0;
-  const mapBits = Math.ceil(sentBits / align) * align;
+  const mapBits = Math.ceil(sentBits / cell.align) * cell.align;
   const messageBits = messageBitsOf(units);
   await pause('price');
   const cost = guarded(() => costFigures(coder, units, mapBits));

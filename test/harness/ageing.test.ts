@@ -26,6 +26,7 @@ function ageing(shareOf: (message: number) => number) {
   const test = source(2, shareOf);
   const corpus: CorpusData = {
     name: 'a',
+    key: 'a',
     sha256: '',
     symbolsAs: 'bits',
     messagesAs: 'every=50',
@@ -37,7 +38,7 @@ function ageing(shareOf: (message: number) => number) {
     testFiles: [{ path: 'a', sha256: '', messageEnd: MESSAGES }],
   };
   const { cells } = listCells(['a'], [parseCandidate('arith:order=0')], ['shipped'], ['message']);
-  return ageingOf(cells[0], corpus, 8)!;
+  return ageingOf(cells[0], corpus)!;
 }
 
 const entropy = (p: number): number => -p * Math.log2(p) - (1 - p) * Math.log2(1 - p);
@@ -91,6 +92,7 @@ describe('ageing of a cell that codes fields', () => {
     for (const counter of ['raw', 'delta/last']) {
       const corpus: CorpusData = {
         name: 'a',
+        key: 'a',
         sha256: '',
         symbolsAs: 'bytes',
         messagesAs: 'records=8',
@@ -106,9 +108,9 @@ describe('ageing of a cell that codes fields', () => {
         test: records(2),
         testFiles: [{ path: 'a', sha256: '', messageEnd: 80 }],
       };
-      const bits = await runCell(cell, corpus, 8, async () => {});
+      const bits = await runCell(cell, corpus, async () => {});
       if ('failure' in bits) throw new Error(bits.failure);
-      const { segments } = ageingOf(cell, corpus, 8)!;
+      const { segments } = ageingOf(cell, corpus)!;
       const sum = segments.reduce((total, s) => total + s.rate * s.symbolCount, 0);
       expect(sum).toBeCloseTo(bits.totals.idealBits!, 6);
       ideal.push(sum);

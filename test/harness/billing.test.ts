@@ -10,6 +10,7 @@ function corpusOf(lengths: readonly number[], more: Partial<CorpusData> = {}): C
   const messageEnds = Uint32Array.from(lengths, (length) => (at += length));
   return {
     name: 'a',
+    key: 'a',
     sha256: '',
     symbolsAs: 'bytes',
     messagesAs: 'lines',

@@ -9,6 +9,7 @@ const usual: EntropyReportOptions = { upto: 2, rough: false, all: false, differe
 
 const corpusOf = (test: SymbolSequence, train?: SymbolSequence): CorpusData => ({
   name: 'trackers',
+  key: 'trackers',
   sha256: '00',
   symbolsAs: 'bytes',
   messagesAs: 'whole',

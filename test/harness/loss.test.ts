@@ -10,6 +10,7 @@ function corpusOf(messageCount: number): CorpusData {
   const messageEnds = Uint32Array.from({ length: messageCount }, (_, i) => i + 1);
   return {
     name: 'a',
+    key: 'a',
     sha256: '',
     symbolsAs: 'bytes',
     messagesAs: 'every=1',

@@ -14,6 +14,7 @@ const pause = async (): Promise<void> => {};
 function corpusOf(test: SymbolSequence, train?: SymbolSequence): CorpusData {
   return {
     name: 'a',
+    key: 'a',
     sha256: '',
     symbolsAs: 'bytes',
     messagesAs: 'whole',
@@ -40,7 +41,7 @@ function broken(spoil: (coder: Coder) => Partial<Coder>): ReturnType<typeof pars
 
 async function verdict(candidate: ReturnType<typeof parseCandidate>): Promise<string> {
   const { cells } = listCells(['a'], [candidate], ['sent'], ['message']);
-  const result = await runCell(cells[0], corpusOf(sequence), 8, pause);
+  const result = await runCell(cells[0], corpusOf(sequence), pause);
   return 'failure' in result ? result.failure : 'verified';
 }
 
@@ -121,12 +122,7 @@ describe('train and test never mix', () => {
           )) {
             const { cells } = listCells(['a'], [candidate], [policy], ['message']);
             const bitsOf = async (test: SymbolSequence) => {
-              const result = await runCell(
-                cells[0],
-                corpusOf(test, oneMessage(train, 256)),
-                8,
-                pause,
-              );
+              const result = await runCell(cells[0], corpusOf(test, oneMessage(train, 256)), pause);
               if ('failure' in result) throw new Error(result.failure);
               return result.messageBits;
             };

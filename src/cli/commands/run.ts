@@ -54,7 +54,7 @@ async function guardCells(request: RunRequest, options: RunOptions): Promise<voi
     });
   }
   if (cells.length <= MANY_CELLS || options.many) return;
-  const seconds = await estimateSeconds(cells, request.corpora, request.align);
+  const seconds = await estimateSeconds(cells, request.corpora);
   throw new InputError(
     `this plan has ${countText(cells.length)} cells and would take about ${durationText(seconds)} without timing`,
     {
@@ -66,7 +66,7 @@ async function guardCells(request: RunRequest, options: RunOptions): Promise<voi
 
 async function listCellsOf(request: RunRequest, json: boolean): Promise<void> {
   const { cells, undeclared, notFilled } = cellsOf(request);
-  const seconds = await estimateSeconds(cells, request.corpora, request.align);
+  const seconds = await estimateSeconds(cells, request.corpora);
   if (json) {
     const list = {
       cells: cells.map((c) => c.id),
