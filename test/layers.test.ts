@@ -100,8 +100,8 @@ describe('the checker', () => {
       'cli/main.ts': `\nimport 'bitassay';\n`,
     });
     expect(faults).toEqual([
-      "bits/writer.ts:1 nothing in src/ may import index.ts, the library's face",
-      "cli/main.ts:2 nothing in src/ may import index.ts, the library's face",
+      'bits/writer.ts:1 nothing in src/ may import index.ts, a face of the library',
+      'cli/main.ts:2 nothing in src/ may import index.ts, a face of the library',
     ]);
   });
 
