@@ -1,0 +1,57 @@
+import type { Candidate } from '../coders/candidate.ts';
+import type { Setup } from '../coders/contract.ts';
+import type { SymbolArray, SymbolSequence } from '../symbols/sequence.ts';
+
+/** One message and what the program itself makes of it. */
+export interface CodedMessage {
+  readonly symbols: SymbolArray;
+  readonly bytes: Uint8Array;
+}
+
+/** Codes messages with the program's own encoder and cuts the result at their ends, which are whole bytes. */
+export function codedMessages(
+  candidate: Candidate,
+  setup: Setup,
+  sequence: SymbolSequence,
+): CodedMessage[] {
+  const encoder = candidate.create().encoder(setup);
+  encoder.push(sequence);
+  const coded = encoder.finish();
+  let from = 0;
+  let byte = 0;
+  return Array.from(sequence.messageEnds, (end, i) => {
+    const byteEnd = coded.messageEndsBits[i] / 8;
+    const message = {
+      symbols: sequence.symbols.subarray(from, end),
+      bytes: coded.bytes.subarray(byte, byteEnd),
+    };
+    from = end;
+    byte = byteEnd;
+    return message;
+  });
+}
+
+/**
+ * What the program's own decoder makes of the bytes of one message.
+ * @param count  the symbols of the message, where the framing grants them, else the most that are allowed
+ * @returns undefined where it refuses them
+ */
+export function decodedMessage(
+  candidate: Candidate,
+  setup: Setup,
+  bytes: Uint8Array,
+  count: number,
+): SymbolArray | undefined {
+  const decoder = candidate.create().decoder(setup, { maxSymbols: count });
+  try {
+    const { sequence } = decoder.decode({
+      bytes,
+      messageCount: 1,
+      ...(setup.lengths === 'link' ? { messageEndsBits: Float64Array.of(bytes.length * 8) } : {}),
+      ...(setup.lengths === 'known' ? { symbolCounts: Uint32Array.of(count) } : {}),
+    });
+    return sequence.symbols;
+  } catch {
+    return undefined;
+  }
+}

@@ -1,0 +1,68 @@
+/** Exported coders do to the bit what the program's own do, in C and in TypeScript. */
+import { mkdtempSync, rmSync, writeFileSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { describe, expect, it } from 'vitest';
+import { parseCandidate } from '../../src/coders/candidate.ts';
+import type { Lengths, Setup } from '../../src/coders/contract.ts';
+import { trainOn } from '../../src/coders/verify.ts';
+import { adversarialMessages } from '../../src/export/adversarial.ts';
+import { cFiles } from '../../src/export/c-files.ts';
+import { exportHuffman } from '../../src/export/export-huffman.ts';
+import { prove } from '../../src/export/prove.ts';
+import { buildC } from '../../src/export/run-c.ts';
+import { loadModule } from '../../src/export/run-ts.ts';
+import { tsFile } from '../../src/export/ts-file.ts';
+import type { SymbolSequence } from '../../src/symbols/sequence.ts';
+
+const naming = { name: 'tracker', provenance: ['Made by a test.'] };
+
+async function proven(text: string, sequences: SymbolSequence[], base: Omit<Setup, 'tables'>) {
+  const candidate = parseCandidate(text);
+  const setup = { ...base, tables: trainOn(candidate, base, sequences[0])! };
+  const coder = exportHuffman(candidate, setup);
+  const folder = mkdtempSync(join(tmpdir(), 'bitassay-export-'));
+  try {
+    const files = cFiles(coder, setup, naming);
+    const module = join(folder, 'tracker.mjs');
+    writeFileSync(module, tsFile(coder, setup, naming, false));
+    const runners = [
+      buildC(files, naming.name, setup, folder, { sanitize: false }),
+      buildC(files, naming.name, setup, folder, { sanitize: true }),
+      await loadModule(module),
+    ];
+    return runners.map((run) => prove(candidate, setup, sequences, run, 2000));
+  } finally {
+    rmSync(folder, { recursive: true, force: true });
+  }
+}
+
+describe('an exported huffman coder', () => {
+  const shapes: [alphabet: number, lengths: Lengths, align: number, units: number][] = [
+    [256, 'link', 8, 1],
+    [256, 'known', 32, 1],
+    [256, 'sent', 8, 24],
+    [1, 'link', 8, 1],
+    [2, 'sent', 16, 1],
+    [300, 'link', 8, 1],
+    [65536, 'sent', 8, 1],
+  ];
+  it.each(shapes)(
+    'of %i symbols under lengths %s, align %i, units of %i',
+    { timeout: 120_000 },
+    async (alphabetSize, lengths, align, unitSymbols) => {
+      const train = adversarialMessages(alphabetSize, unitSymbols, 300, 7);
+      const other = adversarialMessages(alphabetSize, unitSymbols, 2000, 8);
+      const base = {
+        policy: 'shipped',
+        alphabetSize,
+        reset: 'message',
+        lengths,
+        align,
+        ...(unitSymbols === 1 ? {} : { unitSymbols }),
+      } as const;
+      const proofs = await proven('huffman', [train, other], base);
+      for (const proof of proofs) expect(proof.messages).toBe(2300);
+    },
+  );
+});
