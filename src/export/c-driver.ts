@@ -17,7 +17,6 @@ export function cDriver(name: string, { lengths, alphabetSize }: Setup): string 
 #include "${name}.h"
 
 static uint8_t *bytes;
-static ${name}_symbol *symbols;
 
 static uint32_t number(void)
 {
@@ -40,8 +39,7 @@ static void take(void *to, size_t size)
 int main(void)
 {
     bytes = malloc(${ROOM_BYTES});
-    symbols = malloc(${ROOM_BYTES} * sizeof *symbols);
-    if (bytes == NULL || symbols == NULL) { return 2; }
+    if (bytes == NULL) { return 2; }
     for (int op = getchar(); op != EOF; op = getchar()) {
         uint32_t status, count, used = 0;
         if (op == 'e') {
@@ -76,7 +74,6 @@ int main(void)
         }
     }
     free(bytes);
-    free(symbols);
     return 0;
 }
 `;

@@ -1,5 +1,4 @@
-import type { Candidate } from '../coders/candidate.ts';
-import type { Setup } from '../coders/contract.ts';
+import type { Coder, Setup } from '../coders/contract.ts';
 import type { SymbolArray, SymbolSequence } from '../symbols/sequence.ts';
 
 /** One message and what the program itself makes of it. */
@@ -10,11 +9,11 @@ export interface CodedMessage {
 
 /** Codes messages with the program's own encoder and cuts the result at their ends, which are whole bytes. */
 export function codedMessages(
-  candidate: Candidate,
+  coder: Coder,
   setup: Setup,
   sequence: SymbolSequence,
 ): CodedMessage[] {
-  const encoder = candidate.create().encoder(setup);
+  const encoder = coder.encoder(setup);
   encoder.push(sequence);
   const coded = encoder.finish();
   let from = 0;
@@ -37,12 +36,12 @@ export function codedMessages(
  * @returns undefined where it refuses them
  */
 export function decodedMessage(
-  candidate: Candidate,
+  coder: Coder,
   setup: Setup,
   bytes: Uint8Array,
   count: number,
 ): SymbolArray | undefined {
-  const decoder = candidate.create().decoder(setup, { maxSymbols: count });
+  const decoder = coder.decoder(setup, { maxSymbols: count });
   try {
     const { sequence } = decoder.decode({
       bytes,

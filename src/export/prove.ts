@@ -1,5 +1,5 @@
 import type { Candidate } from '../coders/candidate.ts';
-import type { Setup } from '../coders/contract.ts';
+import type { Coder, Setup } from '../coders/contract.ts';
 import { SeededGenerator } from '../statistics/generator.ts';
 import type { SymbolArray, SymbolSequence } from '../symbols/sequence.ts';
 import { type CodedMessage, codedMessages, decodedMessage } from './coded-messages.ts';
@@ -75,7 +75,8 @@ export function prove(
   run: TaskRunner,
   damagedCount: number,
 ): Proof {
-  const messages = sequences.flatMap((sequence) => codedMessages(candidate, setup, sequence));
+  const coder = candidate.create();
+  const messages = sequences.flatMap((sequence) => codedMessages(coder, setup, sequence));
   const encoded = run(messages.map(({ symbols }) => ({ kind: 'encode', symbols })));
   messages.forEach(({ bytes }, i) => {
     const answer = encoded[i];
@@ -95,7 +96,7 @@ export function prove(
       `message ${i} is decoded otherwise: status ${answer.status}, ${answer.elements.length} symbols of ${symbols.length}, ${answer.usedBytes} bytes of ${bytes.length}`,
     );
   });
-  const refused = proveDamaged(candidate, setup, messages, run, damagedCount);
+  const refused = proveDamaged(coder, setup, messages, run, damagedCount);
   return {
     messages: messages.length,
     symbols: messages.reduce((sum, { symbols }) => sum + symbols.length, 0),
@@ -109,7 +110,7 @@ export function prove(
 const DAMAGED_CAPACITY = 4096;
 
 function proveDamaged(
-  candidate: Candidate,
+  coder: Coder,
   setup: Setup,
   messages: readonly CodedMessage[],
   run: TaskRunner,
@@ -122,7 +123,7 @@ function proveDamaged(
   const answers = run(damaged.map((bytes) => ({ kind: 'decode', bytes, capacity: granted })));
   let refused = 0;
   damaged.forEach((bytes, i) => {
-    const own = decodedMessage(candidate, setup, bytes, granted);
+    const own = decodedMessage(coder, setup, bytes, granted);
     const answer = answers[i];
     if (own === undefined) refused++;
     const agree =
