@@ -5,6 +5,7 @@ import { registerCoders } from './commands/coders.ts';
 import { registerDecode } from './commands/decode.ts';
 import { registerEncode } from './commands/encode.ts';
 import { registerEntropy } from './commands/entropy.ts';
+import { registerExport } from './commands/export.ts';
 import { registerRun } from './commands/run.ts';
 import { registerTry } from './commands/try.ts';
 
@@ -27,6 +28,7 @@ export function buildProgram(): Command {
     registerCoders,
     registerEncode,
     registerDecode,
+    registerExport,
   ];
   for (const add of register) add(program);
   for (const command of program.commands)
