@@ -2,8 +2,7 @@ import type { Candidate } from '../coders/candidate.ts';
 import type { Setup } from '../coders/contract.ts';
 import { addedCount, HuffmanFit, huffmanTables } from '../coders/huffman-tables.ts';
 import type { PrefixTable } from '../stages/prefix-table.ts';
-import type { ExportedCoder } from './exporter.ts';
-import { messageBuffers } from './exporter.ts';
+import { type ExportedCoder, messageBuffers } from './exporter.ts';
 import { BITS_IN, BITS_OUT, frameConstants, messageIn, messageOut } from './frame-program.ts';
 import { parseProgram } from './language-parser.ts';
 import {
@@ -13,37 +12,7 @@ import {
   prefixOut,
   prefixOutTables,
 } from './prefix-program.ts';
-
-const SYMBOLS_OUT = `
-fn encode_symbols(count) {
-  let i = 0;
-  while (i < count && status == OK) {
-    let symbol = symbols[i];
-    if (symbol >= ALPHABET) {
-      status = SYMBOL;
-      return 0;
-    }
-    put_word(symbol);
-    i = i + 1;
-  }
-}
-`;
-
-const SYMBOLS_IN = `
-fn decode_symbols(count) {
-  let i = 0;
-  while (i < count && status == OK) {
-    symbols[i] = get_word();
-    i = i + 1;
-  }
-}
-`;
-
-/** Symbols above the alphabet cannot stand in a narrow array that the alphabet fills. */
-function symbolCheck(alphabetSize: number, program: string): string {
-  if (alphabetSize !== 256 && alphabetSize !== 65536) return program;
-  return program.replace(/ {4}if \(symbol >= ALPHABET\) \{[^}]*\}\n/, '');
-}
+import { checkedSymbols, DECODED_SYMBOLS } from './symbol-program.ts';
 
 /** `huffman` with shipped tables. */
 export function exportHuffman(candidate: Candidate, setup: Setup): ExportedCoder {
@@ -64,7 +33,7 @@ export function exportHuffman(candidate: Candidate, setup: Setup): ExportedCoder
       program: parseProgram(
         BITS_OUT,
         prefixOut(table),
-        symbolCheck(alphabetSize, SYMBOLS_OUT),
+        checkedSymbols(alphabetSize),
         messageOut(setup),
       ),
       entry: 'encode_message',
@@ -74,7 +43,7 @@ export function exportHuffman(candidate: Candidate, setup: Setup): ExportedCoder
       buffers: buffers.encoder,
     },
     decoder: {
-      program: parseProgram(BITS_IN, prefixIn(table), SYMBOLS_IN, messageIn(setup)),
+      program: parseProgram(BITS_IN, prefixIn(table), DECODED_SYMBOLS, messageIn(setup)),
       entry: 'decode_message',
       entryGives: setup.lengths !== 'known',
       constants,

@@ -11,7 +11,7 @@ import type { SymbolSequence } from '../symbols/sequence.ts';
 export interface ExportSubject {
   readonly candidate: Candidate;
   readonly corpus: CorpusData;
-  /** Policy `shipped`, with tables; never with a budget: an exported coder codes the messages it is given. */
+  /** Policy `shipped`, with tables, or `none`; never with a budget: an exported coder codes the messages it is given. */
   readonly setup: Setup;
   /** The messages of train and test: under fill as the coder filled them. */
   readonly train: SymbolSequence;
@@ -53,14 +53,16 @@ export function exportSubject(
       advice: 'Split the corpus: tables are trained on its train part only.',
     });
   }
-  if (!candidate.declaration.policies.includes('shipped')) {
+  const { policies } = candidate.declaration;
+  const policy = policies.includes('none') ? 'none' : 'shipped';
+  if (!policies.includes(policy)) {
     throw new InputError(`${candidate.id} has no shipped tables to export`, {
       coder: candidate.declaration.name,
       expected: 'a coder with table policy shipped',
-      got: candidate.declaration.policies.join(', '),
+      got: policies.join(', '),
     });
   }
-  const base = setupBase(corpus, 'shipped', 'message', align);
+  const base = setupBase(corpus, policy, 'message', align);
   const tables = trainOn(candidate, base, corpus.train);
   const filling: Setup = tables === undefined ? base : { ...base, tables };
   const train = code(candidate, filling, corpus.train);

@@ -18,7 +18,7 @@ export interface ExportedCoder {
 
 /**
  * Makes the programs of one coder.
- * @param setup  policy `shipped`, with tables
+ * @param setup  policy `shipped`, with tables, or `none`
  */
 export type Exporter = (candidate: Candidate, setup: Setup) => ExportedCoder;
 

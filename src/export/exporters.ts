@@ -2,10 +2,16 @@ import type { Candidate } from '../coders/candidate.ts';
 import type { Setup } from '../coders/contract.ts';
 import { InputError } from '../errors/errors.ts';
 import { exportHuffman } from './export-huffman.ts';
+import { exportInteger } from './export-integer.ts';
 import type { ExportedCoder, Exporter } from './exporter.ts';
 
 /** Coders that can be exported, by name. */
-const exporters: ReadonlyMap<string, Exporter> = new Map([['huffman', exportHuffman]]);
+const exporters: ReadonlyMap<string, Exporter> = new Map([
+  ['huffman', exportHuffman],
+  ['rice', exportInteger],
+  ['golomb', exportInteger],
+  ['exp-golomb', exportInteger],
+]);
 
 /** Keys of candidates whose steps around the coder have no exported form. */
 const UNEXPORTED_KEYS = ['after', 'stored', 'tables_in_set'] as const;
@@ -23,7 +29,7 @@ export function whyNotExported(candidate: Candidate): string | undefined {
 
 /**
  * The programs and tables of a candidate.
- * @param setup  policy `shipped`, with tables trained on the train split
+ * @param setup  policy `shipped`, with tables trained on the train split, or `none`
  * @throws InputError where there is no exported form, saying what has one
  */
 export function exportedCoder(candidate: Candidate, setup: Setup): ExportedCoder {

@@ -50,7 +50,7 @@ function cellOf(record: RunRecord, text: string | undefined): CellRecord {
   const exportable = record.cells.filter(
     (cell) =>
       cell.verified &&
-      cell.tables === 'shipped' &&
+      (cell.tables === 'shipped' || cell.tables === 'none') &&
       whyNotExported(parseCandidate(cell.candidate)) === undefined,
   );
   const named = exportable.filter((cell) => text === undefined || cell.id.includes(text));
