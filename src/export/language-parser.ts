@@ -215,5 +215,23 @@ export function parseProgram(...texts: readonly string[]): LanguageProgram {
       comment = [];
     }
   }
-  return { state, stateArrays, functions };
+  const program = { state, stateArrays, functions };
+  refuseShadows(program);
+  return program;
+}
+
+/** A local name that is also one of the state would mean different things in different languages. */
+function refuseShadows({ state, stateArrays, functions }: LanguageProgram): void {
+  const taken = new Set([...state, ...stateArrays.keys()]);
+  const letsIn = (body: readonly Statement[]): string[] =>
+    body.flatMap((s) => {
+      if (s.kind === 'let') return [s.name];
+      if (s.kind === 'while') return letsIn(s.body);
+      return s.kind === 'if' ? [...letsIn(s.then), ...letsIn(s.otherwise)] : [];
+    });
+  for (const { name, parameters, body } of functions.values()) {
+    const shadow = [...parameters, ...letsIn(body)].find((local) => taken.has(local));
+    if (shadow !== undefined)
+      throw new BugError(`export program: ${name} has a local ${shadow}, which is state`);
+  }
 }

@@ -53,6 +53,11 @@ const shapes: [alphabet: number, lengths: Lengths, align: number, units: number]
 const candidates = [
   'huffman',
   'huffman:maxbits=32,unseen=add:1/1000',
+  'arith:order=0,range=32',
+  'arith:order=1,range=32',
+  'arith:order=2,range=32,position=3',
+  'arith:order=1,range=32,unseen=add:1/2',
+  'arith:order=2,range=32,total_bits=20',
   'rice',
   'rice:k=0',
   'golomb',
@@ -65,7 +70,7 @@ const candidates = [
 
 /** Every shape for one of a kind; the rest differ from it in their words only. */
 const shapesOf = (text: string) =>
-  ['huffman', 'exp-golomb'].includes(text)
+  ['huffman', 'arith:order=1,range=32', 'exp-golomb'].includes(text)
     ? shapes
     : shapes.filter(([size]) => size < 65536 && size !== 2);
 
