@@ -2,6 +2,7 @@ import type { Candidate } from '../coders/candidate.ts';
 import type { Setup } from '../coders/contract.ts';
 import { InputError } from '../errors/errors.ts';
 import { exportArith } from './export-arith.ts';
+import { exportBlockHuffman } from './export-block-huffman.ts';
 import { exportHuffman } from './export-huffman.ts';
 import { exportInteger } from './export-integer.ts';
 import type { ExportedCoder, Exporter } from './exporter.ts';
@@ -9,6 +10,7 @@ import type { ExportedCoder, Exporter } from './exporter.ts';
 /** Coders that can be exported, by name. */
 const exporters: ReadonlyMap<string, Exporter> = new Map([
   ['huffman', exportHuffman],
+  ['block-huffman', exportBlockHuffman],
   ['arith', exportArith],
   ['rice', exportInteger],
   ['golomb', exportInteger],

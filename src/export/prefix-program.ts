@@ -14,17 +14,40 @@ function extentOf({ lengths, count }: PrefixTable): { shortest: number; longest:
   };
 }
 
+/** Names of a prefix code's functions, tables and constants, so that a program can hold several codes. */
+const OWN_NAMES =
+  /\b(put_word|get_word|word|word_bits|first_word|words|first_entry|entry|SHORTEST|LENGTHS)\b/g;
+
+function named(text: string, prefix: string): string {
+  return text.replace(OWN_NAMES, (name) =>
+    name === name.toUpperCase() ? `${prefix.toUpperCase()}${name}` : `${prefix}${name}`,
+  );
+}
+
+const renamed = (tables: LanguageArray[], prefix: string): LanguageArray[] =>
+  tables.map((table) => ({ ...table, name: `${prefix}${table.name}` }));
+
 /** Constants of the programs below. */
-export function prefixConstants(table: PrefixTable): ReadonlyMap<string, number> {
+export function prefixConstants(table: PrefixTable, prefix = ''): ReadonlyMap<string, number> {
   const { shortest, longest } = extentOf(table);
+  const upper = prefix.toUpperCase();
   return new Map([
-    ['SHORTEST', shortest],
-    ['LENGTHS', longest - shortest + 1],
+    [`${upper}SHORTEST`, shortest],
+    [`${upper}LENGTHS`, longest - shortest + 1],
   ]);
 }
 
-/** `put_word(i)`: the word of the table's i-th entry. */
-export function prefixOut(table: PrefixTable): string {
+/** Longest word in bits. */
+export function longestWordBits(table: PrefixTable): number {
+  return extentOf(table).longest;
+}
+
+/** `put_word(i)`: the word of the table's i-th entry. @param prefix  stands before every name */
+export function prefixOut(table: PrefixTable, prefix = ''): string {
+  return named(wordOut(table), prefix);
+}
+
+function wordOut(table: PrefixTable): string {
   const { longest } = extentOf(table);
   if (longest === 0) {
     return `
@@ -51,7 +74,11 @@ fn put_word(entry) {
 }
 
 /** Tables of {@link prefixOut}. */
-export function prefixOutTables(table: PrefixTable): LanguageArray[] {
+export function prefixOutTables(table: PrefixTable, prefix = ''): LanguageArray[] {
+  return renamed(wordTables(table), prefix);
+}
+
+function wordTables(table: PrefixTable): LanguageArray[] {
   const lengths = table.lengths.slice(0, table.count);
   const { longest } = extentOf(table);
   if (longest === 0) return [];
@@ -67,12 +94,21 @@ export function prefixOutTables(table: PrefixTable): LanguageArray[] {
 }
 
 /** `get_word()`: what stands in the table for the word that comes next. */
-export function prefixIn(table: PrefixTable): string {
+export function prefixIn(table: PrefixTable, prefix = ''): string {
+  return named(wordIn(table, 'entry[PLACE]'), prefix);
+}
+
+/** `get_word()` gives the word's place in canonical order instead: {@link canonicalOrder}. */
+export function prefixPlaceIn(table: PrefixTable, prefix = ''): string {
+  return named(wordIn(table, 'PLACE'), prefix);
+}
+
+function wordIn(table: PrefixTable, result: string): string {
   const { longest } = extentOf(table);
   if (longest === 0) {
     return `
 fn get_word() {
-  return entry[0];
+  return ${result.replace('PLACE', '0')};
 }
 `;
   }
@@ -83,7 +119,7 @@ fn get_word() {
   let i = 0;
   while (status == OK) {
     if (code >= first_word[i] && code - first_word[i] < words[i]) {
-      return entry[first_entry[i] + (code - first_word[i])];
+      return ${result.replace('PLACE', 'first_entry[i] + (code - first_word[i])')};
     }
     i = i + 1;
     if (i == LENGTHS) {
@@ -96,23 +132,32 @@ fn get_word() {
 `;
 }
 
-/** Tables of {@link prefixIn}: for each length from the shortest on, then the entries in canonical order. */
-export function prefixInTables(table: PrefixTable): LanguageArray[] {
-  const { symbols, lengths, count } = table;
-  const { shortest, longest } = extentOf(table);
-  const tally = new LengthTally();
-  tally.take(lengths, count);
-  const order = Array.from({ length: count }, (_, i) => i).sort(
+/** Indices of a table's entries in canonical order: by length, then as listed. */
+export function canonicalOrder({ lengths, count }: PrefixTable): number[] {
+  return Array.from({ length: count }, (_, i) => i).sort(
     (a, b) => lengths[a] - lengths[b] || a - b,
   );
-  const entries = order.map((i) => symbols[i]);
+}
+
+/** Tables of {@link prefixIn}: for each length from the shortest on, then the entries in canonical order. */
+export function prefixInTables(table: PrefixTable, prefix = ''): LanguageArray[] {
+  const entries = canonicalOrder(table).map((i) => table.symbols[i]);
   const entry: LanguageArray = {
     name: 'entry',
-    elementBytes: elementBytesFor(Math.max(...entries)),
+    elementBytes: elementBytesFor(entries.reduce((most, value) => Math.max(most, value), 0)),
     values: entries,
     comment: 'What the words stand for, in canonical order.',
   };
-  if (longest === 0) return [entry];
+  return [...prefixPlaceTables(table, prefix), ...renamed([entry], prefix)];
+}
+
+/** Tables of {@link prefixPlaceIn}. */
+export function prefixPlaceTables(table: PrefixTable, prefix = ''): LanguageArray[] {
+  const { lengths, count } = table;
+  const { shortest, longest } = extentOf(table);
+  if (longest === 0) return [];
+  const tally = new LengthTally();
+  tally.take(lengths, count);
   const firstWords: number[] = [];
   const words: number[] = [];
   const places: number[] = [];
@@ -123,25 +168,27 @@ export function prefixInTables(table: PrefixTable): LanguageArray[] {
     places.push(place);
     place += tally.counts[length];
   }
-  return [
-    {
-      name: 'first_word',
-      elementBytes: elementBytesFor(Math.max(...firstWords)),
-      values: firstWords,
-      comment: 'For each length from the shortest on: its first word,',
-    },
-    {
-      name: 'words',
-      elementBytes: elementBytesFor(Math.max(...words)),
-      values: words,
-      comment: 'how many words it has,',
-    },
-    {
-      name: 'first_entry',
-      elementBytes: elementBytesFor(count),
-      values: places,
-      comment: 'and the place of the first of them.',
-    },
-    entry,
-  ];
+  return renamed(
+    [
+      {
+        name: 'first_word',
+        elementBytes: elementBytesFor(Math.max(...firstWords)),
+        values: firstWords,
+        comment: 'For each length from the shortest on: its first word,',
+      },
+      {
+        name: 'words',
+        elementBytes: elementBytesFor(Math.max(...words)),
+        values: words,
+        comment: 'how many words it has,',
+      },
+      {
+        name: 'first_entry',
+        elementBytes: elementBytesFor(count),
+        values: places,
+        comment: 'and the place of the first of them.',
+      },
+    ],
+    prefix,
+  );
 }

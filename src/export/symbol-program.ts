@@ -16,13 +16,14 @@ fn encode_symbols(count) {
 
 const SYMBOL_CHECK = / {4}if \(symbol >= ALPHABET\) \{[^}]*\}\n/;
 
-/**
- * Symbols checked against the alphabet and coded one by one. Where the alphabet fills the type of a symbol there is nothing to check,
- * and a compiler would say so.
- */
+/** Whether every value of a symbol's type is a symbol, so that there is nothing to check, and a compiler would say so. */
+export function fillsItsType(alphabetSize: number): boolean {
+  return alphabetSize === 2 ** 8 || alphabetSize === 2 ** 16;
+}
+
+/** Symbols checked against the alphabet and coded one by one. */
 export function checkedSymbols(alphabetSize: number): string {
-  const fills = alphabetSize === 2 ** 8 || alphabetSize === 2 ** 16;
-  return fills ? SYMBOLS_OUT.replace(SYMBOL_CHECK, '') : SYMBOLS_OUT;
+  return fillsItsType(alphabetSize) ? SYMBOLS_OUT.replace(SYMBOL_CHECK, '') : SYMBOLS_OUT;
 }
 
 /** `decode_symbols(count)` of coders with one word a symbol, read by `get_word()`. */

@@ -53,6 +53,9 @@ const shapes: [alphabet: number, lengths: Lengths, align: number, units: number]
 const candidates = [
   'huffman',
   'huffman:maxbits=32,unseen=add:1/1000',
+  'block-huffman:n=1',
+  'block-huffman:n=2',
+  'block-huffman:n=3',
   'arith:order=0,range=32',
   'arith:order=1,range=32',
   'arith:order=2,range=32,position=3',
