@@ -25,6 +25,16 @@ export type {
   Trainer,
 } from './coders/contract.ts';
 export { coderEntries } from './coders/registry.ts';
+export { compareCellSpeeds, type TimedCell } from './compare/cell-speeds.ts';
+export { type Comparison, compareCells } from './compare/compare-cells.ts';
+export {
+  compareRun,
+  type RankedGroup,
+  type Ranks,
+  type RunComparison,
+  ranksOf,
+} from './compare/compare-run.ts';
+export { type LoadedRun, loadRun } from './compare/read-messages.ts';
 export { type Plan, parsePlan, readPlan } from './corpus/plan.ts';
 export {
   type EntropyByOrder,

@@ -1,12 +1,15 @@
+import { readFileSync } from 'node:fs';
 import { fileURLToPath } from 'node:url';
 import { describe, expect, it } from 'vitest';
 import { parseCandidates } from '../src/coders/candidate.ts';
 import type { Reset, TablePolicy } from '../src/coders/contract.ts';
-import { compareCells } from '../src/compare/compare-cells.ts';
 import type { CorpusSpec } from '../src/corpus/corpus.ts';
 import type { SplitRule } from '../src/corpus/decide-split.ts';
+import { parsePlan } from '../src/corpus/plan.ts';
 import { loadCorpusData } from '../src/harness/load-corpus-data.ts';
+import { requestOf } from '../src/harness/plan-request.ts';
 import { type MessagePairs, type RunResult, runAll } from '../src/harness/run-all.ts';
+import { intoBlocks, pairedDifference } from '../src/statistics/paired-difference.ts';
 
 /**
  * What the demo claims, decided by a paired bootstrap whose interval must exclude 0. Nothing here is a kept figure: each
@@ -60,13 +63,18 @@ function spreadTables(result: RunResult, id: string): MessagePairs {
 
 /** Bits per symbol by which `b` needs more than `a`, once the interval excludes 0. */
 function decidedDifference(result: RunResult, a: string, b: string): number {
-  const side = (id: string) => ({ id, pairs: spreadTables(result, id) });
-  const comparison = compareCells('demo', side(a), side(b));
-  expect(comparison, `${a} against ${b}`).toBeDefined();
-  expect(comparison!.decided, `${a} against ${b}: ${comparison!.low} to ${comparison!.high}`).toBe(
-    true,
-  );
-  return comparison!.difference;
+  const [sideA, sideB] = [spreadTables(result, a), spreadTables(result, b)];
+  // Neighbouring messages are grouped where there are many of them.
+  const group = (values: Float64Array) => intoBlocks(values, 256);
+  const found = pairedDifference({
+    bitsA: group(sideA.bits),
+    bitsB: group(sideB.bits),
+    symbols: group(sideA.symbols),
+    seed: 1,
+    repetitions: 2000,
+  });
+  expect(found.decided, `${a} against ${b}: ${found.low} to ${found.high}`).toBe(true);
+  return found.difference;
 }
 
 function bestOf(result: RunResult, select: (id: string) => boolean): string {
@@ -125,5 +133,32 @@ describe('sent as short messages', () => {
     );
     const adaptive = bestOf(result, (id) => id.includes('@learned/'));
     expect(decidedDifference(result, adaptive, 'arith:order=1@shipped/message')).toBeGreaterThan(0);
+  }, 60_000);
+});
+
+describe('sent as filled packets', () => {
+  it('telemetry.bin: fields:auto carries at least twice the records of any byte-wise candidate', async () => {
+    const {
+      timing: _,
+      ageing: __,
+      ...request
+    } = await requestOf(
+      parsePlan(readFileSync(`${folder}/plan.yaml`, 'utf8'), `${folder}/plan.yaml`),
+    );
+    const { record } = await runAll({
+      ...request,
+      corpora: request.corpora.filter(({ name }) => name === 'telemetry'),
+    });
+    const recordsOf = (cells: typeof record.cells) =>
+      Math.max(...cells.map(({ units_per_message }) => units_per_message!.mean));
+    const byFields = record.cells.filter(({ coder }) => coder === 'fields');
+    const byBytes = record.cells.filter(({ coder }) => coder !== 'fields');
+    for (const cell of record.cells) expect(cell.verified, `${cell.id} ${cell.failure}`).toBe(true);
+    // The strongest of them learn by the place of the byte in its record.
+    for (const policy of ['shipped', 'learned', 'primed'])
+      expect(byBytes.map(({ id }) => id)).toContain(
+        `telemetry/arith:order=0,position=24@${policy}/message`,
+      );
+    expect(recordsOf(byFields) / recordsOf(byBytes)).toBeGreaterThanOrEqual(2);
   }, 60_000);
 });

@@ -56,6 +56,15 @@ export class BitReader {
   }
 
   /**
+   * Brings more bytes into a reader whose bytes are a window; there are none here.
+   * @param fromByte  byte of the window that is needed next
+   * @returns bytes by which everything in the window moved down
+   */
+  refill(_fromByte: number): number {
+    return 0;
+  }
+
+  /**
    * The next `width` bits as an unsigned integer; bits past the limit are zeros.
    * @param width  0 … 32
    */

@@ -1,5 +1,8 @@
 import { BugError, PromiseError } from '../errors/errors.ts';
 
+/** Bytes that make a call of the sink worth while. */
+const DRAIN_BYTES = 2 ** 16;
+
 /**
  * Writes bits, most significant first, into a growing byte buffer.
  *
@@ -9,25 +12,46 @@ import { BugError, PromiseError } from '../errors/errors.ts';
  * Kernels that cannot afford a call per symbol take the state into locals between {@link reserve}
  * and {@link adopt}: `bytes`, `byteLength`, and `pending`, the low `pendingBits` (0 … 7) bits not
  * yet stored.
+ *
+ * With a sink, whole bytes leave the buffer at {@link drain}; positions count on over them.
  */
 export class BitWriter {
   bytes: Uint8Array;
-  /** Whole bytes stored so far. */
+  /** Whole bytes stored so far, those drained left out. */
   byteLength = 0;
   /** Bits written but not yet stored, right-justified; below 2^pendingBits. */
   pending = 0;
   /** 0 … 7 */
   pendingBits = 0;
   #finished = false;
+  readonly #sink: ((bytes: Uint8Array) => void) | undefined;
+  #drainedBytes = 0;
 
-  /** @param capacityBytes  first size of the buffer, in bytes; it doubles when full. */
-  constructor(capacityBytes = 1024) {
+  /**
+   * @param capacityBytes  first size of the buffer, in bytes; it doubles when full.
+   * @param sink  takes what is drained; the array it is given changes afterwards
+   */
+  constructor(capacityBytes = 1024, sink?: (bytes: Uint8Array) => void) {
     this.bytes = new Uint8Array(Math.max(16, capacityBytes));
+    this.#sink = sink;
   }
 
   /** Bits written so far. */
   get position(): number {
-    return this.byteLength * 8 + this.pendingBits;
+    return (this.#drainedBytes + this.byteLength) * 8 + this.pendingBits;
+  }
+
+  /** Whether bytes wait that are worth handing to a sink. */
+  get shouldDrain(): boolean {
+    return this.#sink !== undefined && this.byteLength >= DRAIN_BYTES;
+  }
+
+  /** Hands all whole bytes to the sink; nothing without one. No kernel may hold the state meanwhile. */
+  drain(): void {
+    if (this.#sink === undefined || this.byteLength === 0) return;
+    this.#sink(this.bytes.subarray(0, this.byteLength));
+    this.#drainedBytes += this.byteLength;
+    this.byteLength = 0;
   }
 
   /** Makes room for `count` more bytes, so that a kernel may store that many without checking. */
@@ -137,12 +161,16 @@ export class BitWriter {
     return align - over;
   }
 
-  /** The bytes, the last one filled up with zeros. The writer cannot be used afterwards. */
+  /**
+   * The bytes, the last one filled up with zeros; with a sink it has got them all and none are left. The writer cannot be
+   * used afterwards.
+   */
   finish(): { bytes: Uint8Array; bitLength: number } {
     const bitLength = this.position;
     if (this.pendingBits > 0) this.writeRun(0, 8 - this.pendingBits);
     if (this.#finished) throw new BugError('a bit writer was finished twice');
     this.#finished = true;
+    this.drain();
     return { bytes: this.bytes.slice(0, this.byteLength), bitLength };
   }
 }

@@ -1,7 +1,7 @@
 import { exitCodes } from './exit.ts';
 
 /**
- * Listens for Ctrl-C while `work` runs: the first one asks the run to stop at its next step and keep what it has, the second
+ * Listens for Ctrl-C while `work` runs: the first one asks the run to begin nothing new and keep what it has, the second
  * one ends the program at once.
  */
 export async function whileInterruptible<T>(
@@ -11,7 +11,7 @@ export async function whileInterruptible<T>(
   const listen = (): void => {
     interrupts++;
     if (interrupts > 1) process.exit(exitCodes.interrupted);
-    process.stderr.write('bitassay: stopping after this step; Ctrl-C again ends at once\n');
+    process.stderr.write('bitassay: finishing what is in hand; Ctrl-C again ends at once\n');
   };
   process.on('SIGINT', listen);
   try {

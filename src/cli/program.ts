@@ -1,6 +1,8 @@
 import { Command } from 'commander';
 import { toolVersion } from '../harness/environment.ts';
+import { registerCache } from './commands/cache.ts';
 import { registerCalibrate } from './commands/calibrate.ts';
+import { registerChoose } from './commands/choose.ts';
 import { registerCoders } from './commands/coders.ts';
 import { registerDecode } from './commands/decode.ts';
 import { registerEncode } from './commands/encode.ts';
@@ -28,7 +30,9 @@ export function buildProgram(): Command {
     registerCoders,
     registerEncode,
     registerDecode,
+    registerChoose,
     registerExport,
+    registerCache,
   ];
   for (const add of register) add(program);
   for (const command of program.commands)
@@ -43,6 +47,6 @@ Start here:
   bitassay try FILE --messages lines     the same, line by line
   bitassay run PLAN.yaml                 the product's own framing and table policies
 
-Exit codes: 0 done, 2 bad use or input, 3 a cell failed, 4 the environment, 70 a bug of bitassay, 130 interrupted.`,
+Exit codes: 0 done, 1 the answer is no, 2 bad use or input, 3 a cell failed, 4 the environment, 70 a bug of bitassay, 130 interrupted.`,
   );
 }

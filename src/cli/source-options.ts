@@ -1,6 +1,7 @@
 import type { Command } from 'commander';
 import { Option } from 'commander';
 import type { CorpusSpec } from '../corpus/corpus.ts';
+import type { SampleRule } from '../corpus/sample-rule.ts';
 import { InputError } from '../errors/errors.ts';
 import { checkFieldsApart, parseRecordField, type RecordField } from '../symbols/record.ts';
 
@@ -13,6 +14,7 @@ export interface SourceOptions {
   readonly field: readonly string[];
   readonly step?: number;
   readonly alphabet?: number;
+  readonly sample?: SampleRule;
 }
 
 const collect = (value: string, before: string[]): string[] => [...before, value];
@@ -93,6 +95,7 @@ export function specFromOptions(
     ...(lengths === undefined ? {} : { lengths }),
     ...(step === undefined ? {} : { step }),
     ...(alphabet === undefined ? {} : { alphabet }),
+    ...(options.sample === undefined ? {} : { sample: options.sample }),
   };
 }
 

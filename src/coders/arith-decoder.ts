@@ -63,7 +63,8 @@ function decode(
   };
 }
 
-function readTable(
+/** Reads a table that was sent; the reader is left after it. */
+export function readTable(
   settings: ArithSettings,
   setup: Setup,
   maxPairs: number,

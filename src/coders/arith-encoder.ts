@@ -23,9 +23,12 @@ import { MessagePieces, type PieceSink, wholeMessages } from './message-pieces.t
 export const continuationOf = (lengths: Lengths): 'zeros' | 'any' =>
   lengths === 'link' ? 'zeros' : 'any';
 
+/** With a sink, bytes of an open message are handed over from this many on. */
+const SETTLE_BYTES = 2 ** 16;
+
 /** Codes messages one after another: count, table if sent, code string, padding. */
 class ArithMessages implements PieceSink {
-  readonly writer = new BitWriter();
+  readonly writer: BitWriter;
   readonly ledger: MessageLedger;
   readonly #settings: ArithSettings;
   readonly #setup: Setup;
@@ -33,10 +36,12 @@ class ArithMessages implements PieceSink {
   readonly #ownPairs: PairTree | undefined;
   #model: SymbolModel | undefined;
   #tableIsDue = false;
+  #settledAt = 0;
 
   constructor(settings: ArithSettings, setup: Setup) {
     this.#settings = settings;
     this.#setup = setup;
+    this.writer = new BitWriter(1024, setup.sink);
     this.ledger = new MessageLedger(setup.align);
     this.#stage = new RangeEncoder(this.writer, settings.rangeBits);
     if (setup.policy === 'shipped') {
@@ -58,12 +63,18 @@ class ArithMessages implements PieceSink {
     }
     if (startsAtMessages(this.#setup)) this.#model?.reset();
     this.#stage.begin();
+    this.#settledAt = 0;
   }
 
   take(symbols: SymbolArray, from: number, to: number): void {
     const model = this.#model;
     if (model === undefined) throw new BugError('arith was to code without a model');
     model.encode(symbols, from, to, this.#stage);
+    if (this.#setup.sink === undefined) return;
+    const { shiftedBytes } = this.#stage;
+    if (shiftedBytes - this.#settledAt < SETTLE_BYTES) return;
+    this.#stage.settle();
+    this.#settledAt = shiftedBytes;
   }
 
   end(): void {
@@ -85,6 +96,7 @@ class ArithMessages implements PieceSink {
       this.#sendTable(pairs);
     }
     this.#stage.begin();
+    this.#settledAt = 0;
     if (to > from) this.take(symbols, from, to);
     this.end();
   }

@@ -47,7 +47,8 @@ export function arithPrice(settings: ArithSettings, sequence: SymbolSequence, se
   return { idealBits, messageIdealBits, fit: { bits, of: { order } } };
 }
 
-function pricedModel(settings: ArithSettings, setup: Setup): SymbolModel {
+/** A model with raw counts in place of quantised frequencies. */
+export function pricedModel(settings: ArithSettings, setup: Setup): SymbolModel {
   const { order } = settings;
   if (setup.policy === 'shipped') {
     const { pairs } = tablesFor(setup, 'shipped');

@@ -43,6 +43,7 @@ export function arithTrainer(settings: ArithSettings, setup: Setup): Trainer {
     setup.fill === undefined
       ? new PairTrainer(alphabetSize, order, startAtMessages, positions)
       : new UnitPairTrainer(alphabetSize, order, positions);
+  trainer.pairs.tree.memory.narrow(setup.modelBytes);
   return {
     push: (chunk) => trainer.push(chunk),
     finish: (): ArithTables => {
@@ -64,6 +65,7 @@ const UNITS_A_START = 8;
 /** Runs the model over the train split without a stage. */
 function primedTrainer(settings: ArithSettings, setup: Setup): Trainer {
   const model = settings.newModel(setup.alphabetSize);
+  model.memory.narrow(setup.modelBytes);
   const startEvery = setup.fill === undefined ? 1 : UNITS_A_START;
   let left = startEvery;
   return {
@@ -89,6 +91,7 @@ export function adaptiveModelFor(settings: ArithSettings, setup: Setup): Adaptiv
     setup.policy === 'primed'
       ? tablesFor(setup, 'primed').model.clone()
       : settings.newModel(setup.alphabetSize);
+  model.memory.narrow(setup.modelBytes);
   if (setup.reset === 'message') model.markResetState();
   model.startContexts();
   return model;

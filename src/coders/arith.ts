@@ -1,9 +1,13 @@
 import { arithDecoder } from './arith-decoder.ts';
 import { arithEncoder, arithFiller } from './arith-encoder.ts';
+import { arithPricer, decodeArithInPieces } from './arith-pieces.ts';
 import { arithPrice } from './arith-price.ts';
 import { ArithSettings, arithDeclaration } from './arith-settings.ts';
 import { type ArithTables, arithTrainer, tablesFor } from './arith-tables.ts';
 import type { Coder, CoderEntry, Tables } from './contract.ts';
+import { remembered } from './cost.ts';
+import { adaptiveCosts, adaptivePass } from './cost-adaptive.ts';
+import { sentStaticCosts, sentStaticOperations } from './cost-sent-static.ts';
 import { staticCosts, staticOperations } from './cost-static.ts';
 import type { ParameterValues } from './parameters.ts';
 
@@ -19,6 +23,7 @@ export const arith: CoderEntry = { declaration: arithDeclaration, create };
 
 function create(values: ParameterValues): Coder {
   const settings = new ArithSettings(values);
+  const passOf = remembered((sequence, setup) => adaptivePass(settings, sequence, setup));
   return {
     declares: arithDeclaration,
     check: (setup) => settings.check(setup),
@@ -39,18 +44,38 @@ function create(values: ParameterValues): Coder {
       settings.check(setup);
       return arithDecoder(settings, setup, limits);
     },
+    inPieces: {
+      decode: (input, setup, limits, taker) => {
+        settings.check(setup);
+        return decodeArithInPieces(settings, input, setup, limits, taker);
+      },
+      pricer: (setup) => {
+        settings.check(setup);
+        return arithPricer(settings, setup);
+      },
+    },
     price: (sequence, setup) => {
       settings.check(setup);
       return arithPrice(settings, sequence, setup);
     },
-    costs: (setup, longestCodedBytes) =>
-      setup.policy === 'shipped'
-        ? staticCosts(tablesFor(setup, 'shipped').table, settings.rangeBits, longestCodedBytes)
-        : undefined,
-    operations: (sequence, setup) =>
-      setup.policy === 'shipped'
-        ? staticOperations(tablesFor(setup, 'shipped').table, settings.rangeBits, sequence)
-        : undefined,
+    costs(setup, longestCodedBytes, sequence) {
+      const { policy } = setup;
+      if (policy === 'shipped') {
+        const { table } = tablesFor(setup, policy);
+        return staticCosts(table, settings.rangeBits, longestCodedBytes);
+      }
+      return policy === 'sent'
+        ? sentStaticCosts(settings, sequence, setup, longestCodedBytes)
+        : adaptiveCosts(settings, setup, passOf(sequence, setup), longestCodedBytes);
+    },
+    operations(sequence, setup) {
+      const { policy } = setup;
+      if (policy === 'shipped')
+        return staticOperations(tablesFor(setup, policy).table, settings.rangeBits, sequence);
+      return policy === 'sent'
+        ? sentStaticOperations(settings, sequence, setup)
+        : passOf(sequence, setup).operations;
+    },
     decoderHolds: () => settings.rangeBits / 8,
     describeTables: (tables) => describe(tables as ArithTables, settings),
   };

@@ -6,7 +6,9 @@ import { priceBlocks } from './block-huffman-price.ts';
 import { blockTables, blockTrainer, describeBlocks } from './block-huffman-tables.ts';
 import type { Coder, CoderEntry, Declaration, Setup, Tables } from './contract.ts';
 import { blockCosts } from './cost-blocks.ts';
+import { blockOperations } from './cost-blocks-operations.ts';
 import { PREFIX_WINDOW_BYTES } from './cost-prefix.ts';
+import { sentBlockCosts, sentBlockOperations } from './cost-sent-prefix.ts';
 import { symbolWidth } from './fixed.ts';
 import type { ParameterValues } from './parameters.ts';
 
@@ -123,10 +125,15 @@ function createBlock(values: ParameterValues): Coder {
       return blockDecoder(setup, limits, n, maxBits, shipped);
     },
 
-    costs: (setup) =>
+    costs: (setup, _longestCodedBytes, sequence) =>
       setup.policy === 'shipped'
         ? blockCosts(fitBlocks(blockTables(setup, n), setup, maxBits), n, setup.alphabetSize)
-        : undefined,
+        : sentBlockCosts(sequence, setup, n, maxBits),
+
+    operations: (sequence, setup) =>
+      setup.policy === 'shipped'
+        ? blockOperations(fitBlocks(blockTables(setup, n), setup, maxBits), n, sequence)
+        : sentBlockOperations(sequence, setup, n, maxBits),
 
     decoderHolds: () => PREFIX_WINDOW_BYTES,
 

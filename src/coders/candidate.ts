@@ -30,10 +30,13 @@ const COMMON_KEYS = ['tables_in_set', 'stored', 'after'];
 const LATER_KEYS = ['stage', 'lanes', 'refresh'];
 
 /** The registry entry of that name. Throws InputError with the nearest name. */
-export function coderEntryOf(name: string): CoderEntry {
-  const entry = coderEntries.find((e) => e.declaration.name === name);
+export function coderEntryOf(
+  name: string,
+  entries: readonly CoderEntry[] = coderEntries,
+): CoderEntry {
+  const entry = entries.find((e) => e.declaration.name === name);
   if (entry !== undefined) return entry;
-  const names = coderEntries.map((e) => e.declaration.name);
+  const names = entries.map((e) => e.declaration.name);
   const near = nearestWord(name, names);
   throw new InputError(`there is no coder named ${JSON.stringify(name)}`, {
     expected: `one of ${names.join(', ')}`,
@@ -85,9 +88,13 @@ export function countCandidates(text: string): number {
  * @throws InputError for an unknown coder or parameter, a value out of range, an empty range, or more than 100 000 candidates
  */
 export function parseCandidates(text: string): Candidate[] {
+  return candidatesAmong(text, coderEntries);
+}
+
+function candidatesAmong(text: string, entries: readonly CoderEntry[]): Candidate[] {
   const colon = text.indexOf(':');
   const name = (colon < 0 ? text : text.slice(0, colon)).trim();
-  const entry = coderEntryOf(name);
+  const entry = coderEntryOf(name, entries);
   const declaration = entry.declaration;
   const pairs = colon < 0 ? [] : splitPairs(text, declaration, text.slice(colon + 1));
   if (countCandidates(text) > 100_000) {
@@ -128,7 +135,12 @@ export function parseCandidates(text: string): Candidate[] {
 
 /** The one candidate behind a text without ranges. Throws InputError when there are several. */
 export function parseCandidate(text: string): Candidate {
-  const candidates = parseCandidates(text);
+  return parseCandidateWith(text, []);
+}
+
+/** The same, with coders besides the registry's. */
+export function parseCandidateWith(text: string, more: readonly CoderEntry[]): Candidate {
+  const candidates = candidatesAmong(text, [...coderEntries, ...more]);
   if (candidates.length !== 1) {
     throw new InputError(
       `${JSON.stringify(text)} stands for ${candidates.length} candidates where one is wanted`,

@@ -1,6 +1,7 @@
 import type { RecordShape } from '../symbols/record.ts';
 import type { SymbolChunk, SymbolSequence } from '../symbols/sequence.ts';
 import type { BothEnds, EndCost, EndOperations } from './cost.ts';
+import type { InPieces } from './in-pieces.ts';
 import type { ParameterDeclaration, ParameterValues } from './parameters.ts';
 
 /** Where a coder's knowledge comes from; `none` for coders that need no tables and keep no state between messages. */
@@ -55,6 +56,13 @@ export interface Setup {
   readonly record?: RecordShape;
   /** What the corpus says of how fields are coded, by field name: see symbols/field-choice.ts. */
   readonly fields?: Readonly<Record<string, string>>;
+  /**
+   * Only for coders that work in pieces: takes coded bytes as soon as nothing can change them, so that `Coded.bytes` is
+   * empty. The array is the encoder's own and changes after the call.
+   */
+  readonly sink?: (bytes: Uint8Array) => void;
+  /** Most bytes that a model which grows may take; absent: the coder's own bound. */
+  readonly modelBytes?: number;
 }
 
 /** Exact integers, in bits, summed over messages; `payloadBits` is the one real number (docs/account.md). */
@@ -210,13 +218,20 @@ export interface Coder {
   /** Whether one more symbol never makes a message shorter, so that a fill may skip lengths. Absent: not known. */
   growsSteadily?(setup: Setup): boolean;
   decoder(setup: Setup, limits: DecodeLimits): Decoder;
+  /** For data that memory cannot hold. Absent: the coder takes a unit as a whole. */
+  readonly inPieces?: InPieces;
   /** Absent for coders that have no probabilities (references). `sequence` is one whole unit. */
   price?(sequence: SymbolSequence, setup: Setup): Price;
   /**
    * What each end would take on a device. Absent, or undefined under this setup: no exported form is known.
    * @param longestCodedBytes  coded bytes of the longest message
+   * @param sequence           one whole unit: what is sent or grown depends on what is coded
    */
-  costs?(setup: Setup, longestCodedBytes: number): BothEnds<EndCost> | undefined;
+  costs?(
+    setup: Setup,
+    longestCodedBytes: number,
+    sequence: SymbolSequence,
+  ): BothEnds<EndCost> | undefined;
   /** Operations of each end, counted over one whole unit in a pass of its own; as `costs` where not known. */
   operations?(sequence: SymbolSequence, setup: Setup): EndOperations | undefined;
   /** Coded bytes that a decoder holds before its first symbol, tables sent apart; `message`: the whole message. */

@@ -3,7 +3,7 @@ import { type BothEnds, type CodeEstimate, type EndCost, endCost, integerBytes }
 import { PREFIX_CODE, PREFIX_STATE_BYTES, prefixTableBytes } from './cost-prefix.ts';
 
 /** A prefix code's, with a search among the blocks; or with the cutting of a block into its symbols. */
-const BLOCK_CODE: BothEnds<CodeEstimate> = {
+export const BLOCK_CODE: BothEnds<CodeEstimate> = {
   encoder: { statements: PREFIX_CODE.encoder.statements + 20, nestedCalls: 2 },
   decoder: { statements: PREFIX_CODE.decoder.statements + 16, nestedCalls: 2 },
 };

@@ -1,7 +1,8 @@
 import { OperationTally } from '../models/counting-tally.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
-import type { Setup, TablePolicy } from './contract.ts';
-import { type BothEnds, type EndCost, type EndOperations, endCost } from './cost.ts';
+import type { Setup } from './contract.ts';
+import { type BothEnds, type EndCost, type EndOperations, endCost, integerBytes } from './cost.ts';
+import { SymbolCounts } from './huffman-counts.ts';
 import { startMean } from './integer-encoder.ts';
 import type { IntegerFamily } from './integer-family.ts';
 import { integerTables } from './integer-tables.ts';
@@ -14,12 +15,33 @@ const STATE_BYTES = 9;
 /** Sum and count of a running mean. */
 const MEAN_BYTES = 8;
 
+/** What the search for a parameter takes: count, weigh each one. */
+const CHOICE_STATEMENTS = 40;
+
 /**
  * Costs of an integer code. Its parameter is one byte of flash, or under `learned` and `primed` a running mean, whose first
- * values take as many bytes of flash as of RAM. Undefined under `sent`, whose encoder counts symbols.
+ * values take as many bytes of flash as of RAM. Under `sent` it is one byte of RAM, and the encoder counts symbols: by symbol
+ * a count as wide as the most symbols that share a parameter need, and the list of those seen.
  */
-export function integerCosts(policy: TablePolicy): BothEnds<EndCost> | undefined {
-  if (policy === 'sent') return undefined;
+export function integerCosts(
+  { policy, reset, alphabetSize }: Setup,
+  { messageEnds }: SymbolSequence,
+): BothEnds<EndCost> {
+  if (policy === 'sent') {
+    let mostSymbols = 0;
+    messageEnds.forEach((end, i) => {
+      const from = i === 0 || reset === 'never' ? 0 : messageEnds[i - 1];
+      mostSymbols = Math.max(mostSymbols, end - from);
+    });
+    const countBytes = alphabetSize * (integerBytes(mostSymbols) + integerBytes(alphabetSize - 1));
+    return {
+      encoder: endCost(0, STATE_BYTES + 1 + countBytes, {
+        statements: 14 + CHOICE_STATEMENTS,
+        nestedCalls: 2,
+      }),
+      decoder: endCost(0, STATE_BYTES + 1, { statements: 18, nestedCalls: 2 }),
+    };
+  }
   const adapts = policy === 'learned' || policy === 'primed';
   const flashBytes = adapts ? MEAN_BYTES : 1;
   const stateBytes = STATE_BYTES + (adapts ? MEAN_BYTES : 0);
@@ -32,7 +54,7 @@ export function integerCosts(policy: TablePolicy): BothEnds<EndCost> | undefined
 
 /**
  * Counts the words of a sequence, and where the parameter adapts its rule and the mean's update (whether it is halved).
- * Undefined under `sent`.
+ * Where parameters are sent, what choosing them takes is not among the counts.
  * @param given  the parameter, where the candidate gives it
  */
 export function integerOperations(
@@ -40,17 +62,24 @@ export function integerOperations(
   { symbols, messageEnds }: SymbolSequence,
   setup: Setup,
   given: number | undefined,
-): EndOperations | undefined {
-  const { policy, reset } = setup;
-  if (policy === 'sent') return undefined;
+): EndOperations {
+  const { policy, reset, alphabetSize } = setup;
   const encoder = new OperationTally();
   const decoder = new OperationTally();
-  const adapts = given === undefined && policy !== 'shipped';
+  const adapts = given === undefined && (policy === 'learned' || policy === 'primed');
+  const fitsEach = given === undefined && policy === 'sent' && reset === 'message';
   const mean = adapts ? startMean(family, setup) : undefined;
-  let parameter = adapts ? 0 : (given ?? integerTables(family, setup).parameter);
+  let parameter = adapts || fitsEach ? 0 : (given ?? integerTables(family, setup).parameter);
+  const chooser = family.chooser();
+  const counts = new SymbolCounts(fitsEach ? alphabetSize : 0);
   let from = 0;
   for (const to of messageEnds) {
     if (reset === 'message') mean?.restart();
+    if (fitsEach) {
+      counts.clear();
+      counts.add(symbols, from, to);
+      parameter = chooser.choose(counts).parameter;
+    }
     for (let i = from; i < to; i++) {
       if (mean !== undefined) {
         family.countAdapting(mean, encoder);

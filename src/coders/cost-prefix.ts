@@ -25,7 +25,7 @@ export const PREFIX_STATE_BYTES = 9;
 export const PREFIX_WINDOW_BYTES = 4;
 
 /** Shortest and longest word of a table in bits; 0, 0 for a lone symbol. */
-function extentOf({ lengths, count }: PrefixTable): { shortest: number; longest: number } {
+function extentOf({ lengths, count }: CountedWords): { shortest: number; longest: number } {
   let shortest = ABSENT;
   let longest = 0;
   for (let i = 0; i < count; i++) {
@@ -63,13 +63,26 @@ export function prefixCosts(table: PrefixTable, alphabetSize: number): BothEnds<
   };
 }
 
-/** Counts the words of a sequence; see CountingPrefix. */
+/** What is counted of a table: words and what they stand for. */
+export type CountedWords = Pick<PrefixTable, 'symbols' | 'lengths' | 'count'>;
+
+/** Counts words of a table; see CountingPrefix. */
+export function countingPrefix(
+  table: CountedWords,
+  alphabetSize: number,
+  encoder: OperationTally,
+  decoder: OperationTally,
+): CountingPrefix {
+  const lengths = new Uint8Array(alphabetSize).fill(ABSENT);
+  for (let i = 0; i < table.count; i++) lengths[table.symbols[i]] = table.lengths[i];
+  return new CountingPrefix(lengths, extentOf(table).shortest, encoder, decoder);
+}
+
+/** Counts the words of a sequence. */
 export function prefixOperations(table: PrefixTable, sequence: SymbolSequence): EndOperations {
   const encoder = new OperationTally();
   const decoder = new OperationTally();
-  const lengths = new Uint8Array(sequence.alphabetSize).fill(ABSENT);
-  for (let i = 0; i < table.count; i++) lengths[table.symbols[i]] = table.lengths[i];
-  const counting = new CountingPrefix(lengths, extentOf(table).shortest, encoder, decoder);
+  const counting = countingPrefix(table, sequence.alphabetSize, encoder, decoder);
   counting.code(sequence.symbols, 0, sequence.symbols.length);
   return { encoder: encoder.counts(), decoder: decoder.counts() };
 }

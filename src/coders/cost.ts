@@ -1,4 +1,6 @@
-import type { OperationCounts } from '../models/counting-tally.ts';
+import { addCounts, addSteps, type OperationCounts } from '../models/counting-tally.ts';
+import type { SymbolSequence } from '../symbols/sequence.ts';
+import type { Setup } from './contract.ts';
 
 /**
  * What a coder takes at one end of a device, in bytes, as an exported form with these tables would be laid out. A table's
@@ -53,5 +55,57 @@ export function endCost(flashBytes: number, stateBytes: number, code: CodeEstima
     flashBytes,
     ramBytes: stateBytes + stackBytesOf(code),
     codeBytes: codeBytesOf(code),
+  };
+}
+
+/** The greater of each figure: what an end needs that meets both. */
+export function mostOf(a: EndCost, b: EndCost): EndCost {
+  return {
+    flashBytes: Math.max(a.flashBytes, b.flashBytes),
+    ramBytes: Math.max(a.ramBytes, b.ramBytes),
+    codeBytes: Math.max(a.codeBytes, b.codeBytes),
+  };
+}
+
+/** Both costs together: what an end needs that has both. */
+export function sumOf(a: EndCost, b: EndCost): EndCost {
+  return {
+    flashBytes: a.flashBytes + b.flashBytes,
+    ramBytes: a.ramBytes + b.ramBytes,
+    codeBytes: a.codeBytes + b.codeBytes,
+  };
+}
+
+/** A step around a coder: its tables, state and code beside those of the coder inside. */
+export function extraCost(flashBytes: number, stateBytes: number, statements: number): EndCost {
+  return endCost(flashBytes, stateBytes, { statements, nestedCalls: 0 });
+}
+
+/** `combine` at either end. */
+export function atBothEnds<T>(
+  a: BothEnds<T>,
+  b: BothEnds<T>,
+  combine: (a: T, b: T) => T,
+): BothEnds<T> {
+  return { encoder: combine(a.encoder, b.encoder), decoder: combine(a.decoder, b.decoder) };
+}
+
+/** Operations over several sequences together. */
+export const addOperations = (a: EndOperations, b: EndOperations): EndOperations =>
+  atBothEnds(a, b, addCounts);
+
+/** Operations over the same symbols, which go through both; see {@link addSteps}. */
+export const stackOperations = (a: EndOperations, b: EndOperations): EndOperations =>
+  atBothEnds(a, b, addSteps);
+
+/** Keeps the last result, so that costs and operations of the same unit are found in one pass. */
+export function remembered<T>(
+  make: (sequence: SymbolSequence, setup: Setup) => T,
+): (sequence: SymbolSequence, setup: Setup) => T {
+  let last: { sequence: SymbolSequence; setup: Setup; result: T } | undefined;
+  return (sequence, setup) => {
+    if (last?.sequence !== sequence || last.setup !== setup)
+      last = { sequence, setup, result: make(sequence, setup) };
+    return last.result;
   };
 }

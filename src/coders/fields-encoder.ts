@@ -6,11 +6,11 @@ import { StaticFieldTables, type TokenWriter } from '../models/field-tables.ts';
 import { RangeEncoder } from '../stages/range-encoder.ts';
 import type { SymbolArray } from '../symbols/sequence.ts';
 import type { Encoder, Lengths, Setup } from './contract.ts';
+import { recordCountOf } from './fields-records.ts';
 import type { FieldsSettings } from './fields-settings.ts';
 import {
   adaptiveTablesFor,
   countedInRecords,
-  recordCountOf,
   startsAtMessages,
   tablesFor,
 } from './fields-tables.ts';

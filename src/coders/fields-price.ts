@@ -6,8 +6,9 @@ import { Meter } from '../stages/meter.ts';
 import { fieldChoiceText } from '../symbols/field-choice.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { Price, Setup } from './contract.ts';
+import { recordCountOf } from './fields-records.ts';
 import type { FieldsSettings } from './fields-settings.ts';
-import { adaptiveTablesFor, recordCountOf, startsAtMessages, tablesFor } from './fields-tables.ts';
+import { adaptiveTablesFor, startsAtMessages, tablesFor } from './fields-tables.ts';
 
 function writerFor(
   settings: FieldsSettings,

@@ -19,13 +19,13 @@ export const fieldsDeclaration: Declaration = {
       standard: 'plan',
       bare: true,
       summary:
-        'auto: transform and context of each field by cost on the train split; plan: as the corpus says under fields, else auto',
+        'auto: transform, context and first value of each field by cost on the train split; plan: as the corpus says under fields, else auto',
     },
     {
       key: 'map',
       kind: 'text',
-      form: 'NAME:CHOICE+NAME:CHOICE…, a CHOICE being raw, delta, xor or delta2, alone or with /last, /value or /field:NAME',
-      example: 'dt:delta/last+supply:delta2',
+      form: 'NAME:CHOICE+NAME:CHOICE…, a CHOICE being raw, delta, xor, delta2 or linear:NAME (up to three names), alone or with /last, /value, /field:NAME, /at:NAME or /was:NAME, and then /first:NAME',
+      example: 'dt:delta/last+supply:linear:return_air/was:flags',
       summary: 'the choice of each field, in place of the plan’s; fields not named are raw',
     },
     {
@@ -43,9 +43,9 @@ export const fieldsDeclaration: Declaration = {
   maxAlphabetSize: 256,
   worstCase: 'at most 15 bits and its own width a field and record, and 2 bits a message',
   memory:
-    'up to 10 tables a field, 2 bytes an entry: 2^w entries at a width of w ≤ 4 bits, 16 + 2 (w − 4) above',
+    'up to 10 tables a field, 2 bytes an entry: 2^w entries at a width of w ≤ 4 bits, 16 + 2 (w − 4) above; up to 64 weights of 2 bytes a linear field',
   source:
-    'tokens with extra bits: common practice, no source; G. N. N. Martin 1979 (range coding); zigzag: common practice, no source',
+    'tokens with extra bits: common practice, no source; G. N. N. Martin 1979 (range coding); zigzag: common practice, no source; linear: C. F. Gauss 1809 (least squares), E. J. Schlossmacher 1973 (least absolute errors)',
 };
 
 /** A candidate's parameters, and what follows from them for a setup. */

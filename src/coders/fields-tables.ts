@@ -1,17 +1,20 @@
-import { BugError, InputError } from '../errors/errors.ts';
-import { columnsOf, type FieldColumns, factsOf } from '../models/field-columns.ts';
+import { BugError } from '../errors/errors.ts';
+import { columnsOf } from '../models/field-columns.ts';
 import { AdaptiveFieldTables } from '../models/field-counts.ts';
 import { FieldPlan } from '../models/field-plan.ts';
 import { FieldPredictor } from '../models/field-predictor.ts';
 import { codeRecord, countRecord } from '../models/field-records.ts';
 import { type FieldSelection, selectFields } from '../models/field-selection.ts';
+import { trainedFacts } from '../models/field-series.ts';
+import { EXTRA_BITS } from '../models/field-token.ts';
 import { quantiseTables, weighTables } from '../models/field-weights.ts';
 import { Quantiser } from '../models/quantise.ts';
+import { COST_PER_BIT, tableCosts } from '../models/table-cost.ts';
 import { Meter } from '../stages/meter.ts';
 import type { RecordLayout } from '../symbols/record-layout.ts';
 import type { Setup, Tables, Trainer } from './contract.ts';
+import { TrainRecords } from './fields-records.ts';
 import { type FieldsSettings, untrainedPlan } from './fields-settings.ts';
-import { MessagePieces } from './message-pieces.ts';
 
 /**
  * Choices, references and size classes are made on the last of the train records: so many values at
@@ -19,8 +22,12 @@ import { MessagePieces } from './message-pieces.ts';
  */
 const MOST_VALUES = 2 ** 20;
 
-/** Under `fill`, contexts begin at one of so many units of the train split, as if messages held so many. */
+/**
+ * Under `fill`, contexts begin at one of so many units of the train split, as if messages held so
+ * many; once tables are known, at as many as a message then holds.
+ */
 const UNITS_A_START = 8;
+const MOST_UNITS_A_START = 256;
 
 interface TrainedPlan {
   readonly coder: 'fields';
@@ -79,21 +86,8 @@ export const countedInRecords = (setup: Setup, layout: RecordLayout): Setup => (
   unitSymbols: setup.unitSymbols ?? layout.bytes,
 });
 
-/** Number of records in a message of so many bytes. Throws InputError for a part of one. */
-export function recordCountOf(symbolCount: number, layout: RecordLayout): number {
-  const over = symbolCount % layout.bytes;
-  if (over === 0) return symbolCount / layout.bytes;
-  throw new InputError('fields: a message is not a whole number of records', {
-    coder: 'fields',
-    key: 'messages',
-    expected: `a multiple of ${layout.bytes} bytes, the size of one record`,
-    got: `${symbolCount} bytes`,
-    advice: 'Cut messages by records, as in messages: records=8.',
-  });
-}
-
-/** Messages of the train split from one begin of contexts to the next. */
-function startEvery(setup: Setup): number {
+/** Messages of the train split from one begin of contexts to the next, before tables are known. */
+function firstStartEvery(setup: Setup): number {
   if (!startsAtMessages(setup)) return Number.POSITIVE_INFINITY;
   return setup.fill === undefined ? 1 : UNITS_A_START;
 }
@@ -107,32 +101,54 @@ function startEvery(setup: Setup): number {
  */
 export function fieldsTrainer(settings: FieldsSettings, setup: Setup): Trainer {
   const layout = settings.layoutOf(setup);
-  const train = new TrainRecords(layout, startEvery(setup));
+  const train = new TrainRecords(layout);
   return {
     push: (chunk) => train.pieces.push(chunk),
     finish: (): FieldsTables => {
       train.pieces.finish();
-      const { bytes, starts } = train.finish();
+      const { bytes } = train;
+      const starts = train.starts(firstStartEvery(setup));
       const most = Math.max(256, Math.floor(MOST_VALUES / layout.partCount));
       const from = Math.max(0, starts.length - most);
       const columns = columnsOf(layout, bytes.subarray(from * layout.bytes), starts.subarray(from));
       const given = settings.choicesFor(setup, layout);
       const selections = given === undefined ? selectFields(columns) : undefined;
       const choices = given ?? selections!.map(({ choice }) => choice);
-      const plan = new FieldPlan(layout, choices, factsOfAll(columns));
+      const plan = new FieldPlan(layout, choices, trainedFacts(columns, choices));
       const trained = { coder: 'fields' as const, plan, ...(selections && { selections }) };
       if (setup.policy === 'primed')
         return { ...trained, policy: 'primed', tables: learnAll(plan, bytes, starts) };
-      const weights = countAll(plan, bytes, starts);
+      let counts = countAll(plan, bytes, starts);
+      if (setup.fill !== undefined && starts.length > 0) {
+        const units = unitsAMessage(plan, counts, setup.fill.bytes, train.unitCount);
+        counts = countAll(plan, bytes, train.starts(units));
+      }
+      const weights = weighAll(plan, counts);
       return { ...trained, policy: 'shipped', weights, frequencies: quantiseAll(plan, weights) };
     },
   };
 }
 
-const factsOfAll = (columns: FieldColumns) =>
-  columns.values.map((_, part) => factsOf(columns, part, columns.recordCount));
+/** Units that a message of so many bytes holds on average, by the cost of the train split. */
+function unitsAMessage(
+  plan: FieldPlan,
+  counts: Float64Array,
+  messageBytes: number,
+  unitCount: number,
+): number {
+  const frequencies = quantiseAll(plan, weighAll(plan, counts));
+  const costs = tableCosts();
+  let cost = 0;
+  for (let table = 0; table < plan.tableCount; table++) {
+    const from = plan.slotStart[table];
+    for (let slot = from; slot < plan.slotStart[table + 1]; slot++)
+      cost += counts[slot] * (costs[frequencies[slot]] + EXTRA_BITS[slot - from] * COST_PER_BIT);
+  }
+  const units = Math.floor((8 * messageBytes * COST_PER_BIT * unitCount) / Math.max(1, cost));
+  return Math.max(1, Math.min(MOST_UNITS_A_START, units));
+}
 
-/** Smoothed counts of all slots. */
+/** Counts of all slots. */
 function countAll(plan: FieldPlan, bytes: Uint8Array, starts: Uint8Array): Float64Array {
   const predictor = new FieldPredictor(plan);
   const counts = new Float64Array(plan.slotCount);
@@ -140,6 +156,11 @@ function countAll(plan: FieldPlan, bytes: Uint8Array, starts: Uint8Array): Float
     if (starts[record] === 1) predictor.start();
     countRecord(predictor, counts, bytes, record * plan.layout.bytes);
   }
+  return counts;
+}
+
+/** Smoothed counts of all slots. */
+function weighAll(plan: FieldPlan, counts: Float64Array): Float64Array {
   const weights = new Float64Array(plan.slotCount);
   forEachPart(plan, (from, tables, tokens) => weighTables(counts, weights, from, tables, tokens));
   return weights;
@@ -176,49 +197,4 @@ function learnAll(plan: FieldPlan, bytes: Uint8Array, starts: Uint8Array): Adapt
     codeRecord(predictor, tables, bytes, record * plan.layout.bytes, sink);
   }
   return tables;
-}
-
-/** The train split, gathered from chunks. */
-class TrainRecords {
-  readonly pieces: MessagePieces;
-  readonly #layout: RecordLayout;
-  #bytes = new Uint8Array(1 << 12);
-  #filled = 0;
-  readonly #firstRecords: number[] = [];
-
-  /** @param startEvery  contexts begin at the first message, and then at each of so many */
-  constructor(layout: RecordLayout, startEvery: number) {
-    this.#layout = layout;
-    let left = 0;
-    this.pieces = new MessagePieces({
-      begin: (symbolCount) => {
-        recordCountOf(symbolCount, layout);
-        if (left === 0) {
-          this.#firstRecords.push(this.#filled / layout.bytes);
-          left = startEvery;
-        }
-        left--;
-      },
-      take: (symbols, from, to) => {
-        const end = this.#filled + to - from;
-        if (end > this.#bytes.length) {
-          const grown = new Uint8Array(Math.max(end, 2 * this.#bytes.length));
-          grown.set(this.#bytes);
-          this.#bytes = grown;
-        }
-        this.#bytes.set(symbols.subarray(from, to), this.#filled);
-        this.#filled = end;
-      },
-      end: () => {},
-    });
-  }
-
-  /** All records, and for each 1 where contexts begin. */
-  finish(): { bytes: Uint8Array; starts: Uint8Array } {
-    const count = this.#filled / this.#layout.bytes;
-    const starts = new Uint8Array(count);
-    for (const record of this.#firstRecords) if (record < count) starts[record] = 1;
-    if (count > 0) starts[0] = 1;
-    return { bytes: this.#bytes.subarray(0, this.#filled), starts };
-  }
 }

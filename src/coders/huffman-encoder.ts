@@ -1,5 +1,6 @@
 import { BitWriter } from '../bits/bit-writer.ts';
 import { PrefixEncoder } from '../stages/prefix-encoder.ts';
+import { PrefixMessageEncoder } from '../stages/prefix-message-encoder.ts';
 import type { PrefixTable } from '../stages/prefix-table.ts';
 import type { Encoder, Setup } from './contract.ts';
 import { SymbolCounts } from './huffman-counts.ts';
@@ -8,6 +9,9 @@ import { writeSymbolCount } from './message-frame.ts';
 import { MessageLedger } from './message-ledger.ts';
 import { MessagePieces, wholeMessages } from './message-pieces.ts';
 
+/** Fewer messages are not worth a run of the kernel for many. */
+const MANY = 4;
+
 /** One code for the whole unit; a `table` is sent in the first message that has symbols. */
 export function streamEncoder(
   setup: Setup,
@@ -15,8 +19,13 @@ export function streamEncoder(
   table: PrefixTable | undefined,
   maxBits: number,
 ): Encoder {
-  const writer = new BitWriter();
+  const writer = new BitWriter(1024, setup.sink);
   const ledger = new MessageLedger(setup.align);
+  const kernel = new PrefixMessageEncoder(
+    words,
+    setup.align,
+    setup.lengths === 'known' ? 0 : (setup.unitSymbols ?? 1),
+  );
   let unsent = table;
   const pieces = new MessagePieces({
     begin(symbolCount) {
@@ -30,9 +39,25 @@ export function streamEncoder(
       const bits = words.encode(writer, symbols, from, to);
       ledger.writtenBits += bits;
       ledger.payloadBits += bits;
+      if (writer.shouldDrain) writer.drain();
     },
     end() {
       ledger.close(writer);
+    },
+    many(symbols, messageEnds, index, from) {
+      if (unsent !== undefined || messageEnds.length - index < MANY) return index;
+      words.expect(messageEnds[messageEnds.length - 1] - from);
+      const ends = ledger.roomForEnds(messageEnds.length - index);
+      let done = index;
+      let at = from;
+      for (let before = -1; before < done; ) {
+        before = done;
+        done = kernel.run(writer, symbols, messageEnds, done, at, ends, ledger.messageCount);
+        ledger.payloadBits += kernel.writtenBits;
+        ledger.closeMany(writer, done - before, kernel);
+        if (done > before) at = messageEnds[done - 1];
+      }
+      return done;
     },
   });
   return {
@@ -46,7 +71,7 @@ export function streamEncoder(
 
 /** Fits a code to each message and sends it there. */
 export function messageEncoder(setup: Setup, maxBits: number): Encoder {
-  const writer = new BitWriter();
+  const writer = new BitWriter(1024, setup.sink);
   const ledger = new MessageLedger(setup.align);
   const counts = new SymbolCounts(setup.alphabetSize);
   const fit = new HuffmanFit(maxBits);

@@ -42,7 +42,7 @@ export function priceHuffman(sequence: SymbolSequence, setup: Setup, added: Rati
     const costs =
       setup.policy === 'shipped'
         ? smoothedCosts(huffmanTables(setup).counts, added)
-        : empiricalCosts(whole);
+        : empiricalCosts(whole.counts);
     let from = 0;
     for (let i = 0; i < messageEnds.length; i++) {
       let bits = 0;
@@ -59,11 +59,13 @@ export function priceHuffman(sequence: SymbolSequence, setup: Setup, added: Rati
 }
 
 /** −log2 of the smoothed probability, by symbol. */
-function smoothedCosts(counts: Float64Array, added: Rational): Float64Array {
+export function smoothedCosts(counts: Float64Array, added: Rational): Float64Array {
   const total = counts.reduce((sum, count) => sum + count, 0) * added.q + counts.length * added.p;
   return counts.map((count) => Math.log2(total / (count * added.q + added.p)));
 }
 
-function empiricalCosts(counts: SymbolCounts): Float64Array {
-  return counts.counts.map((count) => (count === 0 ? 0 : Math.log2(counts.total / count)));
+/** −log2 of the share of all counts, by symbol; 0 where there are none. */
+export function empiricalCosts(counts: Float64Array): Float64Array {
+  const total = counts.reduce((sum, count) => sum + count, 0);
+  return counts.map((count) => (count === 0 ? 0 : Math.log2(total / count)));
 }

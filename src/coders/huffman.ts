@@ -3,11 +3,13 @@ import { PrefixDecoder } from '../stages/prefix-decoder.ts';
 import { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import type { Coder, CoderEntry, Declaration, Setup, Tables } from './contract.ts';
 import { PREFIX_WINDOW_BYTES, prefixCosts, prefixOperations } from './cost-prefix.ts';
+import { sentPrefixCosts, sentPrefixOperations } from './cost-sent-prefix.ts';
 import { WordDraft } from './fill-drafts.ts';
 import { fillingEncoder } from './fill-messages.ts';
 import { symbolWidth } from './fixed.ts';
 import { sentReader, shippedReader } from './huffman-decoder.ts';
 import { messageEncoder, streamEncoder } from './huffman-encoder.ts';
+import { decodeWordsInPieces, huffmanPricer } from './huffman-pieces.ts';
 import { priceHuffman } from './huffman-price.ts';
 import {
   addedCount,
@@ -145,18 +147,31 @@ function createHuffman(values: ParameterValues): Coder {
       return sentReader(setup, limits, maxBits);
     },
 
-    costs: (setup) =>
+    inPieces: {
+      decode: (input, setup, limits, taker) =>
+        decodeWordsInPieces(
+          input,
+          setup,
+          limits,
+          taker,
+          maxBits,
+          setup.policy === 'shipped' ? shippedDecoder(setup) : undefined,
+        ),
+      pricer: (setup) => huffmanPricer(setup, added),
+    },
+
+    costs: (setup, _longestCodedBytes, sequence) =>
       setup.policy === 'shipped'
         ? prefixCosts(
             fitTables(huffmanTables(setup), setup, maxBits, added).table,
             setup.alphabetSize,
           )
-        : undefined,
+        : sentPrefixCosts(sequence, setup, maxBits),
 
     operations: (sequence, setup) =>
       setup.policy === 'shipped'
         ? prefixOperations(fitTables(huffmanTables(setup), setup, maxBits, added).table, sequence)
-        : undefined,
+        : sentPrefixOperations(sequence, setup, maxBits),
 
     decoderHolds: () => PREFIX_WINDOW_BYTES,
 

@@ -104,7 +104,7 @@ export function integerCoder(
 
     decoder: (setup, limits) => integerDecoder(family, setup, limits, given),
 
-    costs: (setup) => integerCosts(setup.policy),
+    costs: (setup, _longestCodedBytes, sequence) => integerCosts(setup, sequence),
 
     operations: (sequence, setup) => integerOperations(family, sequence, setup, given),
 

@@ -85,6 +85,17 @@ export class MessageWalk {
     return this.#symbolTotal;
   }
 
+  /** Index of the message at hand, or of the next one to open. */
+  get index(): number {
+    return this.#index;
+  }
+
+  /** Goes on at message `index`: those before it were walked by a kernel, which put their ends in place. */
+  passTo(index: number, symbolTotal: number): void {
+    this.#index = index;
+    this.#symbolTotal = symbolTotal;
+  }
+
   /** Opens the next message and returns its symbol count, or −1 when there is none left. */
   next(): number {
     if (!this.open()) return -1;

@@ -69,13 +69,61 @@ export class MessageLedger {
     this.indexBits = 0;
     this.framingBits = 0;
     this.checkBits = 0;
-    if (this.#count === this.#ends.length) {
-      const grown = new Float64Array(this.#count * 2);
-      grown.set(this.#ends);
-      this.#ends = grown;
-    }
+    if (this.#count === this.#ends.length) this.#grow(this.#count * 2);
     this.#start = writer.position;
     this.#ends[this.#count++] = this.#start;
+    if (writer.shouldDrain) writer.drain();
+  }
+
+  #grow(capacity: number): void {
+    const grown = new Float64Array(capacity);
+    grown.set(this.#ends.subarray(0, this.#count));
+    this.#ends = grown;
+  }
+
+  /** Messages closed so far. */
+  get messageCount(): number {
+    return this.#count;
+  }
+
+  /**
+   * Room for the ends of `count` more messages, for a kernel that writes many at once: its entries from
+   * {@link messageCount} on take them, in bits; {@link closeMany} books the messages.
+   */
+  roomForEnds(count: number): Float64Array {
+    const needed = this.#count + count;
+    if (needed > this.#ends.length)
+      this.#grow(this.#count === 0 ? needed : Math.max(needed, this.#count * 2));
+    return this.#ends;
+  }
+
+  /** Books `count` messages whose ends stand in {@link roomForEnds}; the sums of their bits must be what was written. */
+  closeMany(
+    writer: BitWriter,
+    count: number,
+    sums: {
+      readonly writtenBits: number;
+      readonly framingBits: number;
+      readonly paddingBits: number;
+    },
+  ): void {
+    if (count === 0) return;
+    const { writtenBits, framingBits, paddingBits } = sums;
+    const end = this.#ends[this.#count + count - 1];
+    if (writer.position !== end || writtenBits + framingBits + paddingBits !== end - this.#start) {
+      throw new BugError('the bits booked for many messages are not the bits written', {
+        messageIndex: this.#count,
+        expected: `${writer.position - this.#start} bits, as written`,
+        got: `${end - this.#start} bits to the last end: written ${writtenBits}, padding ${paddingBits}, framing ${framingBits}`,
+      });
+    }
+    const total = this.#total;
+    total.writtenBits += writtenBits;
+    total.framingBits += framingBits;
+    total.paddingBits += paddingBits;
+    this.#count += count;
+    this.#start = end;
+    if (writer.shouldDrain) writer.drain();
   }
 
   /** What the encoder gives back; ends the writer. */
@@ -89,7 +137,8 @@ export class MessageLedger {
     }
     return {
       bytes,
-      messageEndsBits: this.#ends.slice(0, this.#count),
+      messageEndsBits:
+        this.#count === this.#ends.length ? this.#ends : this.#ends.slice(0, this.#count),
       account: { ...this.#total },
       payloadBits: this.payloadBits,
     };

@@ -9,6 +9,11 @@ export interface PieceSink {
   take(symbols: SymbolArray, from: number, to: number): void;
   /** It is complete. */
   end(): void;
+  /**
+   * Codes whole messages, as many as it likes, from message `index` on, which begins at `symbols[from]`.
+   * @returns index of the first message that it leaves
+   */
+  many?(symbols: SymbolArray, messageEnds: Uint32Array, index: number, from: number): number;
 }
 
 /**
@@ -29,6 +34,12 @@ export class MessagePieces {
     const sink = this.#sink;
     let from = 0;
     for (let i = 0; i < messageEnds.length; i++) {
+      if (!this.#open && sink.many !== undefined) {
+        const next = sink.many(symbols, messageEnds, i, from);
+        if (next > i) from = messageEnds[next - 1];
+        i = next;
+        if (i === messageEnds.length) break;
+      }
       const to = messageEnds[i];
       if (!this.#open) sink.begin(to - from);
       else if (this.#taken + to - from !== this.#symbolCount) this.#refuse(this.#taken + to - from);

@@ -1,6 +1,7 @@
 import { InputError } from '../errors/errors.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { Coder, Declaration, Price, Setup } from './contract.ts';
+import { storedCosts, storedOperations } from './cost-stored.ts';
 import { symbolWidth } from './fixed.ts';
 import { storedDecoder } from './stored-decoder.ts';
 import { innerSetup, isCoded, StoredEncoder } from './stored-encoder.ts';
@@ -43,6 +44,10 @@ export function stored(coder: Coder): Coder {
       : { trainer: (setup: Setup) => coder.trainer!(innerSetup(setup)) }),
 
     encoder: (setup) => new StoredEncoder(coder, setup),
+
+    costs: (setup, _longestCodedBytes, sequence) => storedCosts(coder, setup, sequence),
+
+    operations: (sequence, setup) => storedOperations(coder, sequence, setup),
 
     decoderHolds: () => 'message',
 

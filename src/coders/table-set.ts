@@ -1,6 +1,7 @@
 import { InputError } from '../errors/errors.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { Coder, Declaration, Price, Setup, Tables } from './contract.ts';
+import { tableSetCosts, tableSetOperations } from './cost-table-set.ts';
 import { symbolWidth } from './fixed.ts';
 import { tableSetDecoder } from './table-set-decoder.ts';
 import { TableSetEncoder } from './table-set-encoder.ts';
@@ -65,6 +66,11 @@ export function tableSet(coder: Coder, count: number): Coder {
 
     // The least of several that never fall never falls.
     growsSteadily: (setup) => coder.growsSteadily?.(setup) ?? false,
+
+    costs: (setup, longestCodedBytes, sequence) =>
+      tableSetCosts(coder, setup, setsOf(setup), longestCodedBytes, sequence),
+
+    operations: (sequence, setup) => tableSetOperations(coder, sequence, setup, setsOf(setup)),
 
     ...(coder.decoderHolds === undefined
       ? {}

@@ -2,6 +2,8 @@ import { InputError, LimitError } from '../errors/errors.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { TransformChain } from '../transforms/chain.ts';
 import type { CodedInput, Coder, Declaration, Decoder, Setup } from './contract.ts';
+import { atBothEnds, remembered, stackOperations, sumOf } from './cost.ts';
+import { chainCosts, chainOperations, perProductSymbol } from './cost-steps.ts';
 
 /**
  * `coder` fed with what `chain` makes of the symbols: the candidate key `after`.
@@ -22,6 +24,11 @@ export function transformed(coder: Coder, chain: TransformChain): Coder {
       : { unitSymbols: setup.unitSymbols * chain.shape(setup.alphabetSize).symbolsPerSymbol }),
   });
   const forward = (setup: Setup) => chain.forward(setup.alphabetSize, runsOn(setup));
+
+  const innerUnit = remembered((sequence, setup) => ({
+    sequence: forward(setup).push(sequence),
+    setup: innerSetup(setup),
+  }));
 
   return {
     declares,
@@ -93,6 +100,33 @@ export function transformed(coder: Coder, chain: TransformChain): Coder {
             const transformedSequence = forward(setup).push(sequence);
             const { fit, ...price } = coder.price!(transformedSequence, innerSetup(setup));
             return price;
+          },
+        }),
+
+    ...(coder.costs === undefined
+      ? {}
+      : {
+          costs(setup: Setup, longestCodedBytes: number, sequence: SymbolSequence) {
+            const unit = innerUnit(sequence, setup);
+            const inner = coder.costs!(unit.setup, longestCodedBytes, unit.sequence);
+            const steps = chainCosts(chain, setup, sequence);
+            return inner && steps && atBothEnds(inner, steps, sumOf);
+          },
+        }),
+
+    ...(coder.operations === undefined
+      ? {}
+      : {
+          operations(sequence: SymbolSequence, setup: Setup) {
+            const { symbolsPerSymbol } = chain.shape(setup.alphabetSize);
+            const unit = innerUnit(sequence, setup);
+            const inner = coder.operations!(unit.sequence, unit.setup);
+            const steps = chainOperations(chain, sequence);
+            if (inner === undefined || steps === undefined) return undefined;
+            return stackOperations(
+              steps,
+              perProductSymbol(inner, sequence.symbols.length, symbolsPerSymbol),
+            );
           },
         }),
 

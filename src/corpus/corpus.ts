@@ -3,6 +3,7 @@ import type { RecordShape } from '../symbols/record.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { TakenValues } from '../symbols/takers/taker.ts';
 import type { FillBudget, LengthsGranted } from './messages.ts';
+import type { SampleFacts, SampleRule } from './sample-rule.ts';
 
 /** What a plan, or the options of a command, say about one corpus. */
 export interface CorpusSpec {
@@ -20,6 +21,8 @@ export interface CorpusSpec {
   readonly alphabet?: number;
   /** Quantisation step of a numeric column. */
   readonly step?: number;
+  /** Only these blocks of the files are read. */
+  readonly sample?: SampleRule;
   /** How the candidate `fields` codes each named field of the record: see symbols/field-choice.ts. */
   readonly fields?: Readonly<Record<string, string>>;
 }
@@ -46,6 +49,8 @@ export interface CorpusFacts {
   /** Bytes of all files. */
   readonly sourceBytes: number;
   readonly record?: RecordShape;
+  /** Absent: the files were read as a whole. */
+  readonly sample?: SampleFacts;
   /** Each candidate fills messages itself: what stands here as messages are the units it fills them with. */
   readonly fill?: FillBudget;
   /** For each file the index one past its last message: equal neighbours are files without a message. */

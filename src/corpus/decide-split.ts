@@ -11,6 +11,8 @@ export interface SplitRule {
   readonly train: number;
   /** Of the generator, under `random`; absent: 1. */
   readonly seed?: number;
+  /** Present: instead of one split there are so many, as folds.ts parts them, and `train` says nothing. */
+  readonly folds?: number;
 }
 
 /**
@@ -42,7 +44,7 @@ export type SplitShape = Pick<RawCorpus, 'name' | 'messageEnds' | 'fileEnds' | '
 const BLOCKS = 64;
 
 /** ⌊share × count⌋, the share read as a decimal number of nine places, so that 0.29 of 100 is 29. */
-function floorShare(share: number, count: number): number {
+export function floorShare(share: number, count: number): number {
   return Number((BigInt(Math.round(share * 1e9)) * BigInt(count)) / 1_000_000_000n);
 }
 

@@ -4,7 +4,7 @@ import { newSymbolArray, type SymbolArray } from '../symbols/sequence.ts';
 import type { TakenValues } from '../symbols/takers/taker.ts';
 import { compareByCodePoint, LAST_CODE_POINT } from '../symbols/utf8.ts';
 import { type Corpus, type CorpusAlphabet, placeOfSymbol, type RawCorpus } from './corpus.ts';
-import type { Split, SplitSide } from './decide-split.ts';
+import type { SplitSide } from './decide-split.ts';
 
 type Found = Exclude<TakenValues, { kind: 'symbols' }>;
 
@@ -24,7 +24,10 @@ interface Mapped {
  * @throws InputError for a value outside a given alphabet, for a test symbol that train lacks (both with file, message,
  *   symbol and value), and for a range of more than 2^24 steps
  */
-export function fixAlphabet(raw: RawCorpus, split?: Split): Corpus {
+export function fixAlphabet(
+  raw: RawCorpus,
+  split?: { readonly train: Pick<SplitSide, 'starts' | 'ends'> },
+): Corpus {
   const { values, messageEnds, givenAlphabet, ...facts } = raw;
   let alphabetSize: number;
   let symbols: SymbolArray;

@@ -17,6 +17,7 @@ import {
   usualLengths,
 } from './messages.ts';
 import { inputFileBytes, readInputFile } from './read-file.ts';
+import { readSample } from './sample-pieces.ts';
 import { type SplitCorpus, splitCorpus } from './split.ts';
 
 /** Bounds on what is read into memory at once. */
@@ -32,12 +33,15 @@ export const USUAL_INTAKE_LIMITS: IntakeLimits = { maxBytes: 2 ** 30, maxSymbols
  * Checks that taker, messages and record of a corpus go together.
  * @throws InputError
  */
-export function checkIntake(spec: Pick<CorpusSpec, 'record' | 'symbols' | 'messages' | 'step'>): {
+export function checkIntake(
+  spec: Pick<CorpusSpec, 'record' | 'symbols' | 'messages' | 'step' | 'sample'>,
+): {
   taker: SymbolTaker;
   rule: MessageRule;
 } {
   const taker = parseSymbolTaker(spec.symbols);
   const rule = parseMessageRule(spec.messages);
+  if (spec.sample !== undefined) checkSampled(spec, taker, rule);
   if (taker.takesRows && rule.kind !== 'whole' && rule.kind !== 'every') {
     throw new InputError(`messages: ${spec.messages} does not go with symbols: ${taker.text}`, {
       key: 'messages',
@@ -73,6 +77,29 @@ export function checkIntake(spec: Pick<CorpusSpec, 'record' | 'symbols' | 'messa
     });
   }
   return { taker, rule };
+}
+
+/** What blocks of a file say by themselves. */
+function checkSampled(
+  spec: Pick<CorpusSpec, 'messages'>,
+  taker: SymbolTaker,
+  rule: MessageRule,
+): void {
+  if (taker.takesRows) {
+    throw new InputError(`a sample does not go with symbols: ${taker.text}`, {
+      key: 'sample',
+      expected: 'symbols that a block of the file tells by itself',
+      got: `symbols: ${taker.text}, whose rows are found from the beginning of the file`,
+    });
+  }
+  if (rule.kind === 'fill') {
+    throw new InputError(`a sample does not go with messages: ${spec.messages}`, {
+      key: 'sample',
+      expected: 'messages that lie in one block',
+      got: 'messages that are filled, which would run on over the gaps between blocks',
+      advice: 'Take messages: every=N or records=K of about that size.',
+    });
+  }
 }
 
 /** Units of a fixed size must be whole symbols, each the same number of them. */
@@ -123,7 +150,8 @@ async function guardSize(
 }
 
 /**
- * Reads the files of a corpus, each once, and takes their symbols; the alphabet is not fixed yet.
+ * Reads the files of a corpus, each once, and takes their symbols; the alphabet is not fixed yet. Of a sample the blocks stand
+ * in the place of files.
  *
  * Cost: one pass over the bytes for the hashes and one for the symbols; memory for the source and the values, and twice
  * the values for a moment where there are several files.
@@ -139,15 +167,20 @@ export async function loadRawCorpus(
   const { taker, rule } = checkIntake(spec);
   const found = await findFiles(spec.files, baseFolder);
   if (found.length === 0) throw new InputError(`the corpus ${spec.name} names no files`);
-  await guardSize(found, spec, taker, limits);
+  const sample =
+    spec.sample === undefined
+      ? undefined
+      : await readSample(found, spec, spec.sample, { taker, rule }, limits.maxBytes);
+  if (sample === undefined) await guardSize(found, spec, taker, limits);
 
   const whole = createHash('sha256');
   const files: CorpusFile[] = [];
   const parts: TakenValues[] = [];
   const endsOfFiles: Uint32Array[] = [];
   let sourceBytes = 0;
-  for (const { absolutePath, path } of found) {
-    const bytes = await readInputFile(absolutePath, path);
+  for (const piece of sample?.pieces ?? found) {
+    const { path } = piece;
+    const bytes = 'bytes' in piece ? piece.bytes : await readInputFile(piece.absolutePath, path);
     const taken = takeFile(taker, rule, bytes, path, spec);
     whole.update(bytes);
     sourceBytes += bytes.length;
@@ -178,6 +211,7 @@ export async function loadRawCorpus(
     messagesAs: spec.messages,
     lengths: spec.lengths ?? usualLengths(rule),
     sourceBytes,
+    ...(sample === undefined ? {} : { sample: sample.facts }),
     ...(spec.record === undefined ? {} : { record: spec.record }),
     ...joined,
     ...fillOf(rule, joined.messageEnds),

@@ -4,7 +4,7 @@ import { checkWholeRecords, type RecordShape } from '../symbols/record.ts';
 import { type ByteSegments, oneSegment } from '../symbols/segments.ts';
 
 /** Types of a length prefix: width in bytes and byte order. */
-const PREFIXES = {
+export const PREFIXES = {
   u8: { bytes: 1, bigEndian: true },
   u16le: { bytes: 2, bigEndian: false },
   u16be: { bytes: 2, bigEndian: true },
@@ -241,7 +241,7 @@ function frameSegments(bytes: Uint8Array, type: PrefixType, file: string): ByteS
   return segments;
 }
 
-function refuseFrame(
+export function refuseFrame(
   file: string,
   byteOffset: number,
   messageIndex: number,

@@ -14,6 +14,7 @@ import { checkIntake } from './intake.ts';
 import { parseMessageRule } from './messages.ts';
 import type { PlanDocument } from './plan-document.ts';
 import { type Fault, gotText, keyText } from './plan-faults.ts';
+import type { SampleRule } from './sample-rule.ts';
 import { corpusSchema, knownKeysAt, type PlanFile } from './plan-schema.ts';
 
 type Path = readonly PropertyKey[];
@@ -104,14 +105,20 @@ function collect<T>(
  * The corpora of a plan whose keys are of the right type, and what is wrong with them beyond that. Corpora that the schema
  * refuses are left out without a word: their faults come from {@link schemaFaults}.
  */
-export function readCorpusSpecs(document: PlanDocument): { specs: CorpusSpec[]; faults: Fault[] } {
+export function readCorpusSpecs(
+  document: PlanDocument,
+  sample?: SampleRule,
+): { specs: CorpusSpec[]; faults: Fault[] } {
   const specs: CorpusSpec[] = [];
   const faults: Fault[] = [];
   const corpora = valueAt(document.data, ['corpora']);
   if (typeof corpora !== 'object' || corpora === null) return { specs, faults };
   for (const [name, data] of Object.entries(corpora)) {
     const checked = corpusSchema.safeParse(data);
-    if (checked.success) specs.push(readCorpusSpec(name, checked.data, document, faults));
+    if (checked.success) {
+      const base = sample === undefined ? {} : { sample };
+      specs.push(readCorpusSpec(name, checked.data, document, faults, base));
+    }
   }
   return { specs, faults };
 }
@@ -121,11 +128,13 @@ function readCorpusSpec(
   written: PlanFile['corpora'][string],
   document: PlanDocument,
   faults: Fault[],
+  base: Pick<CorpusSpec, 'sample'>,
 ): CorpusSpec {
   const path = ['corpora', name];
   const before = faults.length;
   const record = readRecord(written.record, document, faults, [...path, 'record']);
   const spec: CorpusSpec = {
+    ...base,
     name,
     files: typeof written.files === 'string' ? [written.files] : written.files,
     symbols: written.symbols,
@@ -197,6 +206,7 @@ export function togetherFaults(document: PlanDocument): Fault[] {
       });
     }
   }
+  faults.push(...randomSplitFaults(document));
   for (const key of ['candidates', 'tables', 'reset']) {
     const items = valueAt(document.data, [key]);
     if (!Array.isArray(items)) continue;
@@ -212,4 +222,30 @@ export function togetherFaults(document: PlanDocument): Fault[] {
     });
   }
   return faults;
+}
+
+/**
+ * A random split leaves gaps between the messages of the test part. A coder that runs on over message ends would go from
+ * one to another that never followed it, and its rate would be that of no product. Nothing is split where no table trains.
+ */
+function randomSplitFaults(document: PlanDocument): Fault[] {
+  const tables = valueAt(document.data, ['tables']);
+  const resets = valueAt(document.data, ['reset']);
+  if (valueAt(document.data, ['split', 'order']) !== 'random' || !Array.isArray(resets)) return [];
+  if (Array.isArray(tables) && !tables.includes('shipped') && !tables.includes('primed')) return [];
+  const byFile = valueAt(document.data, ['split', 'by']) === 'file';
+  const over = resets.filter((reset) => reset !== 'message' && !(byFile && reset === 'file'));
+  if (over.length === 0) return [];
+  const order = ['split', 'order'];
+  return [
+    {
+      line: document.lineOf(order),
+      key: keyText(order),
+      problem:
+        'messages dealt at random do not follow one another, so no coder can run on from one to the next',
+      expected: byFile ? 'reset: [message, file] beside it' : 'reset: [message] beside it',
+      got: `reset: [${over.map(String).join(', ')}]`,
+      advice: 'Use order: in_time, where the test part is one stretch; split.folds gives several.',
+    },
+  ];
 }

@@ -16,29 +16,9 @@ interface Later {
 
 const LATER: readonly Later[] = [
   { path: 'coders' },
-  { path: 'vary', meanwhile: 'Write one plan for each value.' },
-  { path: 'limits' },
-  {
-    path: 'cost',
-    when: (value) =>
-      typeof value === 'object' &&
-      value !== null &&
-      Object.keys(value).some((key) => key !== 'bill_step_bytes'),
-    meanwhile: 'Keep bill_step_bytes alone.',
-  },
-  { path: 'budget' },
-  { path: 'sample', meanwhile: 'Name a smaller part of the data under files.' },
-  { path: 'memory' },
   { path: 'damage' },
   { path: 'gate' },
   { path: 'check', when: (value) => value === 'crc32', meanwhile: 'Write check: none.' },
-  { path: 'corpora.*.weight' },
-  { path: 'split.folds', meanwhile: 'One split of split.train is made.' },
-  {
-    path: 'timing.pacer',
-    when: (value) => value !== 'deflate-huffman',
-    meanwhile: 'Use deflate-huffman.',
-  },
 ];
 
 /** Every place of `data` that a path of the table leads to. */

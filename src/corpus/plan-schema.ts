@@ -58,6 +58,8 @@ function keysOf(shape: z.ZodRawShape): string {
 
 const COUNT = wholeNumber(1, 2 ** 31);
 const SHARE = number(0, 1);
+const TRAIN_SHARE = 'a share of the train part, above 0 and up to 1';
+const ALIGNMENTS = [1, 8, 16, 32, 64] as const;
 const LOSS = 'a share of messages lost, above 0 and below 1';
 const BYTES = pattern(/^\d+(\.\d+)? ?([kKMGT]i?)?B$/, 'a size such as 512MB');
 const RESET = pattern(
@@ -106,12 +108,14 @@ const coder = object({
   protocol: z.literal('batch', { error: 'batch' }).optional(),
 });
 
-const limits = object({
+/** What a product allows. */
+export const limitsSchema = object({
   max: object({
     rate: positive().optional(),
     flash_bytes: COUNT.optional(),
     ram_bytes: COUNT.optional(),
     code_bytes: COUNT.optional(),
+    cycles_per_symbol: positive().optional(),
     message_bytes_mean: positive().optional(),
     message_bytes_p50: COUNT.optional(),
     message_bytes_p95: COUNT.optional(),
@@ -125,6 +129,15 @@ const limits = object({
   }).optional(),
   exports: oneOf('json', 'c', 'ts').optional(),
   reset: RESET.optional(),
+});
+
+/** What sending costs. */
+export const costSchema = object({
+  price_per_megabyte: positive().optional(),
+  currency: text('a currency, as in EUR').optional(),
+  bill_step_bytes: COUNT.optional(),
+  units_per_day: positive().optional(),
+  devices: COUNT.optional(),
 });
 
 /** The schema of a plan file; keys in snake_case. */
@@ -152,28 +165,33 @@ export const planSchema = object({
     'a list of shipped, sent, learned, primed',
   ).optional(),
   reset: list(RESET, 'a list of message, file, never').optional(),
-  align: z.literal([1, 8, 16, 32, 64], { error: '1, 8, 16, 32 or 64' }).optional(),
+  align: z.literal(ALIGNMENTS, { error: '1, 8, 16, 32 or 64' }).optional(),
   check: oneOf('none', 'crc32').optional(),
   timing: object({
-    repeats: wholeNumber(1, 10_000).optional(),
-    pacer: text('deflate-huffman').optional(),
+    repeats: wholeNumber(0, 10_000).optional(),
+    pacer: text('a candidate without tables, as in deflate-huffman').optional(),
   }).optional(),
   product: object({ device: oneOf('encoder', 'decoder') }).optional(),
-  limits: limits.optional(),
-  cost: object({
-    price_per_megabyte: positive().optional(),
-    currency: text('a currency, as in EUR').optional(),
-    bill_step_bytes: COUNT.optional(),
-    units_per_day: positive().optional(),
-    devices: COUNT.optional(),
-  }).optional(),
+  limits: limitsSchema.optional(),
+  cost: costSchema.optional(),
   vary: object({
-    train_share: list(SHARE, 'a list of shares from 0 to 1').optional(),
+    train_share: list(
+      z.number({ error: TRAIN_SHARE }).gt(0, { error: TRAIN_SHARE }).max(1, { error: TRAIN_SHARE }),
+      'a list of shares above 0 and up to 1',
+    ).optional(),
     message_symbols: list(COUNT, 'a list of whole numbers').optional(),
-    align: list(COUNT, 'a list of whole numbers').optional(),
+    align: list(
+      z.literal(ALIGNMENTS, { error: '1, 8, 16, 32 or 64' }),
+      'a list of 1, 8, 16, 32, 64',
+    ).optional(),
   }).optional(),
   budget: object({ cell_seconds: positive().optional(), cell_memory: BYTES.optional() }).optional(),
-  sample: object({ every: COUNT, block: BYTES.optional() }).optional(),
+  sample: object({
+    every: COUNT.optional(),
+    reservoir: BYTES.optional(),
+    block: BYTES.optional(),
+    seed: wholeNumber(0, 2 ** 32 - 1).optional(),
+  }).optional(),
   memory: BYTES.optional(),
   loss: object({
     rate: z.number({ error: LOSS }).gt(0, { error: LOSS }).lt(1, { error: LOSS }),

@@ -6,11 +6,11 @@ import { estimableOrders } from './estimable.ts';
 import { grassberger } from './grassberger.ts';
 import { correctedInterval } from './interval.ts';
 import { trustIntervals } from './interval-trust.ts';
-import { intervalUnits } from './interval-units.ts';
+import { type IntervalUnits, intervalUnits } from './interval-units.ts';
 import { millerMadow } from './miller-madow.ts';
 import { nsb } from './nsb.ts';
 import { plugIn } from './plug-in.ts';
-import { type HeldOutSaving, usefulOrders } from './useful.ts';
+import { type HeldOutSaving, type UsefulVerdict, usefulOrders } from './useful.ts';
 
 /** What further estimators say of the same counts, in bits per symbol. */
 export interface FurtherEstimates {
@@ -64,6 +64,8 @@ export interface EntropyOptions {
   readonly contexts: ContextScope;
   /** The index one past each file's last symbol; where there are many files, intervals resample them. */
   readonly fileEnds?: Uint32Array;
+  /** The files are blocks of a sample: intervals resample them, and no context runs on from one to the next. */
+  readonly sampled?: boolean;
   /** The source is known to change along the data, so that no interval is to be trusted. */
   readonly changes?: boolean;
   /** Also the further estimators; they take no second pass over the data. */
@@ -82,27 +84,59 @@ export interface EntropyOptions {
  */
 export function entropyByOrder(sequence: SymbolSequence, options: EntropyOptions): EntropyByOrder {
   const { upto, contexts, progress } = options;
-  const units = intervalUnits(sequence, options.fileEnds);
+  const { fileEnds, sampled = false } = options;
+  const units = intervalUnits(sequence, fileEnds, sampled);
+  const breaks = sampled && fileEnds !== undefined ? { breaks: fileEnds } : {};
   const counts = countContexts(sequence, {
     upto,
     contexts,
+    ...breaks,
     blocks: units.ends,
     ...(options.memoryBytes === undefined ? {} : { memoryBytes: options.memoryBytes }),
     progress: (done, total) => progress?.('count', done, total),
   });
-  const plugIns = counts.map((c) => plugIn.estimate(c));
-  const verdicts = estimableOrders(counts.map((c, k) => ({ ...c, entropyBits: plugIns[k] })));
   const useful =
     options.useful === true
       ? usefulOrders(sequence, {
           upto,
           contexts,
+          ...breaks,
           ...(options.coderOf === undefined ? {} : { coderOf: options.coderOf }),
           progress: (done, total) => progress?.('useful', done, total),
         })
       : undefined;
+  return entropyOfCounts(counts, {
+    contexts,
+    symbolCount: sequence.symbols.length,
+    alphabetSize: sequence.alphabetSize,
+    units,
+    changes: options.changes === true,
+    all: options.all === true,
+    ...(useful === undefined ? {} : { useful }),
+  });
+}
+
+/** What entropies need to know beside the counts. */
+export interface CountedFacts {
+  readonly contexts: ContextScope;
+  readonly symbolCount: number;
+  readonly alphabetSize: number;
+  /** The units that were counted apart. */
+  readonly units: IntervalUnits;
+  readonly changes: boolean;
+  readonly all: boolean;
+  readonly useful?: readonly UsefulVerdict[];
+}
+
+/** The same from counts that are there already, one entry an order from 0 on. */
+export function entropyOfCounts(
+  counts: readonly OrderCounts[],
+  { contexts, symbolCount, alphabetSize, units, changes, all, useful }: CountedFacts,
+): EntropyByOrder {
+  const plugIns = counts.map((c) => plugIn.estimate(c));
+  const verdicts = estimableOrders(counts.map((c, k) => ({ ...c, entropyBits: plugIns[k] })));
   const intervals = counts.map((c) =>
-    correctedInterval(c, millerMadow.estimate(c), sequence.alphabetSize, units),
+    correctedInterval(c, millerMadow.estimate(c), alphabetSize, units),
   );
   const trust = trustIntervals(
     intervals.map((interval, k) => ({
@@ -111,7 +145,7 @@ export function entropyByOrder(sequence: SymbolSequence, options: EntropyOptions
       positions: counts[k].positions,
       ...interval,
     })),
-    options.changes === true,
+    changes,
   );
   const orders = counts.map((c, k): OrderEntropy => {
     const { low, high, intervalUnit } = intervals[k];
@@ -131,13 +165,13 @@ export function entropyByOrder(sequence: SymbolSequence, options: EntropyOptions
       useful: useful?.[k].useful,
       usefulReason: useful?.[k].reason ?? 'not tested: not asked for',
       ...(useful?.[k].saving === undefined ? {} : { saving: useful[k].saving }),
-      ...(options.all === true ? { estimates: furtherEstimates(c, sequence.alphabetSize) } : {}),
+      ...(all ? { estimates: furtherEstimates(c, alphabetSize) } : {}),
     };
   });
   return {
     contexts,
-    symbolCount: sequence.symbols.length,
-    alphabetSize: sequence.alphabetSize,
+    symbolCount,
+    alphabetSize,
     orders,
     largestEstimable: orders.findLastIndex((order) => order.estimable),
   };

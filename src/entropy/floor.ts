@@ -105,7 +105,7 @@ function leastLow(orders: readonly FloorOrder[], point: number): number {
  * @param k  the floor's largest estimable order; below 1 the sum is empty
  */
 export function openingBits(
-  sequence: SymbolSequence,
+  sequence: Pick<SymbolSequence, 'messageEnds'>,
   orders: readonly Pick<OrderEntropy, 'corrected'>[],
   k: number,
   contexts: ContextScope,

@@ -13,7 +13,8 @@ export interface BlockedPart {
 
 /**
  * The symbols `from … to − 1` in `blocks` blocks of nearly equal size. A message ends with each block, so that a block's
- * first symbols have start contexts at every order alike; under contexts `message`, where messages end as well.
+ * first symbols have start contexts at every order alike; under contexts `message`, where messages end as well, and
+ * else at `breaks`.
  */
 export function cutIntoBlocks(
   source: SymbolSequence,
@@ -21,8 +22,9 @@ export function cutIntoBlocks(
   to: number,
   blocks: number,
   contexts: ContextScope,
+  breaks: Uint32Array = new Uint32Array(0),
 ): BlockedPart {
-  const pieces = contexts === 'message' ? source.messageEnds : new Uint32Array(0);
+  const pieces = contexts === 'message' ? source.messageEnds : breaks;
   const ends: number[] = [];
   const blockOf: number[] = [];
   const blockSymbols = new Float64Array(blocks);

@@ -20,17 +20,23 @@ export const FEWEST_UNITS = 30;
  * blocks of successive positions. At most 256 units of about equal numbers of symbols.
  *
  * @param fileEnds  the index one past each file's last symbol; absent where files are unknown
+ * @param sampled   the files are blocks of a sample: they are the units however few they are, since what was not taken
+ *                  differs from the sample as its blocks do from one another
  */
-export function intervalUnits(sequence: SymbolSequence, fileEnds?: Uint32Array): IntervalUnits {
+export function intervalUnits(
+  sequence: Pick<SymbolSequence, 'messageEnds'> & { readonly symbols: { readonly length: number } },
+  fileEnds?: Uint32Array,
+  sampled = false,
+): IntervalUnits {
   const symbolCount = sequence.symbols.length;
   if (fileEnds !== undefined) {
     const files = distinctEnds(fileEnds);
-    if (files.length >= FEWEST_UNITS) {
+    if (files.length >= (sampled ? 2 : FEWEST_UNITS)) {
       const ends = grouped(files, symbolCount);
       const whole = ends.length === files.length;
       return {
         ends,
-        text: `${ends.length} ${whole ? 'files' : 'blocks of files'}`,
+        text: `${ends.length} ${filesText(sampled, whole)}`,
         independent: whole,
       };
     }
@@ -51,6 +57,11 @@ export function intervalUnits(sequence: SymbolSequence, fileEnds?: Uint32Array):
   const ends = new Uint32Array(count);
   for (let b = 0; b < count; b++) ends[b] = Math.floor(((b + 1) * symbolCount) / count);
   return { ends, text: `${count} blocks of positions`, independent: false };
+}
+
+function filesText(sampled: boolean, whole: boolean): string {
+  if (sampled) return whole ? 'blocks of the sample' : 'groups of blocks of the sample';
+  return whole ? 'files' : 'blocks of files';
 }
 
 /** The ends of what is not empty. */

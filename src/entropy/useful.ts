@@ -32,6 +32,8 @@ export interface UsefulVerdict {
 export interface UsefulOptions {
   readonly upto: number;
   readonly contexts: ContextScope;
+  /** Where contexts begin anew though they run on over messages: the index one past each stretch's last symbol. */
+  readonly breaks?: Uint32Array;
   /** The coder of an order; back-off `arith` when absent. */
   readonly coderOf?: (order: number) => Coder;
   readonly progress?: (done: number, total: number) => void;
@@ -49,7 +51,7 @@ export interface UsefulOptions {
  * Cost: for each order tested, one training pass over a half and one pricing pass over the other.
  */
 export function usefulOrders(sequence: SymbolSequence, options: UsefulOptions): UsefulVerdict[] {
-  const { upto, contexts, progress } = options;
+  const { upto, contexts, breaks, progress } = options;
   const coderOf = options.coderOf ?? backOffCoder;
   const verdicts: UsefulVerdict[] = [];
   const stopWith = (reason: string): UsefulVerdict[] => {
@@ -59,8 +61,8 @@ export function usefulOrders(sequence: SymbolSequence, options: UsefulOptions): 
   const { length } = sequence.symbols;
   if (length < 2 * BLOCKS) return stopWith('not tested: too few symbols for two halves of blocks');
   const middle = Math.floor(length / 2);
-  const first = cutIntoBlocks(sequence, 0, middle, BLOCKS, contexts).sequence;
-  const second = cutIntoBlocks(sequence, middle, length, BLOCKS, contexts);
+  const first = cutIntoBlocks(sequence, 0, middle, BLOCKS, contexts, breaks).sequence;
+  const second = cutIntoBlocks(sequence, middle, length, BLOCKS, contexts, breaks);
   const { blockSymbols } = second;
   const symbols = length - middle;
   const perSymbol = Math.log2(sequence.alphabetSize);

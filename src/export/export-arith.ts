@@ -2,16 +2,12 @@ import { ArithSettings } from '../coders/arith-settings.ts';
 import { tablesFor } from '../coders/arith-tables.ts';
 import type { Candidate } from '../coders/candidate.ts';
 import type { Setup } from '../coders/contract.ts';
-import { InputError } from '../errors/errors.ts';
 import { type ExportedCoder, messageBuffers } from './exporter.ts';
 import { BITS_IN, BITS_OUT, frameConstants, messageIn, messageOut } from './frame-program.ts';
 import { parseProgram } from './language-parser.ts';
 import { RANGE_ENDING_BITS, rangeIn, rangeOut } from './range-program.ts';
 import { staticIn, staticOut, staticTables } from './static-program.ts';
 import { checkedSymbols } from './symbol-program.ts';
-
-/** Highest order that is exported: tables beyond it belong into no flash. */
-const MOST_ORDER = 2;
 
 const SYMBOLS_IN = `
 fn decode_symbols(count) {
@@ -39,19 +35,6 @@ function symbolsOut(alphabetSize: number): string {
 /** `arith` with static tables of order 0 to 2 and a range of 32 bits. */
 export function exportArith(candidate: Candidate, setup: Setup): ExportedCoder {
   const settings = new ArithSettings(candidate.values);
-  if (settings.rangeBits !== 32) {
-    throw new InputError(`${candidate.id} codes with a range of ${settings.rangeBits} bits`, {
-      key: 'range',
-      expected: 'range=32, which 32-bit integers hold',
-      advice: 'Run and export the candidate with range=32.',
-    });
-  }
-  if (settings.order > MOST_ORDER) {
-    throw new InputError(`${candidate.id} is of order ${settings.order}`, {
-      key: 'order',
-      expected: `0 to ${MOST_ORDER}`,
-    });
-  }
   const { table } = tablesFor(setup, 'shipped');
   const { alphabetSize } = setup;
   const total = 2 ** settings.totalBits(alphabetSize);

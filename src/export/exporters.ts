@@ -1,5 +1,6 @@
 import type { Candidate } from '../coders/candidate.ts';
 import type { Setup } from '../coders/contract.ts';
+import { exportableCoders, whyNotExported } from '../coders/exported.ts';
 import { InputError } from '../errors/errors.ts';
 import { exportArith } from './export-arith.ts';
 import { exportBlockHuffman } from './export-block-huffman.ts';
@@ -16,20 +17,6 @@ const exporters: ReadonlyMap<string, Exporter> = new Map([
   ['golomb', exportInteger],
   ['exp-golomb', exportInteger],
 ]);
-
-/** Keys of candidates whose steps around the coder have no exported form. */
-const UNEXPORTED_KEYS = ['after', 'stored', 'tables_in_set'] as const;
-
-/** Names of the coders that can be exported. */
-export const exportableCoders: readonly string[] = [...exporters.keys()];
-
-/** Why a candidate cannot be exported at all, in half a sentence; undefined where it can. */
-export function whyNotExported(candidate: Candidate): string | undefined {
-  const { name } = candidate.declaration;
-  if (!exporters.has(name)) return `${name} has no exported form yet`;
-  const key = UNEXPORTED_KEYS.find((k) => candidate.values[k] !== undefined);
-  return key === undefined ? undefined : `a candidate with ${key}= has no exported form yet`;
-}
 
 /**
  * The programs and tables of a candidate.

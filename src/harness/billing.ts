@@ -1,4 +1,4 @@
-import type { CorpusData } from './corpus-data.ts';
+import type { CorpusShape } from './corpus-data.ts';
 import type { CellBits } from './run-cell.ts';
 
 /** What a link charges for that bills each message by whole steps. */
@@ -18,7 +18,7 @@ export interface BillingFigures {
  */
 export function billingFigures(
   { messageBits, mapBits, totals }: CellBits,
-  corpus: CorpusData,
+  corpus: CorpusShape,
   stepBytes: number,
 ): BillingFigures {
   const stepBits = 8 * stepBytes;

@@ -1,42 +1,20 @@
 import { bitAccount } from '../account/bit-account.ts';
 import type { FieldPrice } from '../coders/contract.ts';
-import { bcaMean } from '../statistics/bca.ts';
+import { whyNotExported } from '../coders/exported.ts';
 import { type BillingFigures, billingFigures } from './billing.ts';
-import { decodesAlone } from './cells.ts';
-import type { CorpusData } from './corpus-data.ts';
+import { type Cell, decodesAlone } from './cells.ts';
+import type { CorpusShape } from './corpus-data.ts';
 import type { CorpusFloors } from './corpus-floors.ts';
 import { costRecord } from './cost-figures.ts';
 import { bitsOfCorpusMessages, type FillFigures, fillFigures } from './fill-figures.ts';
 import { type LossFigures, lossFigures } from './loss.ts';
+import { growthRecord, messageBytes, messageGrowth } from './message-figures.ts';
 import type { CellBits, CellFailure } from './run-cell.ts';
 import type { CellRecord } from './run-record.ts';
-import type { Speed } from './speed.ts';
+import { type CellTimes, timesRecordOf } from './time-cell.ts';
+import { varyRecord } from './variation.ts';
 
-function quantile(sorted: Float64Array, share: number): number {
-  return sorted[Math.min(sorted.length - 1, Math.max(0, Math.ceil(share * sorted.length) - 1))];
-}
-
-/** Messages between which the interval of their mean is drawn: fewer say too little, more need none. */
-const FEWEST_MESSAGES = 8;
-const MOST_MESSAGES = 20_000;
-
-function messageBytes(bits: Float64Array): NonNullable<CellRecord['message_bytes']> {
-  const bytes = Float64Array.from(bits, (b) => b / 8).sort();
-  let sum = 0;
-  for (const value of bytes) sum += value;
-  const drawn = bytes.length >= FEWEST_MESSAGES && bytes.length <= MOST_MESSAGES;
-  const interval = drawn ? bcaMean(bytes, { seed: 1, repetitions: 400 }) : undefined;
-  return {
-    mean: sum / bytes.length,
-    ...(interval === undefined ? {} : { mean_low: interval.low, mean_high: interval.high }),
-    p50: quantile(bytes, 0.5),
-    p95: quantile(bytes, 0.95),
-    p99: quantile(bytes, 0.99),
-    max: bytes[bytes.length - 1],
-  };
-}
-
-function filesOf(bits: CellBits, corpus: CorpusData): NonNullable<CellRecord['files']> {
+function filesOf(bits: CellBits, corpus: CorpusShape): NonNullable<CellRecord['files']> {
   const messageBits = bitsOfCorpusMessages(bits, corpus);
   let message = 0;
   let symbolsBefore = 0;
@@ -52,7 +30,7 @@ function filesOf(bits: CellBits, corpus: CorpusData): NonNullable<CellRecord['fi
   });
 }
 
-function rateWithoutRepeats(bits: CellBits, corpus: CorpusData): number | undefined {
+function rateWithoutRepeats(bits: CellBits, corpus: CorpusShape): number | undefined {
   const { repeated } = corpus;
   if (repeated === undefined || repeated.share === 0) return undefined;
   const messageBits = bitsOfCorpusMessages(bits, corpus);
@@ -77,15 +55,22 @@ export interface AskedFigures {
   readonly billStepBytes?: number;
 }
 
+/** Only what both ends know beforehand can be exported: shipped tables, or none. */
+function exportedForms(cell: Cell): boolean {
+  const known = cell.policy === 'shipped' || cell.policy === 'none';
+  return known && cell.align % 8 === 0 && whyNotExported(cell.candidate) === undefined;
+}
+
 /** What a run record says of one cell. */
 export function cellRecordOf(
   result: CellBits | CellFailure,
-  corpus: CorpusData,
+  corpus: CorpusShape,
   floors: CorpusFloors,
-  speed: { encode: Speed; decode: Speed } | undefined,
+  times: CellTimes | undefined,
   asked: AskedFigures,
 ): CellRecord {
   const { cell } = result;
+  const vary = varyRecord(cell.vary ?? {});
   const base = {
     id: cell.id,
     corpus: cell.corpus,
@@ -95,6 +80,7 @@ export function cellRecordOf(
     tables: cell.policy,
     reset: cell.reset,
     reference: cell.candidate.declaration.reference,
+    ...(vary === undefined ? {} : { vary }),
     decodes_alone: decodesAlone(cell),
     messages_as: corpus.messagesAs,
   };
@@ -106,6 +92,7 @@ export function cellRecordOf(
   return {
     ...base,
     verified: true,
+    ...(exportedForms(cell) ? { exports: ['json', 'c', 'ts'] } : {}),
     backend: 'ts',
     symbol_count: symbolCount,
     message_count: result.messageBits.length,
@@ -114,6 +101,7 @@ export function cellRecordOf(
     rate: symbolCount === 0 ? 0 : result.totals.carriedBits / symbolCount,
     account: bitAccount(floors.admit(result), floors.shareOf(cell)),
     ...(result.messageBits.length === 0 ? {} : { message_bytes: messageBytes(result.messageBits) }),
+    ...growthRecord(messageGrowth(result, corpus), result.messageBits.length),
     ...filledRecord(filled),
     ...(lossRate === undefined
       ? {}
@@ -125,9 +113,7 @@ export function cellRecordOf(
     files: filesOf(result, corpus),
     ...(result.perField === undefined ? {} : { fields: fieldsOf(result.perField) }),
     ...costRecord(result.cost),
-    ...(speed === undefined
-      ? {}
-      : { encode: speedRecord(speed.encode), decode: speedRecord(speed.decode) }),
+    ...(times === undefined ? {} : timesRecordOf(times)),
   };
 }
 
@@ -159,8 +145,4 @@ function lossRecord(figures: LossFigures): NonNullable<CellRecord['loss']> {
 function billingRecord(figures: BillingFigures): NonNullable<CellRecord['billing']> {
   const { stepBytes, steps, stepsPerUnit, unusedShare } = figures;
   return { step_bytes: stepBytes, steps, steps_per_unit: stepsPerUnit, unused_share: unusedShare };
-}
-
-function speedRecord(speed: Speed): NonNullable<CellRecord['encode']> {
-  return { ...speed, seconds: [...speed.seconds] };
 }

@@ -1,15 +1,18 @@
 import type { Candidate } from '../coders/candidate.ts';
 import type { Reset, TablePolicy, UnitReset } from '../coders/contract.ts';
 import { InputError } from '../errors/errors.ts';
+import type { Variation } from './variation.ts';
 
 /** What is run, timed and reported: a candidate on a corpus under one table policy and one reset. */
 export interface Cell {
-  /** `corpus/candidate@policy/reset` */
+  /** `corpus/candidate@policy/reset`, then what the plan varies. */
   readonly id: string;
   /** Name of the corpus. */
   readonly corpus: string;
   /** Key of the corpus data that it codes ({@link CorpusData.key}): the name, and what the plan varies. */
   readonly dataKey: string;
+  /** What it differs in from the plan's own; absent where nothing is varied. */
+  readonly vary?: Variation;
   /** Each message's bits are padded to a multiple of this. */
   readonly align: number;
   readonly candidate: Candidate;

@@ -13,13 +13,16 @@ import { blockEstimable } from '../entropy/estimable.ts';
 import { type Ceiling, type Floor, floorOf, openingBits } from '../entropy/floor.ts';
 import { type MatchLengthEntropy, matchLengthEntropy } from '../entropy/match-lengths.ts';
 import { type MatchMeasurements, measureMatches } from '../entropy/match-measurements.ts';
-import { BitassayError } from '../errors/errors.ts';
+import { BitassayError, BugError } from '../errors/errors.ts';
 import type { ContextScope } from '../models/context-counts.ts';
+import type { SymbolSequence } from '../symbols/sequence.ts';
 import { type Cell, decodesAlone } from './cells.ts';
-import type { CorpusData } from './corpus-data.ts';
+import type { CorpusShape, SequenceShape } from './corpus-data.ts';
 import { matchRecord, orderRecord } from './entropy-record.ts';
+import { FloorPieces } from './floor-pieces.ts';
 import type { CellBits, CellFailure } from './run-cell.ts';
 import type { EntropyRecord } from './run-record.ts';
+import { codedKeyOf, variationText } from './variation.ts';
 
 /** Adaptive back-off coders of these orders always stand among the ceilings. */
 const CEILING_ORDER = 4;
@@ -41,7 +44,7 @@ interface ScopedFloor {
  * Contexts of a cell as an estimator must count them to be comparable. Under fill each cell cuts messages of its own, so all
  * are held against contexts that run on over units, and the opening of messages is theirs to pay.
  */
-function scopeOf(cell: Cell, corpus: CorpusData): ContextScope {
+export function scopeOf(cell: Cell, corpus: CorpusShape): ContextScope {
   if (corpus.fill !== undefined) return 'running';
   return decodesAlone(cell) || corpus.test.messageEnds.length <= 1 ? 'message' : 'running';
 }
@@ -66,7 +69,7 @@ export interface FloorOptions {
  * code that can be decoded bounds the entropy rate from above, whatever its tables and resets. Named by candidate; only a
  * `learned` one that never resets takes the place of a ceiling run.
  */
-function ceilingsOf(results: readonly (CellBits | CellFailure)[], corpus: CorpusData): Ceiling[] {
+function ceilingsOf(results: readonly (CellBits | CellFailure)[], corpus: CorpusShape): Ceiling[] {
   const { test } = corpus;
   const ceilings: Ceiling[] = [];
   for (const result of results) {
@@ -76,29 +79,54 @@ function ceilingsOf(results: readonly (CellBits | CellFailure)[], corpus: Corpus
     const { idealBits, tableBits, indexBits, carriedBits } = totals;
     const bits = idealBits === undefined ? carriedBits : idealBits + tableBits + indexBits;
     const { policy, reset, candidate } = cell;
+    const { align, trainShare } = cell.vary ?? {};
+    const variation = variationText({
+      ...(align === undefined ? {} : { align }),
+      ...(trainShare === undefined ? {} : { trainShare }),
+    });
     const name =
-      policy === 'learned' && neverResets ? candidate.id : `${candidate.id}@${policy}/${reset}`;
+      policy === 'learned' && neverResets
+        ? candidate.id + variation
+        : `${candidate.id}@${policy}/${reset}${variation}`;
     ceilings.push({ name, bitsPerSymbol: bits / test.symbols.length });
   }
   return ceilings;
 }
 
 /** The index one past each file's last symbol. */
-function fileEndsOf({ test, testFiles }: CorpusData): Uint32Array {
+export function fileEndsOf({ test, testFiles }: CorpusShape): Uint32Array {
   return Uint32Array.from(testFiles, ({ messageEnd }) =>
     messageEnd === 0 ? 0 : test.messageEnds[messageEnd - 1],
   );
 }
 
+/** The same sequence, whose symbols must be at hand. */
+function symbolsOf(sequence: SequenceShape): SymbolSequence {
+  if (ArrayBuffer.isView(sequence.symbols)) return sequence as SymbolSequence;
+  throw new BugError('symbols were needed that lie outside memory');
+}
+
 /** Entropies and floors of one corpus, one for each kind of contexts that its cells have. */
 export class CorpusFloors {
-  readonly #corpus: CorpusData;
+  readonly #corpus: CorpusShape;
+  readonly #counted: ReadonlyMap<ContextScope, EntropyByOrder>;
   readonly #byScope = new Map<ContextScope, ScopedFloor>();
   #ceilings: readonly Ceiling[] = [];
   readonly #without: NoCeiling[] = [];
+  readonly #pieces: FloorPieces;
 
-  constructor(corpus: CorpusData) {
+  /**
+   * @param counted  entropies that are there already; needed where the symbols are not
+   * @param pieces   what is there already, or is computed here
+   */
+  constructor(
+    corpus: CorpusShape,
+    counted: ReadonlyMap<ContextScope, EntropyByOrder> = new Map(),
+    pieces = new FloorPieces(),
+  ) {
     this.#corpus = corpus;
+    this.#counted = counted;
+    this.#pieces = pieces;
   }
 
   /**
@@ -111,6 +139,11 @@ export class CorpusFloors {
     run: boolean,
     pause: () => Promise<void>,
   ): Promise<void> {
+    await this.build(this.optionsForCells(results, run), pause);
+  }
+
+  /** What {@link buildForCells} builds. */
+  optionsForCells(results: readonly (CellBits | CellFailure)[], run: boolean): FloorOptions {
     const scopes = new Set(results.map((r) => scopeOf(r.cell, this.#corpus)));
     let upto = LEAST_ORDER;
     for (const result of results) {
@@ -119,8 +152,11 @@ export class CorpusFloors {
       }
     }
     const ceilings = [...ceilingsOf(results, this.#corpus)];
-    const ctw = run && this.#corpus.test.symbols.length <= MOST_CTW_SYMBOLS;
-    await this.build({ scopes, upto, useful: false, ceilings, run, ctw }, pause);
+    const { test, vary } = this.#corpus;
+    // Other messages of the same source: the plan's own have it.
+    const again = vary?.messageSymbols !== undefined;
+    const ctw = run && !again && test.symbols.length <= MOST_CTW_SYMBOLS;
+    return { scopes, upto, useful: false, ceilings, run, ctw };
   }
 
   /**
@@ -136,20 +172,30 @@ export class CorpusFloors {
     let measured: MatchMeasurements | undefined;
     for (const contexts of options.scopes) {
       await pause();
-      const entropy = entropyByOrder(test, {
-        upto: options.upto,
-        contexts,
-        useful: options.useful,
-        ...(options.all === undefined ? {} : { all: options.all }),
-        ...(options.changes === undefined ? {} : { changes: options.changes }),
-        fileEnds: fileEndsOf(this.#corpus),
-      });
+      const { upto, useful, all = false, changes = false } = options;
+      const entropy =
+        this.#counted.get(contexts) ??
+        this.#pieces.take(
+          `entropy ${JSON.stringify({ contexts, upto, useful, all, changes })}`,
+          () =>
+            entropyByOrder(symbolsOf(test), {
+              upto,
+              contexts,
+              useful,
+              all,
+              changes,
+              fileEnds: fileEndsOf(this.#corpus),
+              sampled: this.#corpus.sample !== undefined,
+            }),
+        );
       let matches: MatchLengthEntropy | undefined;
       if (options.run) {
         await pause();
         const order = entropy.largestEstimable;
-        if (measured?.order !== order) measured = measureMatches(test, order);
-        matches = matchLengthEntropy(test, entropy, measured);
+        matches = this.#pieces.take(`matches ${contexts} of order ${order}`, () => {
+          if (measured?.order !== order) measured = measureMatches(symbolsOf(test), order);
+          return matchLengthEntropy(symbolsOf(test), entropy, measured);
+        });
       }
       const floor = floorOf({ orders: entropy.orders, ceilings, matches });
       this.#byScope.set(contexts, {
@@ -174,7 +220,13 @@ export class CorpusFloors {
       }
       if (known === undefined) {
         await pause();
-        const run = adaptiveCeilings(test, { from: order, upto: order });
+        const run = this.#pieces.take(`ceiling ${name}`, () => {
+          const { ceilings, without } = adaptiveCeilings(symbolsOf(test), {
+            from: order,
+            upto: order,
+          });
+          return { ceilings, without: without.map(({ name, reason }) => ({ name, reason })) };
+        });
         known = run.ceilings.find((c) => c.name === name);
         if (known !== undefined) ceilings.push(known);
         this.#without.push(...run.without);
@@ -189,12 +241,16 @@ export class CorpusFloors {
       return;
     }
     await pause();
-    try {
-      ceilings.push(ctwCeiling(test));
-    } catch (error) {
-      if (!(error instanceof BitassayError)) throw error;
-      this.#without.push({ name, reason: noCeilingReason(error), error });
-    }
+    const found = this.#pieces.take(`ceiling ${name}`, (): Ceiling | NoCeiling => {
+      try {
+        return ctwCeiling(symbolsOf(test));
+      } catch (error) {
+        if (!(error instanceof BitassayError)) throw error;
+        return { name, reason: noCeilingReason(error) };
+      }
+    });
+    if ('reason' in found) this.#without.push(found);
+    else ceilings.push(found);
   }
 
   /** What was counted for one kind of contexts. */
@@ -232,8 +288,11 @@ export class CorpusFloors {
   }
 
   records(): EntropyRecord[] {
+    const { name, vary } = this.#corpus;
+    const data = codedKeyOf(name, vary ?? {});
     return [...this.#byScope].map(([contexts, { entropy, floor, matches }]) => ({
-      corpus: this.#corpus.name,
+      corpus: name,
+      ...(data === name ? {} : { data }),
       contexts,
       orders: entropy.orders.map(orderRecord),
       floor: { ...floor },

@@ -1,6 +1,13 @@
 import type { Coded, Coder, Setup } from '../coders/contract.ts';
-import type { BothEnds, EndCost, EndOperations } from '../coders/cost.ts';
-import { addCounts, OPERATIONS, type OperationCounts } from '../models/counting-tally.ts';
+import {
+  addOperations,
+  atBothEnds,
+  type BothEnds,
+  type EndCost,
+  type EndOperations,
+  mostOf,
+} from '../coders/cost.ts';
+import { OPERATIONS, type OperationCounts } from '../models/counting-tally.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { CellRecord } from './run-record.ts';
 
@@ -39,7 +46,8 @@ function messageBytesOf(units: readonly Unit[]): { longest: number; mean: number
 }
 
 /**
- * Costs, operations and decode delay of a cell that was coded; a pass of its own over its symbols.
+ * Costs, operations and decode delay of a cell that was coded; a pass of its own over its symbols. Where tables are sent or
+ * grow, an end costs the most that any unit takes.
  *
  * Delay: what the coder's decoder looks at, with the tables that stand before it: under reset `message` their mean over
  * messages, otherwise those of one unit; never more than the longest message and the alphabet map.
@@ -49,19 +57,18 @@ export function costFigures(coder: Coder, units: readonly Unit[], mapBits: numbe
   if (units.length === 0) return {};
   const { longest, mean, count } = messageBytesOf(units);
   const { setup } = units[0];
-  const costs = coder.costs?.(setup, longest);
   const holds = count === 0 ? undefined : coder.decoderHolds?.(setup);
+  // What both ends have beforehand is the same for all units.
+  const isShipped = setup.policy === 'shipped' || setup.policy === 'none';
+  let costs: BothEnds<EndCost> | undefined;
   let operations: EndOperations | undefined;
-  for (const unit of units) {
-    const own = coder.operations?.(unit.messages, unit.setup);
-    if (own === undefined) break;
-    operations =
-      operations === undefined
-        ? own
-        : {
-            encoder: addCounts(operations.encoder, own.encoder),
-            decoder: addCounts(operations.decoder, own.decoder),
-          };
+  for (const { messages, setup: own } of units) {
+    const counted = coder.operations?.(messages, own);
+    if (counted !== undefined)
+      operations = operations === undefined ? counted : addOperations(operations, counted);
+    if (costs !== undefined && isShipped) continue;
+    const cost = coder.costs?.(own, longest, messages);
+    if (cost !== undefined) costs = costs === undefined ? cost : atBothEnds(costs, cost, mostOf);
   }
   return {
     ...(costs === undefined ? {} : { costs }),

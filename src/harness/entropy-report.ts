@@ -62,7 +62,9 @@ async function reportOf(
   if (whole.test.symbols.length === 0) return [];
   const corpus = sampled(whole);
   const isSample = corpus !== whole;
-  const run = !options.rough && !isSample;
+  // What a coder needs for a part is no bound on the whole.
+  const isPart = isSample || whole.sample !== undefined;
+  const run = !options.rough && !isPart;
   const scopes: ContextScope[] =
     whole.fill !== undefined
       ? ['running']

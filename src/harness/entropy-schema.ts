@@ -60,6 +60,12 @@ const drift = z.strictObject({
 
 export const entropySchema = z.strictObject({
   corpus: z.string(),
+  data: z
+    .string()
+    .optional()
+    .describe(
+      'the corpus with its message size and fold as in the ids of cells, where the plan varies them',
+    ),
   contexts: z.enum(['message', 'running']),
   orders: z.array(order),
   sampled_symbols: z

@@ -1,8 +1,8 @@
-import type { CorpusData } from './corpus-data.ts';
+import type { CorpusShape } from './corpus-data.ts';
 import type { CellBits } from './run-cell.ts';
 
 /** Units of each message of a cell under fill. */
-function unitCountsOf({ messageEnds }: CellBits, { test }: CorpusData): Uint32Array {
+function unitCountsOf({ messageEnds }: CellBits, { test }: CorpusShape): Uint32Array {
   const counts = new Uint32Array(messageEnds.length);
   let unit = 0;
   for (let i = 0; i < counts.length; i++) {
@@ -22,7 +22,7 @@ export interface FillFigures {
 }
 
 /** How full a cell made its messages; undefined where there is no message. */
-export function fillFigures(bits: CellBits, corpus: CorpusData): FillFigures | undefined {
+export function fillFigures(bits: CellBits, corpus: CorpusShape): FillFigures | undefined {
   const counts = unitCountsOf(bits, corpus);
   if (counts.length === 0) return undefined;
   let min = counts[0];
@@ -35,7 +35,7 @@ export function fillFigures(bits: CellBits, corpus: CorpusData): FillFigures | u
  * Carried bits of each message of the corpus. Under fill these are units, whose cells cut different messages: the bits of a
  * message, padding and all, are spread evenly over its units, so that cells can be compared over the same stretch of source.
  */
-export function bitsOfCorpusMessages(bits: CellBits, corpus: CorpusData): Float64Array {
+export function bitsOfCorpusMessages(bits: CellBits, corpus: CorpusShape): Float64Array {
   if (corpus.fill === undefined) return bits.messageBits;
   const spread = new Float64Array(corpus.test.messageEnds.length);
   let unit = 0;

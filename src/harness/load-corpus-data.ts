@@ -2,6 +2,7 @@ import { BitWriter } from '../bits/bit-writer.ts';
 import type { Corpus, CorpusSpec } from '../corpus/corpus.ts';
 import type { SplitRule } from '../corpus/decide-split.ts';
 import { loadCorpus, loadSplitCorpus } from '../corpus/intake.ts';
+import { symbolsPerMessage } from '../corpus/recut.ts';
 import { writeAlphabetMap } from '../symbols/alphabet-map.ts';
 import type { CorpusData } from './corpus-data.ts';
 
@@ -15,13 +16,7 @@ export async function loadCorpusData(
   rule: SplitRule | undefined,
 ): Promise<CorpusData> {
   if (rule === undefined) {
-    const corpus = await loadCorpus(spec, baseFolder);
-    const { alphabet } = corpus;
-    const data = { ...factsOf(corpus, corpus.fileEnds, spec), test: corpus.sequence };
-    if (alphabet.kind !== 'map') return data;
-    const writer = new BitWriter();
-    const bits = writeAlphabetMap(writer, alphabet.map);
-    return { ...data, sentMap: { bytes: writer.finish().bytes, bits } };
+    return unsplitData(await loadCorpus(spec, baseFolder), spec);
   }
   const { corpus, parts } = await loadSplitCorpus(spec, baseFolder, rule);
   return {
@@ -32,11 +27,23 @@ export async function loadCorpusData(
   };
 }
 
-function factsOf(
+/** A corpus whose data are all coded, with its alphabet map where one must be sent. */
+export function unsplitData(corpus: Corpus, spec: CorpusSpec): CorpusData {
+  const { alphabet } = corpus;
+  const data = { ...factsOf(corpus, corpus.fileEnds, spec), test: corpus.sequence };
+  if (alphabet.kind !== 'map') return data;
+  const writer = new BitWriter();
+  const bits = writeAlphabetMap(writer, alphabet.map);
+  return { ...data, sentMap: { bytes: writer.finish().bytes, bits } };
+}
+
+/** @param fileEnds  of the part that is coded, in its messages */
+export function factsOf(
   corpus: Corpus,
   fileEnds: Uint32Array,
   spec: CorpusSpec,
 ): Omit<CorpusData, 'test'> {
+  const messageSymbols = symbolsPerMessage({ ...spec, messages: corpus.messagesAs });
   const takesBytes = corpus.symbolsAs === 'bytes' && corpus.alphabet.kind === 'natural';
   return {
     name: corpus.name,
@@ -44,11 +51,13 @@ function factsOf(
     sha256: corpus.sha256,
     symbolsAs: corpus.symbolsAs,
     messagesAs: corpus.messagesAs,
+    ...(messageSymbols === undefined ? {} : { messageSymbols }),
     lengths: corpus.lengths,
     alphabetSize: corpus.sequence.alphabetSize,
     ...(takesBytes && corpus.record !== undefined ? { record: corpus.record } : {}),
     ...(spec.fields === undefined ? {} : { fields: spec.fields }),
     ...(corpus.fill === undefined ? {} : { fill: corpus.fill }),
+    ...(corpus.sample === undefined ? {} : { sample: corpus.sample }),
     sourceBytes: corpus.sourceBytes,
     testFiles: corpus.files.map(({ path, sha256 }, i) => ({
       path,
@@ -61,6 +70,8 @@ function factsOf(
 /** How train and test were parted, in words. */
 export function describeSplit(rule: SplitRule | undefined): string {
   if (rule === undefined) return 'none: all data are coded';
+  if (rule.folds !== undefined)
+    return `each of ${rule.folds} contiguous blocks by ${rule.by} in turn, trained on the others`;
   const order = rule.order === 'in_time' ? 'the first' : 'a random';
   const share = `${Number((rule.train * 100).toPrecision(6))} %`;
   const tail = rule.order === 'random' ? `, seed ${rule.seed ?? 1}` : '';

@@ -1,6 +1,6 @@
 import type { Cell } from './cells.ts';
 import { decodesAlone } from './cells.ts';
-import { type CorpusData, unitsOf } from './corpus-data.ts';
+import { type CorpusShape, messagesOfUnits } from './corpus-data.ts';
 
 /** What losing messages on the way does to a cell. */
 export interface LossFigures {
@@ -21,7 +21,7 @@ export interface LossFigures {
  */
 export function lossFigures(
   cell: Cell,
-  corpus: CorpusData,
+  corpus: CorpusShape,
   rate: number,
   unitsPerMessage?: number,
 ): LossFigures {
@@ -36,10 +36,10 @@ export function lossFigures(
   };
 }
 
-function lostShare(cell: Cell, corpus: CorpusData, rate: number): number {
+function lostShare(cell: Cell, corpus: CorpusShape, rate: number): number {
   const groups = decodesAlone(cell)
     ? undefined
-    : unitsOf(corpus, cell.reset).map((unit) => unit.messageEnds.length);
+    : messagesOfUnits(corpus, cell.reset);
   if (groups === undefined) return rate;
   // Σ over i = 1 … g of 1 − (1 − rate)^i, in a form that stays exact for rare losses.
   const lostBySize = new Map<number, number>();

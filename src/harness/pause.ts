@@ -2,8 +2,10 @@
 export interface RunProgress {
   readonly cellsDone: number;
   readonly cellsTotal: number;
-  /** Cell, or another piece of work, in hand. */
+  /** Cells, or other pieces of work, in hand. */
   readonly current: string;
+  /** What `cellsDone` counts, where a run does one after the other. */
+  readonly doing?: 'coding' | 'timing';
 }
 
 export interface RunHooks {

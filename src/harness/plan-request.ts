@@ -1,17 +1,19 @@
 import { type Candidate, parseCandidates } from '../coders/candidate.ts';
+import type { SplitRule } from '../corpus/decide-split.ts';
 import type { Plan } from '../corpus/plan.ts';
 import { BitassayError, InputError } from '../errors/errors.ts';
+import { budgetOf } from './budget.ts';
+import type { CorpusData } from './corpus-data.ts';
 import { describeSplit, loadCorpusData } from './load-corpus-data.ts';
+import { loadVariedData } from './load-varied-data.ts';
 import type { RunRequest } from './run-all.ts';
-
-/** Longest that one direction of a cell is timed for, once it has three samples. */
-const TIMING_SECONDS = 0.25;
+import { checkPacer } from './time-work.ts';
 
 /**
  * The candidates of a plan, ranges opened.
  * @throws InputError that names the line of a candidate that cannot be read
  */
-function candidatesOf(plan: Plan): Candidate[] {
+export function candidatesOf(plan: Plan): Candidate[] {
   return plan.candidates.flatMap((text, i) => {
     try {
       return parseCandidates(text);
@@ -35,12 +37,62 @@ function trains(plan: Plan, candidates: readonly Candidate[]): boolean {
   );
 }
 
+/** How the plan's data are parted; undefined where nothing trains. */
+export function splitRuleOf(plan: Plan, candidates: readonly Candidate[]): SplitRule | undefined {
+  if (trains(plan, candidates)) return plan.split;
+  const { vary, split } = plan.written;
+  const needless = [
+    ...(vary?.train_share === undefined ? [] : [['vary', 'train_share']]),
+    ...(split?.folds === undefined ? [] : [['split', 'folds']]),
+  ];
+  for (const path of needless) {
+    throw new InputError(`${path.join('.')} changes nothing where no candidate is trained`, {
+      file: plan.file,
+      line: plan.lineOf(...path),
+      key: path.join('.'),
+      expected: 'a candidate that declares shipped or primed tables, and those among tables',
+      got: `tables: ${plan.tables.join(', ')}`,
+    });
+  }
+  return undefined;
+}
+
+/** Runs `read`; what it refuses for a key of the plan names the line of that key. */
+async function withLine<T>(plan: Plan, read: () => Promise<T>): Promise<T> {
+  try {
+    return await read();
+  } catch (error) {
+    const key = error instanceof InputError ? error.where.key : undefined;
+    if (!(error instanceof InputError) || !/^(vary|split|timing)\./.test(key ?? '')) throw error;
+    const where = { ...error.where, file: plan.file, line: plan.lineOf(...key!.split('.')) };
+    throw new InputError(error.message, where, error);
+  }
+}
+
+/**
+ * The plan's corpora, each once, without what it varies: with folds all their data, else the part that cells code.
+ * @throws what intake and split throw
+ */
+export async function corporaOfPlan(plan: Plan): Promise<CorpusData[]> {
+  const rule = splitRuleOf(plan, candidatesOf(plan));
+  const whole = rule?.folds === undefined ? rule : undefined;
+  const corpora = [];
+  for (const spec of plan.corpora) corpora.push(await loadCorpusData(spec, plan.folder, whole));
+  return corpora;
+}
+
 /** Reads the plan's corpora and makes the request that a run takes. */
 export async function requestOf(plan: Plan): Promise<RunRequest> {
   const candidates = candidatesOf(plan);
-  const rule = trains(plan, candidates) ? plan.split : undefined;
-  const corpora = [];
-  for (const spec of plan.corpora) corpora.push(await loadCorpusData(spec, plan.folder, rule));
+  const rule = splitRuleOf(plan, candidates);
+  const corpora: CorpusData[] = [];
+  for (const spec of plan.corpora) {
+    corpora.push(
+      ...(await withLine(plan, () => loadVariedData(spec, plan.folder, rule, plan.vary))),
+    );
+  }
+  if (plan.timing.repeats > 0)
+    await withLine(plan, async () => checkPacer(plan.timing.pacer, corpora));
   return {
     title: plan.title ?? plan.file,
     corpora,
@@ -48,11 +100,14 @@ export async function requestOf(plan: Plan): Promise<RunRequest> {
     policies: plan.tables,
     resets: plan.reset,
     align: plan.align,
+    ...(plan.vary.aligns === undefined ? {} : { aligns: plan.vary.aligns }),
     ...(plan.lossRate === undefined ? {} : { lossRate: plan.lossRate }),
     ...(plan.billStepBytes === undefined ? {} : { billStepBytes: plan.billStepBytes }),
     ...(plan.device === undefined ? {} : { device: plan.device }),
+    decision: plan.decision,
+    budget: budgetOf(plan.budget),
     split: describeSplit(rule),
-    ageing: rule !== undefined && rule.order === 'in_time',
-    timing: { repeats: plan.timing.repeats, seconds: TIMING_SECONDS },
+    ageing: rule !== undefined && rule.order === 'in_time' && rule.folds === undefined,
+    ...(plan.timing.repeats === 0 ? {} : { timing: plan.timing }),
   };
 }

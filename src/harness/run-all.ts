@@ -1,18 +1,23 @@
 import type { Candidate } from '../coders/candidate.ts';
 import type { Reset, TablePolicy } from '../coders/contract.ts';
 import { symbolCountsOf } from '../coders/verify.ts';
-import { ageingOf, ageingRecordOf } from './ageing.ts';
+import type { Plan } from '../corpus/plan.ts';
+import type { CellBudget } from './budget.ts';
 import { cellRecordOf } from './cell-record.ts';
 import { type Cell, listCells } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
-import { CorpusFloors } from './corpus-floors.ts';
-import { corpusRecordOf } from './corpus-record.ts';
+import { corpusRecordsOf } from './corpus-record.ts';
 import { describeEnvironment, toolVersion } from './environment.ts';
+import type { Executor } from './executor.ts';
 import { bitsOfCorpusMessages } from './fill-figures.ts';
-import { Interrupted, pauseWith, type RunHooks } from './pause.ts';
-import { type CellBits, type CellFailure, runCell } from './run-cell.ts';
+import type { RunHooks } from './pause.ts';
+import { RunBoard } from './run-board.ts';
+import { type CellGroup, type CodedGroup, codeGroup } from './run-group.ts';
 import type { CellRecord, RunRecord } from './run-record.ts';
-import { Pacer, type Speed } from './speed.ts';
+import { type RunTimes, timeCells } from './run-times.ts';
+import { ThisThread } from './this-thread.ts';
+import type { TimingOptions } from './time-cell.ts';
+import { codedGroups, varyCells } from './variation-cells.ts';
 
 /** Everything a run is made of, once plan and files are read. */
 export interface RunRequest {
@@ -22,18 +27,24 @@ export interface RunRequest {
   readonly policies: readonly TablePolicy[];
   readonly resets: readonly Reset[];
   readonly align: number;
+  /** Alignments that cells are run for besides. */
+  readonly aligns?: readonly number[];
   /** Share of messages lost on the way; absent: not asked. */
   readonly lossRate?: number;
   /** Bytes in which a link bills each message; absent: not asked. */
   readonly billStepBytes?: number;
   /** The small end of the product, where the plan names it. */
   readonly device?: 'encoder' | 'decoder';
+  /** What a choice from the run is to be made by: kept in its record. */
+  readonly decision?: Plan['decision'];
+  /** What a cell may take, where cells are run in workers; the usual when absent. */
+  readonly budget?: CellBudget;
   /** How train and test were parted, in words. */
   readonly split: string;
   /** Train lies before test in time: say how shipped tables age. */
   readonly ageing?: boolean;
   /** Absent: nothing is timed. */
-  readonly timing?: { readonly repeats: number; readonly seconds: number };
+  readonly timing?: TimingOptions;
   /** Only the cells whose id contains this text. */
   readonly only?: string;
 }
@@ -58,85 +69,56 @@ export function cellsOf(request: RunRequest): {
 } {
   const filled = request.corpora.filter((c) => c.fill !== undefined).map((c) => c.name);
   const records = request.corpora.filter((c) => c.record !== undefined).map((c) => c.name);
-  const { cells, undeclared, notFilled } = listCells(
-    request.corpora.map((c) => c.name),
+  const {
+    cells: own,
+    undeclared,
+    notFilled,
+  } = listCells(
+    [...new Set(request.corpora.map((c) => c.name))],
     request.candidates,
     request.policies,
     request.resets,
     { filled: new Set(filled), records: new Set(records), align: request.align },
   );
   const { only } = request;
+  const cells = varyCells(own, request.corpora, request.aligns ?? []);
   return {
-    cells: only === undefined ? [...cells] : cells.filter((c) => c.id.includes(only)),
+    cells: only === undefined ? cells : cells.filter((c) => c.id.includes(only)),
     undeclared,
     notFilled,
   };
 }
 
-/** Runs every cell one after another on this thread, then holds each against the floor of its corpus. */
-export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise<RunResult> {
+/**
+ * Codes every cell, holds each against the floor of its data, then times them one at a time. The record does not depend on
+ * where the work is done nor on the order in which it ends.
+ * @param executor  where the work is done; on this thread when absent
+ */
+export async function runAll(
+  request: RunRequest,
+  hooks: RunHooks = {},
+  executor: Executor = new ThisThread(),
+): Promise<RunResult> {
   const { cells, undeclared, notFilled } = cellsOf(request);
-  const messages = new Map<string, MessagePairs>();
-  const cellRecords: CellRecord[] = [];
-  const entropy: RunRecord['entropy'] = [];
-  const ageing: NonNullable<RunRecord['ageing']> = [];
-  let cellsDone = 0;
-  let partial = false;
-  const pauseFor = (current: string) =>
-    pauseWith(hooks, () => ({ cellsDone, cellsTotal: cells.length, current }));
-  for (const corpus of request.corpora) {
-    const own = cells.filter((cell) => cell.dataKey === corpus.key);
-    if (own.length === 0 || partial) continue;
-    const results: (CellBits | CellFailure)[] = [];
-    const speeds = new Map<string, { encode: Speed; decode: Speed }>();
-    const pacer =
-      request.timing === undefined || corpus.test.symbols.length === 0
-        ? undefined
-        : new Pacer(corpus.test);
-    const floors = new CorpusFloors(corpus);
-    try {
-      for (const cell of own) {
-        const pause = pauseFor(cell.id);
-        const result = await runCell(cell, corpus, pause);
-        if (!('failure' in result) && pacer !== undefined) {
-          await pause();
-          speeds.set(cell.id, pacer.time(result, { ...request.timing!, seed: cellsDone }));
-        }
-        // Coded units are needed for timing only; letting them go keeps memory to one cell's.
-        results.push('failure' in result ? result : { ...result, units: [] });
-        cellsDone++;
-      }
-    } catch (error) {
-      if (!(error instanceof Interrupted)) throw error;
-      partial = true;
-    }
-    try {
-      if (!partial) await floors.buildForCells(results, true, pauseFor(`${corpus.name}: entropy`));
-    } catch (error) {
-      if (!(error instanceof Interrupted)) throw error;
-      partial = true;
-    }
-    // What was coded is kept: the floor is then held by the cells themselves, without coders run for it alone.
-    if (partial) await floors.buildForCells(results, false, async () => {});
-    entropy.push(...floors.records());
-    for (const result of results) {
-      const speed = speeds.get(result.cell.id);
-      cellRecords.push(cellRecordOf(result, corpus, floors, speed, request));
-      if (!('failure' in result)) {
-        messages.set(result.cell.id, {
-          bits: bitsOfCorpusMessages(result, corpus),
-          symbols: Float64Array.from(symbolCountsOf(corpus.test)),
-        });
-      }
-    }
-    const shipped = partial || !request.ageing ? undefined : bestShipped(results);
-    if (shipped !== undefined) {
-      hooks.progress?.({ cellsDone, cellsTotal: cells.length, current: `${corpus.name}: ageing` });
-      const found = ageingOf(shipped.cell, corpus, shipped.messageEnds);
-      if (found !== undefined) ageing.push(ageingRecordOf(corpus.name, found));
-    }
+  const board = new RunBoard(hooks, cells.length);
+  const groups: CellGroup[] = codedGroups(request.corpora).map((data) => ({
+    data,
+    cells: cells.filter((cell) => data.some(({ key }) => key === cell.dataKey)),
+  }));
+  const coded: CodedGroup[] = [];
+  let timed: RunTimes;
+  try {
+    const ages = request.ageing === true;
+    const running = groups.map((group) => codeGroup(group, ages, executor, board));
+    coded.push(...(await Promise.all(running)));
+    timed = await timeCells(coded, request.corpora, request.timing, executor, board);
+  } catch (error) {
+    board.giveUp();
+    throw error;
   }
-  hooks.progress?.({ cellsDone, cellsTotal: cells.length, current: '' });
+  const partial = timed.partial || coded.some((group) => group.partial);
+  const ageing = coded.flatMap((group) => group.ageing ?? []);
+  const { cellRecords, messages } = cellResultsOf(coded, timed, request);
   return {
     messages,
     record: {
@@ -151,10 +133,11 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
         ...(request.lossRate === undefined ? {} : { loss_rate: request.lossRate }),
         ...(request.billStepBytes === undefined ? {} : { bill_step_bytes: request.billStepBytes }),
         ...(request.device === undefined ? {} : { product: { device: request.device } }),
+        ...request.decision,
       },
       environment: describeEnvironment(),
-      corpora: request.corpora.map(corpusRecordOf),
-      entropy,
+      corpora: corpusRecordsOf(request.corpora),
+      entropy: coded.flatMap(({ floors }) => floors.records()),
       cells: cellRecords,
       ...(ageing.length === 0 ? {} : { ageing }),
       undeclared,
@@ -164,13 +147,26 @@ export async function runAll(request: RunRequest, hooks: RunHooks = {}): Promise
   };
 }
 
-/** The shipped cell of least rate that is no reference. */
-function bestShipped(results: readonly (CellBits | CellFailure)[]): CellBits | undefined {
-  let best: CellBits | undefined;
-  for (const result of results) {
-    if ('failure' in result || result.cell.policy !== 'shipped') continue;
-    if (result.cell.candidate.declaration.reference) continue;
-    if (best === undefined || result.totals.carriedBits < best.totals.carriedBits) best = result;
-  }
-  return best;
+/** What the record says of each cell, and the message figures that stand beside it. */
+function cellResultsOf(
+  coded: readonly CodedGroup[],
+  { times, failures }: RunTimes,
+  request: RunRequest,
+): { cellRecords: CellRecord[]; messages: Map<string, MessagePairs> } {
+  const dataOf = new Map(request.corpora.map((corpus) => [corpus.key, corpus]));
+  const messages = new Map<string, MessagePairs>();
+  const cellRecords = coded.flatMap(({ results, corpus, floors }) =>
+    results.map((coded) => {
+      const result = failures.get(coded.cell.id) ?? coded;
+      if (!('failure' in result)) {
+        messages.set(result.cell.id, {
+          bits: bitsOfCorpusMessages(result, corpus),
+          symbols: Float64Array.from(symbolCountsOf(corpus.test)),
+        });
+      }
+      const data = dataOf.get(result.cell.dataKey)!;
+      return cellRecordOf(result, data, floors, times.get(result.cell.id), request);
+    }),
+  );
+  return { cellRecords, messages };
 }

@@ -6,6 +6,7 @@ import { messageCountOf, type SymbolSequence } from '../symbols/sequence.ts';
 import { type Cell, unitResetOf } from './cells.ts';
 import { type CorpusData, unitsOf } from './corpus-data.ts';
 import { type CostFigures, costFigures } from './cost-figures.ts';
+import { whyNotOnSample } from './sample-cells.ts';
 import { setupBase } from './setup-base.ts';
 
 /** What coding a cell gave, before it is held against a floor. */
@@ -59,7 +60,11 @@ function messagesOf(sequence: SymbolSequence, { symbolEnds }: Coded): SymbolSequ
   return symbolEnds === undefined ? sequence : { ...sequence, messageEnds: symbolEnds };
 }
 
-function setupOf(cell: Cell, corpus: CorpusData, unit?: SymbolSequence): Setup {
+/**
+ * What both ends of a cell agree on before its first bit, tables trained or, where they are sent, fitted to the unit.
+ * @throws InputError where the coder cannot work so
+ */
+export function setupOf(cell: Cell, corpus: CorpusData, unit?: SymbolSequence): Setup {
   const base = setupBase(corpus, cell.policy, unitResetOf(cell), cell.align);
   cell.candidate.create().check?.(base);
   let from: SymbolSequence | undefined;
@@ -129,6 +134,8 @@ export async function runCell(
   corpus: CorpusData,
   pause: (step: CellStep) => Promise<void>,
 ): Promise<CellBits | CellFailure> {
+  const refusal = whyNotOnSample(cell, corpus);
+  if (refusal !== undefined) return { cell, failure: refusal };
   const units: CodedUnit[] = [];
   const coder = cell.candidate.create();
   let idealBits = 0;
@@ -235,7 +242,8 @@ function addFields(
   return more.map((field, i) => ({ ...field, idealBits: field.idealBits + sum[i].idealBits }));
 }
 
-function placeOf(error: BitassayError): string {
+/** Where a failure was met and what to do, as it is put behind its message. */
+export function placeOf(error: BitassayError): string {
   const { expected, got, bitOffset, messageIndex, advice } = error.where;
   const parts = [
     messageIndex === undefined ? '' : `message ${messageIndex}`,

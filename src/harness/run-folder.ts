@@ -8,7 +8,7 @@ import { type RunRecord, runRecordSchema } from './run-record.ts';
 import { writeWhole } from './write-whole.ts';
 
 /** File of a cell's message figures below `messages/`: readable where it can be, and never two alike. */
-function messageFileName(cellId: string): string {
+export function messageFileName(cellId: string): string {
   const hash = createHash('sha256').update(cellId).digest('hex').slice(0, 8);
   return `${cellId.replace(/[^A-Za-z0-9@=.-]+/g, '_')}.${hash}.f64`;
 }

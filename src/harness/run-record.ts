@@ -1,5 +1,6 @@
 import { z } from 'zod';
 import { ACCOUNT_LINES } from '../account/bit-account.ts';
+import { costSchema, limitsSchema } from '../corpus/plan-schema.ts';
 import { entropySchema } from './entropy-schema.ts';
 
 /**
@@ -7,12 +8,49 @@ import { entropySchema } from './entropy-schema.ts';
  * Keys are in snake_case here and in the file; its JSON Schema is made from this ({@link runRecordJsonSchema}).
  */
 
-const speed = z.strictObject({
-  seconds: z.array(z.number()).describe('one pass over the test part, seconds, in time order'),
-  speed: z.number().describe('median of pacer time ÷ candidate time'),
-  low: z.number(),
+const pacedTime = z.strictObject({
+  seconds: z.number().describe('median of the samples'),
+  pacer_symbols: z.number().describe('the symbols that the pacer codes at that end in this time'),
+  low: z.number().describe('of pacer_symbols: 95 % interval'),
   high: z.number(),
 });
+
+const speed = z.strictObject({
+  seconds: z
+    .array(z.number())
+    .describe(
+      'seconds of a run over the timed part, each a mean over at least 20 ms, in time order',
+    ),
+  pacer_seconds: z.array(z.number()).describe('the same of the pacer, in the same turns'),
+  median: z.number().describe('of seconds'),
+  p95: z.number().describe('of seconds'),
+  speed: z.number().describe('median of pacer time ÷ candidate time'),
+  low: z
+    .number()
+    .describe(
+      '95 % interval of speed: bootstrap over turns, percentiles expanded for few; too narrow below 6',
+    ),
+  high: z.number(),
+  rounds: z.number().describe('rounds timed, of which the steadiest is kept'),
+  unsteady: z
+    .literal(true)
+    .optional()
+    .describe('95th percentile of the pacer above 1.15 of its median in every round'),
+  set_up: pacedTime.optional().describe('making a new end ready before its first message'),
+  per_message: pacedTime
+    .optional()
+    .describe(
+      'of a message beyond its symbols, against the same symbols as one message; absent where messages are filled',
+    ),
+});
+
+const timed = z
+  .strictObject({
+    pacer: z.string(),
+    symbol_count: z.number(),
+    message_count: z.number().describe('where messages are filled, units'),
+  })
+  .describe('the beginning of the test part that was timed');
 
 const account = z.strictObject(
   Object.fromEntries(ACCOUNT_LINES.map((line) => [line, z.number().optional()])) as Record<
@@ -24,7 +62,9 @@ const account = z.strictObject(
 const operation = z.strictObject({
   total: z.number().describe('over all symbols, exact'),
   mean: z.number().describe('for each symbol'),
-  worst: z.number().describe('most of one symbol'),
+  worst: z
+    .number()
+    .describe('most of one symbol; a bound where steps, tables or raw messages go around a coder'),
 });
 
 const deviceEnd = z
@@ -32,6 +72,10 @@ const deviceEnd = z
     flash_bytes: z.number().optional().describe('tables'),
     ram_bytes: z.number().optional().describe('state, own buffers, stack (an estimate)'),
     code_bytes: z.number().optional().describe('an estimate'),
+    cycles_per_symbol: z
+      .number()
+      .optional()
+      .describe('measured on the reader’s own target; a run leaves none'),
     operations: z
       .strictObject({
         multiplies: operation,
@@ -39,7 +83,8 @@ const deviceEnd = z
         table_reads: operation,
         branches: operation,
       })
-      .optional(),
+      .optional()
+      .describe('of the loop over symbols; without what sent tables take'),
   })
   .describe('what this end would take on a device, as far as the coder tells');
 
@@ -52,6 +97,15 @@ const cell = z.strictObject({
   tables: z.string(),
   reset: z.string(),
   reference: z.boolean(),
+  vary: z
+    .strictObject({
+      align: z.number().optional(),
+      message_symbols: z.number().optional().describe('symbols of each message'),
+      train_share: z.number().optional().describe('of the train part, the last of it'),
+      fold: z.number().optional().describe('from 1: which block is the test part'),
+    })
+    .optional()
+    .describe('what the cell differs in from the plan; absent for most'),
   loss: z
     .strictObject({
       share: z.number(),
@@ -91,6 +145,25 @@ const cell = z.strictObject({
       max: z.number(),
     })
     .optional(),
+  messages: z
+    .strictObject({
+      grow_share: z
+        .number()
+        .describe('share of messages that take more than at a fixed width of ⌈log2 m⌉ bits'),
+      largest_index: z
+        .number()
+        .describe('message of most carried bits, from 0, in the part that is coded'),
+      worst: z
+        .strictObject({
+          index: z.number(),
+          bytes: z.number().describe('carried'),
+          fixed_width_bytes: z.number().describe('the same symbols at ⌈log2 m⌉ bits each'),
+          first_unit: z.number().optional().describe('where messages are filled with units'),
+        })
+        .describe('the message that grows most, or shrinks least'),
+    })
+    .optional()
+    .describe('which messages a coder serves badly, by index only; where there are several'),
   units_per_message: z
     .strictObject({
       mean: z.number(),
@@ -139,8 +212,16 @@ const cell = z.strictObject({
     .literal(true)
     .optional()
     .describe('the decoder gives no symbol before it has the whole message'),
+  exports: z
+    .array(z.enum(['json', 'c', 'ts']))
+    .optional()
+    .describe('forms in which the coder and its shipped tables can be exported'),
+  timed: timed.optional(),
   encode: speed.optional(),
   decode: speed.optional(),
+  table_build: pacedTime
+    .optional()
+    .describe('making the tables: from the train part, or what is coded where they are sent'),
   failure: z.string().optional(),
 });
 
@@ -160,7 +241,32 @@ const corpus = z.strictObject({
   unit_count: z.number().optional().describe('where messages are filled with units'),
   fill_bytes: z.number().optional().describe('the most coded bytes of a filled message'),
   train_symbol_count: z.number(),
+  message_symbols: z
+    .number()
+    .optional()
+    .describe('symbols of each message, where the framing fixes them and the plan varies them'),
+  folds: z
+    .number()
+    .optional()
+    .describe(
+      'the test part is each of so many blocks once; counts are over all of them, of the train part their mean',
+    ),
   repeated_share: z.number().optional().describe('share of test messages that also occur in train'),
+  in_pieces: z
+    .literal(true)
+    .optional()
+    .describe('read in pieces, since memory does not hold it: see plan.memory_bytes'),
+  sample: z
+    .strictObject({
+      blocks: z.number().describe('taken'),
+      of_blocks: z.number(),
+      block_bytes: z.number(),
+      bytes: z.number().describe('of the messages in them'),
+      of_bytes: z.number(),
+      seed: z.number().optional().describe('where the blocks were drawn'),
+    })
+    .optional()
+    .describe('only blocks of the files were read; each begins without what lies before it'),
 });
 
 const ageing = z
@@ -191,6 +297,13 @@ export const runRecordSchema = z.strictObject({
     resets: z.array(z.string()),
     loss_rate: z.number().optional(),
     bill_step_bytes: z.number().optional(),
+    memory_bytes: z.number().optional().describe('what the process was allowed to hold'),
+    limits: limitsSchema.optional(),
+    cost: costSchema.optional(),
+    weights: z
+      .record(z.string(), z.number())
+      .optional()
+      .describe('of corpora, as the plan has them'),
     product: z
       .strictObject({ device: z.enum(['encoder', 'decoder']) })
       .optional()

@@ -1,12 +1,12 @@
 import type { Setup } from '../coders/contract.ts';
-import type { CorpusData } from './corpus-data.ts';
+import type { CorpusShape } from './corpus-data.ts';
 
 /**
  * What every setup of a corpus says, tables apart: the record, how the plan codes its fields, and filling are the corpus's, so
  * that cells, and figures about cells, cannot differ in them.
  */
 export function setupBase(
-  corpus: CorpusData,
+  corpus: CorpusShape,
   policy: Setup['policy'],
   reset: Setup['reset'],
   align: number,

@@ -1,6 +1,7 @@
 import type { SymbolArray } from '../symbols/sequence.ts';
 import { ContextTree, NODE_FIRST, NODE_SECOND, NODE_SYMBOL, NODE_WORDS } from './context-tree.ts';
 import type { IntervalSink, IntervalSource } from './interval.ts';
+import type { MemoryBound } from './memory-bound.ts';
 import { PositionSums } from './position-sums.ts';
 import type { AdaptiveModel } from './symbol-model.ts';
 import { countEntry, HAS_RUN, SymbolRuns } from './symbol-runs.ts';
@@ -63,6 +64,16 @@ export class AdditiveModel implements AdaptiveModel {
     this.#sums = fromSums
       ? fromSums.clone(memory)
       : new PositionSums(alphabetSize, positions, 'down', memory);
+  }
+
+  get memory(): MemoryBound {
+    return this.#runs.tree.memory;
+  }
+
+  /** Copies of what it has learned, for a pass that counts operations; the contexts are as they stand. */
+  learned(): { readonly runs: SymbolRuns; readonly sums: PositionSums | undefined } {
+    const runs = this.#runs.clone();
+    return { runs, sums: this.#sums?.clone(runs.tree.memory) };
   }
 
   clone(): AdditiveModel {

@@ -1,6 +1,7 @@
 import type { SymbolArray } from '../symbols/sequence.ts';
 import { ContextTree, NODE_FIRST, NODE_SECOND, NODE_SYMBOL, NODE_WORDS } from './context-tree.ts';
 import type { IntervalSink, IntervalSource } from './interval.ts';
+import type { MemoryBound } from './memory-bound.ts';
 import { PositionSums } from './position-sums.ts';
 import type { AdaptiveModel } from './symbol-model.ts';
 import { countEntry, HAS_RUN, SymbolRuns } from './symbol-runs.ts';
@@ -79,6 +80,16 @@ export class BackOffModel implements AdaptiveModel {
     this.#plainTotal = alphabetSize === 1 ? 0 : Math.min(halveAt, this.#runs.largestCount) - 1;
     this.#stamps = new Int32Array(alphabetSize);
     this.#excluded = new Uint32Array(alphabetSize);
+  }
+
+  get memory(): MemoryBound {
+    return this.#tree.memory;
+  }
+
+  /** Copies of what it has learned, for a pass that counts operations; the contexts are as they stand. */
+  learned(): { readonly runs: SymbolRuns; readonly sums: PositionSums } {
+    const runs = this.#runs.clone();
+    return { runs, sums: this.#positionSums.clone(runs.tree.memory) };
   }
 
   clone(): BackOffModel {

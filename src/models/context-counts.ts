@@ -36,6 +36,8 @@ export interface CountingOptions {
   /** Highest order, 0 … {@link HIGHEST_COUNTED_ORDER}. */
   readonly upto: number;
   readonly contexts: ContextScope;
+  /** Where contexts that run on over messages begin anew all the same: the index one past each stretch's last symbol. */
+  readonly breaks?: Uint32Array;
   /** Contiguous blocks of one length, 1 … 256, or where each ends; 64 when absent. */
   readonly blocks?: number | Uint32Array;
   /** Memory for the sequence and its counting together, in bytes; {@link COUNTING_MEMORY_BYTES} when absent. */
@@ -64,7 +66,8 @@ export function countContexts(sequence: SymbolSequence, options: CountingOptions
   const { symbols } = sequence;
   const { upto, contexts, progress } = options;
   checkRange('the highest order', upto, 0, HIGHEST_COUNTED_ORDER);
-  const ends = contexts === 'message' ? sequence.messageEnds : Uint32Array.of(symbols.length);
+  const ends = contexts === 'message' ? sequence.messageEnds
+      : (options.breaks ?? Uint32Array.of(symbols.length));
   const ranked = rankSymbols(symbols);
   const { distinct } = ranked;
   checkCountingMemory({

@@ -1,4 +1,9 @@
-/** Kinds of operations that tell a small device's time; sums, shifts and memory of the message itself are left out. */
+/**
+ * Kinds of operations that tell a small device's time; sums, shifts and memory of the message itself are left out.
+ *
+ * Left out besides: what starts or ends a unit or a message (counts, resets, the end of a code string), the test of the loop over
+ * a message's symbols, and, where tables are sent, what fitting, writing and reading them takes.
+ */
 export const OPERATIONS = ['multiplies', 'divides', 'tableReads', 'branches'] as const;
 
 /** How often each operation ran; integers. A product or quotient by a power of two is a shift and not among them. */
@@ -49,13 +54,40 @@ export class OperationTally {
   }
 }
 
-/** Counts over several sequences together. */
-export function addCounts(a: OperationCounts, b: OperationCounts): OperationCounts {
+function combine(
+  a: OperationCounts,
+  b: OperationCounts,
+  worstOf: (a: number, b: number) => number,
+): Pick<OperationCounts, 'total' | 'worst'> {
   const total = none();
   const worst = none();
   for (const kind of OPERATIONS) {
     total[kind] = a.total[kind] + b.total[kind];
-    worst[kind] = Math.max(a.worst[kind], b.worst[kind]);
+    worst[kind] = worstOf(a.worst[kind], b.worst[kind]);
   }
-  return { symbolCount: a.symbolCount + b.symbolCount, total, worst };
+  return { total, worst };
+}
+
+/** Counts over several sequences together. */
+export function addCounts(a: OperationCounts, b: OperationCounts): OperationCounts {
+  return { symbolCount: a.symbolCount + b.symbolCount, ...combine(a, b, Math.max) };
+}
+
+/**
+ * Counts over the same symbols, which go through `a` and through `b`. The worst are added: a bound, which no symbol
+ * need reach.
+ */
+export function addSteps(a: OperationCounts, b: OperationCounts): OperationCounts {
+  return { symbolCount: a.symbolCount, ...combine(a, b, (first, second) => first + second) };
+}
+
+/** `symbolCount` symbols that each take `each`. */
+export function evenCounts(symbolCount: number, each: Partial<Operations>): OperationCounts {
+  const total = none();
+  const worst = none();
+  for (const kind of OPERATIONS) {
+    total[kind] = symbolCount * (each[kind] ?? 0);
+    if (symbolCount > 0) worst[kind] = each[kind] ?? 0;
+  }
+  return { symbolCount, total, worst };
 }

@@ -1,5 +1,5 @@
 import type { SymbolSequence } from '../symbols/sequence.ts';
-import { countContexts } from './context-counts.ts';
+import { countContexts, type OrderCounts } from './context-counts.ts';
 import { sumOfLogs } from './context-counts-tallies.ts';
 import { NODE_PARENT, NODE_SECOND, NODE_WORDS } from './context-tree.ts';
 import { PairTree } from './pair-tree.ts';
@@ -24,8 +24,15 @@ export function empiricalLengthBits(
     contexts: startAtMessages ? 'message' : 'running',
     blocks: 1,
   })[order];
-  const inner = sumOfLogs(counts.contextTallies) - sumOfLogs(counts.pairTallies);
-  return Math.max(0, inner) + startBits(sequence, order, startAtMessages);
+  return countedBits(counts) + startBits(sequence, order, startAtMessages);
+}
+
+/** The sum over the contexts without start values. */
+export function countedBits({
+  contextTallies,
+  pairTallies,
+}: Pick<OrderCounts, 'contextTallies' | 'pairTallies'>): number {
+  return Math.max(0, sumOfLogs(contextTallies) - sumOfLogs(pairTallies));
 }
 
 /** The same sum over the contexts with start values. */
@@ -43,6 +50,11 @@ function startBits(sequence: SymbolSequence, order: number, startAtMessages: boo
   } else {
     pairs.count(symbols, 0, Math.min(symbols.length, order));
   }
+  return startContextBits(pairs, order);
+}
+
+/** The sum over strings of order + 1 symbols, the first of which hold start values. */
+export function startContextBits(pairs: PairTree, order: number): number {
   const { words, nodeCount } = pairs.tree;
   const depths = new Uint8Array(nodeCount);
   const sums = new Float64Array(nodeCount);

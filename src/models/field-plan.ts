@@ -1,26 +1,43 @@
 import { BugError, InputError } from '../errors/errors.ts';
-import type { FieldChoice } from '../symbols/field-choice.ts';
+import type { FieldChoice, FieldContext } from '../symbols/field-choice.ts';
 import type { RecordLayout } from '../symbols/record-layout.ts';
+import { weightCount } from './field-linear.ts';
 import { TRANSFORM_CODES } from './field-residual.ts';
 import { BUCKETS, tokenCount } from './field-token.ts';
 
-const NO_CONTEXT = 0;
+export const NO_CONTEXT = 0;
 export const LAST_RESIDUAL = 1;
 export const LAST_VALUE = 2;
 export const EARLIER_FIELD = 3;
+export const EARLIER_VALUE = 4;
+export const VALUE_BEFORE = 5;
+
+const CONTEXT_CODES: Readonly<Record<FieldContext['kind'], number>> = {
+  none: NO_CONTEXT,
+  last: LAST_RESIDUAL,
+  value: LAST_VALUE,
+  field: EARLIER_FIELD,
+  at: EARLIER_VALUE,
+  was: VALUE_BEFORE,
+};
 
 /** Bounds between the size classes of a value. */
 export const BOUNDS = BUCKETS - 1;
 
 /** What both ends know of a field's values beforehand. */
 export interface FieldFacts {
-  /** Stands in for the value before the first; unsigned, as in the layout. */
+  /**
+   * Stands in for the value before the first, or, where a choice names a field for that, is added
+   * to the value of that field; unsigned, as in the layout.
+   */
   readonly reference: number;
   /**
    * {@link BOUNDS} integers that never fall; a value in class i lies at or above i of them, by
    * {@link orderedValue}.
    */
   readonly bounds: readonly number[];
+  /** Under `linear`, {@link weightCount} for each of {@link weightClassesOf}. */
+  readonly weights?: Int16Array;
 }
 
 /** A value turned so that unsigned order is the order of the field. */
@@ -43,11 +60,14 @@ export function tableCountOf(kind: number): number {
   return kind === LAST_RESIDUAL ? BUCKETS + 2 : BUCKETS + 1;
 }
 
-export function contextKindOf(choice: FieldChoice): number {
-  return { none: NO_CONTEXT, last: LAST_RESIDUAL, value: LAST_VALUE, field: EARLIER_FIELD }[
-    choice.context.kind
-  ];
-}
+export const contextKindOf = (choice: FieldChoice): number => CONTEXT_CODES[choice.context.kind];
+
+/**
+ * Classes of a context that have weights of their own under `linear`. The own last residual has
+ * none: it would depend on them.
+ */
+export const weightClassesOf = (kind: number): number =>
+  kind === NO_CONTEXT || kind === LAST_RESIDUAL ? 1 : BUCKETS;
 
 /**
  * How every part of a record is coded, in the form that loops over symbols read.
@@ -61,8 +81,16 @@ export class FieldPlan {
   readonly choices: readonly FieldChoice[];
   readonly transforms: Uint8Array;
   readonly contexts: Uint8Array;
-  /** Under {@link EARLIER_FIELD}, the part asked. */
+  /** The part that a context asks; its own where it asks none. */
   readonly contextParts: Uint16Array;
+  /** The part beside which a first value is coded, or −1. */
+  readonly firstParts: Int16Array;
+  /** Parts that `linear` asks: those of a part from `inputStart[part]` on. */
+  readonly inputs: Uint16Array;
+  readonly inputStart: Uint32Array;
+  /** Weights of `linear`: those of a part, class by class, from `weightStart[part]` on. */
+  readonly weights: Int16Array;
+  readonly weightStart: Uint32Array;
   readonly references: Uint32Array;
   /** {@link BOUNDS} a part. */
   readonly bounds: Float64Array;
@@ -86,9 +114,20 @@ export class FieldPlan {
     this.choices = choices;
     this.transforms = Uint8Array.from(choices, (choice) => TRANSFORM_CODES[choice.transform]);
     this.contexts = Uint8Array.from(choices, contextKindOf);
-    this.contextParts = Uint16Array.from(choices, (choice, part) =>
-      earlierPart(names, choice, part),
+    this.contextParts = Uint16Array.from(choices, ({ context }, part) =>
+      'name' in context ? askedPart(names, part, context.kind, context.name) : part,
     );
+    this.firstParts = Int16Array.from(choices, ({ first }, part) =>
+      first === undefined ? -1 : askedPart(names, part, 'first', first),
+    );
+    const inputs = choices.map((choice, part) =>
+      (choice.inputs ?? []).map((name) => askedPart(names, part, 'linear', name)),
+    );
+    this.inputs = Uint16Array.from(inputs.flat());
+    this.inputStart = startsOf(inputs.map((list) => list.length));
+    const weights = facts.map((fact, part) => weightsOf(choices[part], fact));
+    this.weights = Int16Array.from(weights.flatMap((list) => [...list]));
+    this.weightStart = startsOf(weights.map((list) => list.length));
     this.references = Uint32Array.from(facts, (fact) => fact.reference);
     this.bounds = Float64Array.from(facts.flatMap((fact) => fact.bounds));
     this.shifts = widths.map((width) => 32 - width);
@@ -120,16 +159,42 @@ export class FieldPlan {
   }
 }
 
-function earlierPart(names: readonly string[], choice: FieldChoice, part: number): number {
-  const { context } = choice;
-  if (context.kind !== 'field') return 0;
-  const asked = names.indexOf(context.name);
-  if (asked >= 0 && asked < part) return asked;
-  throw new InputError(`the field ${names[part]} cannot have the context field:${context.name}`, {
+function startsOf(lengths: readonly number[]): Uint32Array {
+  const starts = new Uint32Array(lengths.length + 1);
+  for (let i = 0; i < lengths.length; i++) starts[i + 1] = starts[i] + lengths[i];
+  return starts;
+}
+
+/** Weights of a part; untrained they are 0, and a linear prediction is the value before. */
+function weightsOf(choice: FieldChoice, { weights }: FieldFacts): Int16Array {
+  if (choice.transform !== 'linear') return new Int16Array(0);
+  const count = weightClassesOf(contextKindOf(choice)) * weightCount(choice.inputs?.length ?? 0);
+  if (weights !== undefined && weights.length !== count)
+    throw new BugError('a plan of fields has the wrong number of weights');
+  return weights ?? new Int16Array(count);
+}
+
+/** Parts that a choice may ask: any other for what it was, else one that lies before. */
+function askedPart(
+  names: readonly string[],
+  part: number,
+  how: 'field' | 'at' | 'was' | 'linear' | 'first',
+  name: string,
+): number {
+  const asked = names.indexOf(name);
+  const any = how === 'was' || how === 'linear';
+  if (asked >= 0 && asked !== part && (any || asked < part)) return asked;
+  const others = names.filter((_, other) => other !== part && (any || other < part));
+  throw new InputError(`the field ${names[part]} cannot have ${roleOf(how)} ${how}:${name}`, {
     expected:
-      part === 0
-        ? 'none, last or value: no field lies before this one'
-        : `a field that lies before it in the record: ${names.slice(0, part).join(', ')}`,
-    got: context.name,
+      others.length === 0
+        ? 'none of another field: there is none that it could ask'
+        : `${any ? 'another field of the record' : 'a field that lies before it in the record'}: ${others.join(', ')}`,
+    got: name,
   });
+}
+
+function roleOf(how: string): string {
+  if (how === 'linear') return 'the transform';
+  return how === 'first' ? 'the start' : 'the context';
 }

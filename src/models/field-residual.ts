@@ -10,12 +10,15 @@ export const RAW = 0;
 const DELTA = 1;
 const XOR = 2;
 const DELTA2 = 3;
+/** Its expectation is no matter of the field alone: see field-predictor.ts. */
+export const LINEAR = 4;
 
 export const TRANSFORM_CODES: Readonly<Record<FieldTransform, number>> = {
   raw: RAW,
   delta: DELTA,
   xor: XOR,
   delta2: DELTA2,
+  linear: LINEAR,
 };
 
 /**

@@ -1,179 +1,213 @@
-import { type FieldChoice, type FieldContext, TRANSFORMS } from '../symbols/field-choice.ts';
-import { type FieldColumns, factsOf } from './field-columns.ts';
 import {
-  BOUNDS,
-  contextKindOf,
-  type FieldFacts,
-  orderedValue,
-  tableCountOf,
-} from './field-plan.ts';
-import { residualOf, TRANSFORM_CODES, zigzagBetween } from './field-residual.ts';
-import { bucketOf, EXTRA_BITS, tokenCount, tokenOf } from './field-token.ts';
-import { quantiseTables, weighTables } from './field-weights.ts';
-import { Quantiser } from './quantise.ts';
-import { COST_PER_BIT, tableCosts } from './table-cost.ts';
+  type FieldChoice,
+  type FieldContext,
+  MOST_INPUTS,
+  TRANSFORMS,
+} from '../symbols/field-choice.ts';
+import { distanceBeside, type FieldColumns } from './field-columns.ts';
+import { fitWeights, NormalEquations } from './field-least-squares.ts';
+import { columnsOfInputs, linearRows, rowsOfInputs } from './field-linear.ts';
+import { contextKindOf, weightClassesOf } from './field-plan.ts';
+import { FieldPricer, trainingRecords } from './field-pricer.ts';
+import { FieldSeries, type Residuals } from './field-series.ts';
+import { COST_PER_BIT } from './table-cost.ts';
 
 /** A simpler choice stays unless another saves this. */
 const LEAST_GAIN = 8 * COST_PER_BIT;
 
+/** `linear` must besides save this part of the cost, since it has more to keep and to compute. */
+const LINEAR_SHARE = 128;
+
+/** A first value is coded beside another field where that saves this part of the cost. */
+const FIRST_SHARE = 16;
+
+/** `linear` is tried with so many of the contexts that did best without it. */
+const LINEAR_CONTEXTS = 5;
+
+/** Weights are fitted, while choosing, to at most so many of the records. */
+const LINEAR_RECORDS = 8192;
+
 /**
- * A context asks one of so many parts right before its own: all of them in usual records, fewer
+ * A choice asks one of so many parts on each side of its own: all of them in usual records, fewer
  * where a record has hundreds, so that the time stays near linear.
  */
-const nearestEarlier = (partCount: number) =>
-  Math.max(1, Math.min(32, Math.floor(1024 / partCount)));
+const nearest = (partCount: number, most: number) =>
+  Math.max(1, Math.min(most, Math.floor(1024 / partCount)));
 
 /** What was chosen for a part. */
 export interface FieldSelection {
   readonly choice: FieldChoice;
-  /** Of the second half of the records under tables of the first, in 1/65536 bit. */
+  /** Of every other run of records under tables of the others, in 1/65536 bit. */
   readonly cost: number;
   /** The same of `raw` without context. */
   readonly plainCost: number;
 }
 
 /**
- * Transform and context of each part, by cost: tables of the first half of the records price the
- * second half.
+ * Transform and context of each part, by cost: tables and weights of every other run of records
+ * price the others ({@link trainingRecords}).
  *
- * Parts are decided in the order of the record; a part may ask those before it ({@link
- * nearestEarlier}), as they were decided. Contexts are tried from none to the earlier fields, and
- * within each the transforms from `raw` to `delta2`: what comes first is the simpler and stays
- * unless {@link LEAST_GAIN} is saved. Integers only, so the choice is the same everywhere.
+ * Parts are decided in the order of the record; a part may ask those around it ({@link nearest}),
+ * those before it as they were decided. First that beside which a message's first value is coded;
+ * then contexts from none to other fields, and within each the transforms from `raw` to `delta2`;
+ * then `linear`, its inputs found one after another by least squares. What comes first is the
+ * simpler and stays unless {@link LEAST_GAIN} is saved. The choice is the same everywhere: costs are
+ * integers, and least squares are computed in a fixed order.
  *
- * Cost: 4 · records · parts · (contexts + 2) steps, and as many tables to quantise as contexts
- * have.
+ * Cost: 4 · records · parts · contexts steps, as many tables to quantise as contexts have, and for
+ * `linear` about 2000 multiplications for each record and part.
  */
 export function selectFields(columns: FieldColumns): FieldSelection[] {
-  const { layout } = columns;
-  const selections: FieldSelection[] = [];
-  const buckets: Uint8Array[] = [];
-  const pricer = new Pricer(columns);
-  const nearest = nearestEarlier(layout.partCount);
-  for (let part = 0; part < layout.partCount; part++) {
-    pricer.open(part);
-    const contexts: FieldContext[] = [{ kind: 'none' }, { kind: 'last' }, { kind: 'value' }];
-    for (let earlier = Math.max(0, part - nearest); earlier < part; earlier++)
-      contexts.push({ kind: 'field', name: layout.names[earlier] });
-    let best: FieldSelection | undefined;
-    let plainCost = 0;
-    for (const context of contexts) {
-      for (const transform of TRANSFORMS) {
-        const choice = { transform, context };
-        const asked = context.kind === 'field' ? layout.names.indexOf(context.name) : -1;
-        const cost = pricer.cost(choice, buckets[asked]);
-        if (best === undefined) plainCost = cost;
-        if (best === undefined || cost + LEAST_GAIN <= best.cost)
-          best = { choice, cost, plainCost };
-      }
-    }
-    selections.push(best!);
-    buckets.push(pricer.bucketsOf(best!.choice));
-  }
-  return selections;
+  const trains = trainingRecords(columns.recordCount);
+  const known = Uint32Array.from(trains.keys()).filter((record) => trains[record] === 1);
+  const series = new FieldSeries(columns, known);
+  const pricer = new FieldPricer(series, trains);
+  return columns.values.map((_, part) => new PartSearch(series, pricer, known, part).run());
 }
 
-/** Prices one choice after another for one part at a time. */
-class Pricer {
-  readonly #columns: FieldColumns;
-  readonly #half: number;
-  readonly #quantiser = new Quantiser();
-  readonly #costs = tableCosts();
-  #part = 0;
-  #facts: FieldFacts = { reference: 0, bounds: [] };
-  /** Of each transform, as far as computed: token and size class of each record's residual. */
-  #tokens: Uint8Array[] = [];
-  #buckets: Uint8Array[] = [];
-  #classes = new Uint8Array(0);
+/** Finds the choice for one part. */
+class PartSearch {
+  readonly #series: FieldSeries;
+  readonly #pricer: FieldPricer;
+  readonly #known: Uint32Array;
+  readonly #part: number;
+  #first: { readonly name?: string; readonly tokens: Uint8Array };
+  #best: { choice: FieldChoice; cost: number; residuals: Residuals } | undefined;
 
-  constructor(columns: FieldColumns) {
-    this.#columns = columns;
-    this.#half = Math.floor(columns.recordCount / 2);
-  }
-
-  open(part: number): void {
-    const { recordCount, values, layout } = this.#columns;
+  constructor(series: FieldSeries, pricer: FieldPricer, known: Uint32Array, part: number) {
+    this.#series = series;
+    this.#pricer = pricer;
+    this.#known = known;
     this.#part = part;
-    this.#facts = factsOf(this.#columns, part, this.#half);
-    this.#tokens = [];
-    this.#buckets = [];
-    for (const transform of TRANSFORMS) this.#transform(TRANSFORM_CODES[transform]);
-    this.#classes = new Uint8Array(recordCount);
-    const width = layout.widths[part];
-    const signed = layout.signed[part];
-    for (let i = 0; i < recordCount; i++) {
-      const value = orderedValue(values[part][i], width, signed);
-      let reached = 0;
-      while (reached < BOUNDS && value >= this.#facts.bounds[reached]) reached++;
-      this.#classes[i] = reached;
-    }
+    this.#first = { tokens: series.firstTokens(part, series.facts[part].reference, undefined) };
   }
 
-  bucketsOf(choice: FieldChoice): Uint8Array {
-    return this.#buckets[TRANSFORM_CODES[choice.transform]];
+  run(): FieldSelection {
+    const plain = TRANSFORMS.map((transform) => this.#series.plain(this.#part, transform));
+    const plainCost = this.#pricer.cost(this.#part, this.#first.tokens, plain[0], { kind: 'none' });
+    this.#chooseFirst();
+    const tried = this.#contexts().map((context) => {
+      const costs = TRANSFORMS.map((transform, i) =>
+        this.#try(transform, undefined, context, plain[i], LEAST_GAIN),
+      );
+      return { context, cost: Math.min(...costs) };
+    });
+    tried.sort((a, b) => a.cost - b.cost);
+    this.#tryLinear(tried.slice(0, LINEAR_CONTEXTS).map(({ context }) => context));
+    const { choice, cost, residuals } = this.#best!;
+    this.#series.decide(this.#part, residuals);
+    return { choice, cost, plainCost };
   }
 
-  #transform(code: number): void {
-    const { recordCount, ages, layout } = this.#columns;
-    const values = this.#columns.values[this.#part];
-    const shift = 32 - layout.widths[this.#part];
-    const signed = layout.signed[this.#part];
-    const tokens = new Uint8Array(recordCount);
-    const buckets = new Uint8Array(recordCount);
-    for (let i = 0; i < recordCount; i++) {
-      let residual: number;
-      if (ages[i] === 0) residual = zigzagBetween(values[i], this.#facts.reference, shift);
-      else {
-        const beforeThat = values[ages[i] === 1 ? i - 1 : i - 2];
-        residual = residualOf(code, values[i], values[i - 1], beforeThat, shift, signed);
-      }
-      tokens[i] = tokenOf(residual);
-      buckets[i] = bucketOf(residual);
-    }
-    this.#tokens[code] = tokens;
-    this.#buckets[code] = buckets;
-  }
-
-  /** @param asked  size classes of the earlier part's residuals, under such a context */
-  cost(choice: FieldChoice, asked: Uint8Array | undefined): number {
-    const { recordCount, ages, layout } = this.#columns;
-    const code = TRANSFORM_CODES[choice.transform];
-    const tokens = this.#tokens[code];
-    const size = tokenCount(layout.widths[this.#part]);
-    const tables = tableCountOf(contextKindOf(choice));
-    const classes = this.#classesFor(choice, code, asked);
-    const trained = new Float64Array(tables * size);
-    const priced = new Float64Array(tables * size);
-    for (let i = 0; i < recordCount; i++) {
-      const table = ages[i] === 0 ? 0 : 1 + classes[i];
-      const counts = i < this.#half ? trained : priced;
-      counts[table * size + tokens[i]]++;
-    }
-    const weights = new Float64Array(tables * size);
-    const frequencies = new Uint32Array(tables * size);
-    weighTables(trained, weights, 0, tables, size);
-    quantiseTables(this.#quantiser, weights, frequencies, 0, tables, size);
-    let cost = 0;
-    for (let slot = 0; slot < priced.length; slot++) {
-      if (priced[slot] === 0) continue;
-      const extra = EXTRA_BITS[slot % size] * COST_PER_BIT;
-      cost += priced[slot] * (this.#costs[frequencies[slot]] + extra);
-    }
+  /** Keeps what is tried where it saves enough; gives back its cost. */
+  #try(
+    transform: FieldChoice['transform'],
+    inputs: readonly string[] | undefined,
+    context: FieldContext,
+    residuals: Residuals,
+    leastGain: number,
+  ): number {
+    const cost = this.#pricer.cost(this.#part, this.#first.tokens, residuals, context);
+    if (this.#best !== undefined && cost + leastGain > this.#best.cost) return cost;
+    const { name } = this.#first;
+    const choice: FieldChoice = {
+      transform,
+      ...(inputs !== undefined && inputs.length > 0 && { inputs }),
+      context,
+      ...(name !== undefined && { first: name }),
+    };
+    this.#best = { choice, cost, residuals };
     return cost;
   }
 
-  /** For each record that is not a message's first the number of its table, less one. */
-  #classesFor(choice: FieldChoice, code: number, asked: Uint8Array | undefined): Uint8Array {
-    const { recordCount, ages } = this.#columns;
-    if (asked !== undefined) return asked;
-    const classes = new Uint8Array(recordCount);
-    const { kind } = choice.context;
-    if (kind === 'last') {
-      const buckets = this.#buckets[code];
-      for (let i = 1; i < recordCount; i++) classes[i] = ages[i] === 1 ? 0 : 1 + buckets[i - 1];
-    } else if (kind === 'value') {
-      for (let i = 1; i < recordCount; i++) classes[i] = this.#classes[i - 1];
+  /**
+   * Whether a first value is better coded beside that of an earlier field: judged as if each record
+   * were a message's first, since those are few, and then by them alone.
+   */
+  #chooseFirst(): void {
+    const part = this.#part;
+    const { columns } = this.#series;
+    const { names } = columns.layout;
+    const alone = this.#first.tokens;
+    let best = this.#pricer.firstCost(part, alone, true);
+    const own = this.#pricer.firstCost(part, alone, false);
+    for (const beside of this.#around().filter((other) => other < part)) {
+      const reference = distanceBeside(columns, part, this.#known, beside);
+      const tokens = this.#series.firstTokens(part, reference, beside);
+      const cost = this.#pricer.firstCost(part, tokens, true);
+      if (cost + LEAST_GAIN + Math.floor(best / FIRST_SHARE) > best) continue;
+      if (this.#pricer.firstCost(part, tokens, false) > own) continue;
+      best = cost;
+      this.#first = { name: names[beside], tokens };
     }
-    return classes;
   }
+
+  /** Other parts that may be asked, in the order of the record. */
+  #around(most = 32): number[] {
+    const { partCount } = this.#series.columns.layout;
+    const reach = nearest(partCount, most);
+    const parts: number[] = [];
+    const to = Math.min(partCount - 1, this.#part + reach);
+    for (let part = Math.max(0, this.#part - reach); part <= to; part++)
+      if (part !== this.#part) parts.push(part);
+    return parts;
+  }
+
+  #contexts(): FieldContext[] {
+    const { names } = this.#series.columns.layout;
+    const around = this.#around();
+    const earlier = around.filter((part) => part < this.#part);
+    const ask = (kind: 'field' | 'at' | 'was', parts: readonly number[]): FieldContext[] =>
+      parts.map((part) => ({ kind, name: names[part] }));
+    return [
+      { kind: 'none' },
+      { kind: 'last' },
+      { kind: 'value' },
+      ...ask('field', earlier),
+      ...ask('at', earlier),
+      ...ask('was', around),
+    ];
+  }
+
+  #tryLinear(contexts: readonly FieldContext[]): void {
+    const { columns } = this.#series;
+    const { names } = columns.layout;
+    const around = this.#around(8);
+    const step = Math.max(1, Math.ceil(this.#known.length / LINEAR_RECORDS));
+    const fitted = this.#known.filter((_, i) => i % step === 0);
+    const rows = linearRows(columns, this.#part, around, fitted);
+    const always: FieldContext[] = [{ kind: 'none' }, { kind: 'last' }];
+    const others = contexts.filter(({ kind }) => kind !== 'none' && kind !== 'last');
+    for (const context of [...always, ...others]) {
+      const classes = this.#series.contextClasses(this.#part, context);
+      const classCount = weightClassesOf(contextKindOf({ transform: 'linear', context }));
+      const equations = new NormalEquations(rows, classes, classCount);
+      const places: number[] = [];
+      for (;;) {
+        const { weights } = equations.solve(columnsOfInputs(places));
+        const inputs = places.map((place) => around[place]);
+        const wholeWeights = fitWeights(rowsOfInputs(rows, places), classes, classCount, weights);
+        const residuals = this.#series.linear(this.#part, inputs, wholeWeights, classes);
+        const asked = inputs.map((part) => names[part]);
+        const gain = LEAST_GAIN + Math.floor(this.#best!.cost / LINEAR_SHARE);
+        this.#try('linear', asked, context, residuals, gain);
+        if (places.length === MOST_INPUTS || places.length === around.length) break;
+        places.push(nextInput(equations, places, around.length));
+      }
+    }
+  }
+}
+
+/** The place of the input that lowers the sum of squares most beside those at `places`. */
+function nextInput(equations: NormalEquations, places: readonly number[], count: number): number {
+  let best = -1;
+  let most = Number.NEGATIVE_INFINITY;
+  for (let place = 0; place < count; place++) {
+    if (places.includes(place)) continue;
+    const { lowered } = equations.solve(columnsOfInputs([...places, place]));
+    if (lowered <= most) continue;
+    most = lowered;
+    best = place;
+  }
+  return best;
 }

@@ -5,11 +5,20 @@ import { LimitError } from '../errors/errors.ts';
  * while one is copied to the other.
  */
 export class MemoryBound {
-  readonly bytes: number;
+  #bytes: number;
   #used = 0;
 
   constructor(bytes: number) {
-    this.bytes = bytes;
+    this.#bytes = bytes;
+  }
+
+  get bytes(): number {
+    return this.#bytes;
+  }
+
+  /** Lowers the bound, where it is higher; undefined leaves it. */
+  narrow(bytes: number | undefined): void {
+    if (bytes !== undefined) this.#bytes = Math.min(this.#bytes, bytes);
   }
 
   get usedBytes(): number {

@@ -51,6 +51,11 @@ export class PositionSums {
     return this.#sums[position] ?? this.#add(position);
   }
 
+  /** Positions met since the beginning. */
+  get count(): number {
+    return this.#sums.filter((sums) => sums !== undefined).length;
+  }
+
   /** Makes the present counts the ones that {@link restore} returns to. */
   mark(): void {
     for (const sums of this.#sums) sums?.mark();

@@ -1,5 +1,6 @@
 import type { SymbolArray } from '../symbols/sequence.ts';
 import type { IntervalSink, IntervalSource } from './interval.ts';
+import type { MemoryBound } from './memory-bound.ts';
 
 /**
  * A probability model of symbols, the same at both ends: what it does for a symbol depends only on the symbols before.
@@ -17,6 +18,8 @@ export interface SymbolModel {
 
 /** An adaptive model, which can be trained, copied, and made to return to a state. */
 export interface AdaptiveModel extends SymbolModel {
+  /** What its growing arrays are counted against. */
+  readonly memory: MemoryBound;
   /** Contexts of a message's start; what was learned stays. */
   startContexts(): void;
   /** Makes the present counts the state that `reset` returns to. Until then `reset` only starts the contexts. */

@@ -91,6 +91,11 @@ export class SymbolRuns {
     return copy;
   }
 
+  /** Words of all runs, with those of blocks left free: what the pool would take. */
+  get runWords(): number {
+    return this.#poolEnd - SMALLEST_BLOCK;
+  }
+
   /** Distinct symbols of the node. */
   distinct(node: number): number {
     const words = this.tree.words;

@@ -11,6 +11,7 @@ import {
   wrapText,
 } from './figures.ts';
 import { CUT, gapExtent, pieceFor, SPELLED_LINES, spellGap } from './spelled-gap.ts';
+import { UNSTEADY } from './time-lines.ts';
 
 export interface CellTableOptions {
   readonly columns: number;
@@ -20,8 +21,10 @@ export interface CellTableOptions {
   floorOf(cell: CellRecord): number;
   /** The end whose flash and RAM are shown; absent: none. */
   readonly device?: 'encoder' | 'decoder';
-  /** A mark of one character before the name, blank for most. */
-  markOf?(cell: CellRecord): string;
+  /** Ranks by cell id, where the cells were compared. */
+  readonly rankOf?: ReadonlyMap<string, number>;
+  /** Rates of each fold by cell id, where cells are means over folds. */
+  readonly foldRates?: ReadonlyMap<string, readonly number[]>;
 }
 
 const LINE_WORDS: Readonly<Record<string, string>> = {
@@ -71,10 +74,23 @@ function columnsFor(cells: readonly CellRecord[], options: CellTableOptions): Co
   if (new Set(cells.map((c) => c.reset)).size > 1) {
     columns.push(naming('reset', (c) => c.reset));
   }
+  const ranked = cells.filter((c) => options.rankOf?.has(c.id));
+  if (ranked.length > 1) {
+    columns.push(always(['', 'rank'], true, (c) => String(options.rankOf!.get(c.id) ?? '–')));
+  }
   columns.push(
     always(['bits/', noun], true, (c) => rateText(c.rate!, decimals)),
     always(['over', 'floor'], true, (c) => signedRateText(c.rate! - options.floorOf(c), decimals)),
   );
+  const folded = cells.flatMap((c) => options.foldRates?.get(c.id) ?? []);
+  if (folded.length > 0) {
+    const folds = Math.max(...cells.map((c) => options.foldRates!.get(c.id)?.length ?? 0));
+    columns.push(
+      always([`${folds} folds`, 'least–most'], true, (c) =>
+        rangeText(options.foldRates!.get(c.id), folds, decimals),
+      ),
+    );
+  }
   if (cells.some((c) => c.units_per_message !== undefined)) {
     columns.push(
       always(['units/', 'message'], true, (c) => c.units_per_message?.mean.toFixed(1) ?? ''),
@@ -90,7 +106,7 @@ function columnsFor(cells: readonly CellRecord[], options: CellTableOptions): Co
       spare: 4,
       head: ['bytes/', 'message'],
       right: true,
-      text: (c) => c.message_bytes?.mean.toFixed(1) ?? '',
+      text: (c) => (c.message_bytes?.mean ?? c.carried_bits! / 8 / c.message_count!).toFixed(1),
     });
   }
   if (cells.some((c) => c.loss !== undefined)) {
@@ -123,15 +139,25 @@ function columnsFor(cells: readonly CellRecord[], options: CellTableOptions): Co
   }
   if (cells.some((c) => c.encode !== undefined)) {
     for (const end of ['encode', 'decode'] as const) {
+      const isMarked = cells.some((c) => c[end]?.unsteady);
+      const markOf = (unsteady: boolean | undefined) =>
+        isMarked ? (unsteady ? UNSTEADY : ' ') : '';
       columns.push({
         spare: end === 'encode' ? 2 : 3,
         head: [end === 'encode' ? 'speed' : '', end],
         right: true,
-        text: (c) => (c[end] === undefined ? '' : speedText(c[end].speed)),
+        text: (c) => (c[end] === undefined ? '' : speedText(c[end]) + markOf(c[end].unsteady)),
       });
     }
   }
   return columns;
+}
+
+/** The least and the most of a cell's folds; how many there are where some are missing. */
+function rangeText(rates: readonly number[] | undefined, folds: number, decimals: number): string {
+  if (rates === undefined) return '';
+  const text = `${rateText(Math.min(...rates), decimals)}–${rateText(Math.max(...rates), decimals)}`;
+  return rates.length === folds ? text : `${rates.length}: ${text}`;
 }
 
 /** Letters need at least this much room. */
@@ -249,9 +275,8 @@ export function cellTable(cells: readonly CellRecord[], options: CellTableOption
     lines.push(...legend(spelled, piece, options, anyBelow), '');
     lines.push(...headRows(layout, `  ${room >= 23 ? 'over the floor, spelled' : 'spelled'}`));
     good.forEach((cell, i) => {
-      const mark = options.markOf?.(cell) ?? ' ';
       lines.push(
-        `${mark} ${writeRow(layout, rows[i])}  ${spelled[i]}${cell.reference ? REFERENCE : ''}`.trimEnd(),
+        `  ${writeRow(layout, rows[i])}  ${spelled[i]}${cell.reference ? REFERENCE : ''}`.trimEnd(),
       );
     });
     lines.push(...movedTable(good, columns, moved, options.columns));

@@ -1,7 +1,7 @@
 import { symbolWidth } from '../coders/fixed.ts';
 import type { CellRecord, CorpusRecord, EntropyRecord, RunRecord } from '../harness/run-record.ts';
 import { cellTable } from './cell-table.ts';
-import { delayNote } from './cost-lines.ts';
+import { delayNote, operationsNote } from './cost-lines.ts';
 import { fieldLines } from './field-lines.ts';
 import {
   countText,
@@ -14,12 +14,22 @@ import {
   wrapText,
 } from './figures.ts';
 import { bestCell, cellPhrase, cellsOfCorpus, entropyOf, floorRateOf } from './floor-lines.ts';
+import { messageLines } from './message-lines.ts';
 import { tableSetLines } from './table-set-lines.ts';
+import { timeLines } from './time-lines.ts';
 
 export interface SectionOptions {
   readonly columns: number;
-  /** One character before a cell's name, such as `=` for cells this corpus cannot tell from the best. */
-  markOf?(cellId: string): string;
+  /** Ranks by cell id, where the cells were compared. */
+  readonly rankOf?: ReadonlyMap<string, number>;
+  /** Rates of each fold by cell id, where cells are means over folds. */
+  readonly foldRates?: ReadonlyMap<string, readonly number[]>;
+  /** Lines after the table of cells. */
+  readonly after?: readonly string[];
+  /** Tell how the sizes of messages spread, where there are several. */
+  readonly messages?: boolean;
+  /** Tell more of times than the speeds in the table of cells, where there is room. */
+  readonly times?: boolean;
 }
 
 function floorRemark({ floor }: EntropyRecord, decimals: number): string {
@@ -93,10 +103,15 @@ function remarks(record: RunRecord, corpus: CorpusRecord): string[] {
   const cells = cellsOfCorpus(record, corpus).filter((c) => c.verified);
   const best = bestCell(cells);
   if (corpus.train_symbol_count > 0) {
-    notes.push(
-      `Coded: the test part, ${countText(corpus.symbol_count)} symbols in ${countText(corpus.message_count)} ${corpus.unit_count === undefined ? 'messages' : 'units'}; ` +
-        `trained on ${countText(corpus.train_symbol_count)} symbols (${record.plan.split}).`,
-    );
+    if (corpus.folds !== undefined) {
+      notes.push(
+        `Coded: ${corpus.folds} blocks one after another, ${countText(corpus.symbol_count)} symbols in ${countText(corpus.message_count)} ${corpus.unit_count === undefined ? 'messages' : 'units'}, each with tables trained on all others, later ones too; rates are means over all symbols.`,
+      );
+    } else
+      notes.push(
+        `Coded: the test part, ${countText(corpus.symbol_count)} symbols in ${countText(corpus.message_count)} ${corpus.unit_count === undefined ? 'messages' : 'units'}; ` +
+          `trained on ${countText(corpus.train_symbol_count)} symbols (${record.plan.split}).`,
+      );
     if ((corpus.repeated_share ?? 0) >= 0.01) {
       const without =
         best?.rate_without_repeats === undefined
@@ -112,7 +127,13 @@ function remarks(record: RunRecord, corpus: CorpusRecord): string[] {
       `Each message holds as many whole units as fit into ${countText(corpus.fill_bytes)} coded bytes, all counted, so each candidate cuts messages of its own. A flipped bit can spoil a whole message and all its units; the link's own protection and your standards decide whether that is tolerable.`,
     );
   }
-  notes.push(...tableSetLines(cells, symbolNoun(corpus.symbols_as)));
+  const device = record.plan.product?.device;
+  notes.push(...tableSetLines(cells, symbolNoun(corpus.symbols_as), device));
+  const operations =
+    device === undefined || best === undefined
+      ? undefined
+      : operationsNote(best, device, symbolNoun(corpus.symbols_as));
+  if (operations !== undefined) notes.push(operations);
   const delay = delayNote(cells, corpus);
   if (delay !== undefined) notes.push(delay);
   const reference = cells.find((c) => c.reference && best !== undefined && c.rate! < best.rate!);
@@ -193,9 +214,13 @@ export function corpusSection(
       noun: symbolNoun(corpus.symbols_as),
       floorOf: (cell) => floorRateOf(record, cell),
       ...(record.plan.product === undefined ? {} : { device: record.plan.product.device }),
-      ...(options.markOf === undefined ? {} : { markOf: (cell) => options.markOf!(cell.id) }),
+      ...(options.rankOf === undefined ? {} : { rankOf: options.rankOf }),
+      ...(options.foldRates === undefined ? {} : { foldRates: options.foldRates }),
     }),
+    ...(options.after ?? []),
     '',
+    ...(options.messages ? messageLines(cells, columns) : []),
+    ...(options.times ? timeLines(cells, symbolNoun(corpus.symbols_as), columns) : []),
     ...bestFieldLines(cells, corpus, columns),
     ...remarks(record, corpus).flatMap((note) => wrapText(note, columns - 1, ' ')),
   ];

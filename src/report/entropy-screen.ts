@@ -11,6 +11,7 @@ import {
 import { countText, rateText, sizeText, symbolNoun } from './figures.ts';
 import { countInText, paragraph } from './paragraph.ts';
 import { plotLegend, ratePlot } from './rate-plot.ts';
+import { readingLines } from './reading-lines.ts';
 import { textTable } from './text-table.ts';
 
 export interface EntropyScreenOptions {
@@ -220,7 +221,7 @@ export function entropyScreen(
       ),
     );
   }
-  lines.push('');
+  lines.push(...readingLines(corpus, undefined, columns), '');
   entries.forEach((entropy, i) => {
     lines.push(...scopeSection(corpus, entropy, options, i === 0));
   });

@@ -1,4 +1,5 @@
 import type { CellRecord } from '../harness/run-record.ts';
+import { type FieldChoice, parseFieldChoice } from '../symbols/field-choice.ts';
 import { padLeft, padRight, wrapText } from './figures.ts';
 import { cellPhrase } from './floor-lines.ts';
 import { CUT, pieceFor } from './spelled-gap.ts';
@@ -10,16 +11,27 @@ const TRANSFORM_LETTERS: readonly (readonly [transform: string, letter: string, 
     ['delta', 'd', 'delta'],
     ['delta2', '2', 'delta2'],
     ['xor', 'x', 'xor'],
+    ['linear', 'l', 'linear'],
   ];
 
 const MOST_NAME = 20;
 const LEAST_ROOM = 12;
 
-function contextWords(context: string | undefined): string {
-  if (context === undefined) return '';
-  if (context === 'last') return 'own last difference';
-  if (context === 'value') return 'own last value';
-  return context.replace(/^field:/, 'difference of ');
+function contextWords({ context }: FieldChoice): string {
+  switch (context.kind) {
+    case 'none':
+      return '';
+    case 'last':
+      return 'own last difference';
+    case 'value':
+      return 'own last value';
+    case 'field':
+      return `difference of ${context.name}`;
+    case 'at':
+      return `value of ${context.name}`;
+    case 'was':
+      return `last value of ${context.name}`;
+  }
 }
 
 const cut = (text: string, most: number) =>
@@ -36,9 +48,8 @@ export function fieldLines(cell: CellRecord, recordBytes: number, columns: numbe
   const records = (cell.symbol_count ?? 0) / recordBytes;
   if (fields === undefined || records === 0) return [];
   const rows = fields.map(({ name, bits, choice }) => {
-    const slash = choice.indexOf('/');
-    const transform = slash < 0 ? choice : choice.slice(0, slash);
-    const context = slash < 0 ? undefined : choice.slice(slash + 1);
+    const parsed = parseFieldChoice(name, choice);
+    const { transform } = parsed;
     return {
       rate: bits / records,
       letter: TRANSFORM_LETTERS.find(([word]) => word === transform)?.[1] ?? '?',
@@ -46,7 +57,7 @@ export function fieldLines(cell: CellRecord, recordBytes: number, columns: numbe
         cut(name, MOST_NAME),
         (bits / records).toFixed(2),
         transform,
-        cut(contextWords(context), MOST_NAME + 14),
+        cut(contextWords(parsed), MOST_NAME + 14),
       ],
     };
   });

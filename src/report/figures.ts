@@ -16,6 +16,13 @@ export function signedRateText(bitsPerSymbol: number, decimals = 2): string {
   return `${bitsPerSymbol < 0 && Number(text) !== 0 ? '−' : '+'}${text}`;
 }
 
+/** A speed and its interval. */
+export interface SpeedFigures {
+  readonly speed: number;
+  readonly low: number;
+  readonly high: number;
+}
+
 /** A size: bytes below 10 000, else KiB, MiB or GiB with one decimal. */
 export function sizeText(bytes: number): string {
   if (bytes < 10_000) return `${Math.round(bytes)} B`;
@@ -24,8 +31,9 @@ export function sizeText(bytes: number): string {
   return `${(bytes / 1024 ** 3).toFixed(1)} GiB`;
 }
 
-/** A speed against the pacer: two significant digits. */
-export function speedText(speed: number): string {
+/** A speed against the pacer: two significant digits, or one where its interval reaches further than a quarter of it. */
+export function speedText({ speed, low, high }: SpeedFigures): string {
+  if (high - low > speed / 2) return `×${Number(speed.toPrecision(1))}`;
   if (speed >= 9.95) return `×${Math.round(speed)}`;
   if (speed >= 0.995) return `×${speed.toFixed(1)}`;
   if (speed >= 0.0995) return `×${speed.toFixed(2)}`;

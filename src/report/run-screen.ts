@@ -1,40 +1,25 @@
-import type { Comparison } from '../compare/compare-cells.ts';
+import type { RunComparison } from '../compare/compare-run.ts';
+import { partsOfId } from '../compare/contenders.ts';
+import { curvesOf } from '../compare/curves.ts';
+import { plainRun, variationOfCell } from '../compare/pooled-record.ts';
 import type { RunRecord } from '../harness/run-record.ts';
+import { comparisonLines } from './comparison-lines.ts';
 import { corpusSection } from './corpus-section.ts';
-import { deviceNote } from './cost-lines.ts';
+import { deviceNote, someGrow } from './cost-lines.ts';
+import { curveLines } from './curve-lines.ts';
 import { countText, rateText, sizeText, symbolNoun, wrapText } from './figures.ts';
 import { cellPhrase } from './floor-lines.ts';
 import { resetLines } from './loss-lines.ts';
+import { readingLines } from './reading-lines.ts';
+import { speedNotes } from './time-lines.ts';
 
 export interface RunScreenOptions {
   readonly columns: number;
-  readonly comparisons: readonly Comparison[];
+  /** Curves without marks beyond ASCII. */
+  readonly ascii?: boolean;
+  /** Of the same record. */
+  readonly compared: RunComparison;
   readonly next: string;
-}
-
-function comparisonLines(record: RunRecord, corpus: string, options: RunScreenOptions): string[] {
-  const own = options.comparisons.filter((c) => c.corpus === corpus);
-  if (own.length === 0) return [];
-  const phrase = (id: string): string => {
-    const cell = record.cells.find((c) => c.id === id);
-    return cell === undefined ? id : cellPhrase(cell);
-  };
-  const noun = symbolNoun(record.corpora.find((c) => c.name === corpus)?.symbols_as ?? '');
-  const lines: string[] = [];
-  const equal = own.filter((c) => !c.decided);
-  const nearest = own.find((c) => c.decided);
-  if (equal.length > 0) {
-    lines.push(
-      `= marks ${equal.length === 1 ? 'the cell' : `the ${equal.length} cells`} that this corpus cannot tell from the best (95 % paired bootstrap over ${own[0].units} ${own[0].unit}, each pair on its own).`,
-    );
-  }
-  if (nearest !== undefined) {
-    const { difference, low, high, units, unit } = nearest;
-    lines.push(
-      `${phrase(nearest.b)} needs ${rateText(difference)} bits/${noun} more than ${phrase(nearest.a)} (${rateText(low)} to ${rateText(high)}, over ${units} ${unit}).`,
-    );
-  }
-  return lines.flatMap((line) => wrapText(line, options.columns - 1, ' '));
 }
 
 /** How the tables of the best shipped cell age, in one paragraph. */
@@ -59,6 +44,13 @@ function ageingLines(record: RunRecord, corpus: string, columns: number): string
   );
 }
 
+/** Cells that failed and stand in no table, since the plan varies them. */
+function failedVariations(record: RunRecord, corpus: string, columns: number): string[] {
+  return record.cells
+    .filter((cell) => cell.corpus === corpus && !cell.verified && variationOfCell(cell) !== '')
+    .flatMap((cell) => wrapText(`! ${cell.id}: no rate. ${cell.failure ?? ''}`, columns));
+}
+
 /** Says that combinations were left out of corpora whose messages are filled. */
 export function notFilledText(count: number): string {
   return `${countText(count)} combinations of tables and reset gave no cell: messages can be filled only where each decodes alone, under reset message or with shipped tables.`;
@@ -67,32 +59,48 @@ export function notFilledText(count: number): string {
 /** The screen of `bitassay run`: a section a corpus, then what the list left out. */
 export function runScreen(record: RunRecord, options: RunScreenOptions): string {
   const lines: string[] = [` ${record.plan.title}`, ''];
+  const { record: plain, foldRates } = plainRun(record);
+  const rankOf = new Map(
+    [...options.compared.ranks.rankOf].map(([id, rank]) => [partsOfId(id).base, rank]),
+  );
+  const curves = curvesOf(record);
   for (const corpus of record.corpora) {
     if (!record.cells.some((cell) => cell.corpus === corpus.name)) continue;
     const heading = `── ${corpus.name}: ${corpus.symbols_as}, ${corpus.messages_as}, lengths ${corpus.lengths} `;
     lines.push(heading + '─'.repeat(Math.max(0, options.columns - heading.length)), '');
-    const equal = new Set(options.comparisons.filter((c) => !c.decided).map((c) => c.b));
     lines.push(
-      ...corpusSection(record, corpus, {
+      ...corpusSection(plain, corpus, {
         columns: options.columns,
-        markOf: (id) => (equal.has(id) ? '=' : ' '),
+        rankOf,
+        foldRates,
+        messages: true,
+        times: true,
+        after: [
+          ...curveLines(
+            curves.filter((curve) => curve.corpus === corpus.name),
+            {
+              columns: options.columns,
+              ascii: options.ascii === true,
+              noun: symbolNoun(corpus.symbols_as),
+            },
+          ),
+          ...failedVariations(record, corpus.name, options.columns),
+        ],
       }),
-      ...comparisonLines(record, corpus.name, options),
+      ...comparisonLines(record, corpus, options.compared, options.columns),
       ...resetLines(
-        record.cells.filter((cell) => cell.corpus === corpus.name),
+        plain.cells.filter((cell) => cell.corpus === corpus.name),
         symbolNoun(corpus.symbols_as),
       ).flatMap((line) => wrapText(line, options.columns - 1, ' ')),
       ...ageingLines(record, corpus.name, options.columns),
+      ...readingLines(corpus, record.plan, options.columns),
       '',
     );
   }
   const notes: string[] = [];
-  if (record.cells.some((c) => c.encode !== undefined)) {
-    notes.push(
-      'Speed is the time of the pacer (deflate-huffman on the whole test part) by that of the cell, in the same round; above ×1 is faster.',
-    );
-  }
-  if (record.plan.product !== undefined) notes.push(deviceNote(record.plan.product.device));
+  notes.push(...speedNotes(record.cells));
+  if (record.plan.product !== undefined)
+    notes.push(deviceNote(record.plan.product.device, someGrow(record.cells)));
   if (record.plan.loss_rate !== undefined) {
     notes.push(
       `With ${Number((record.plan.loss_rate * 100).toPrecision(3))} % of the messages lost on the way, independently: % lost counts all messages that cannot be decoded then. Losses in bursts spoil fewer for each one lost. Whether that is tolerable, your link's own protection and standards decide.`,

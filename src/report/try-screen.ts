@@ -1,6 +1,7 @@
 import type { RunRecord } from '../harness/run-record.ts';
 import { corpusSection } from './corpus-section.ts';
 import { wrapText } from './figures.ts';
+import { readingLines } from './reading-lines.ts';
 import { notFilledText } from './run-screen.ts';
 
 export interface TryScreenOptions {
@@ -19,6 +20,7 @@ export function tryScreen(record: RunRecord, options: TryScreenOptions): string 
     ...(record.not_filled === undefined
       ? []
       : wrapText(notFilledText(record.not_filled), options.columns - 1, ' ')),
+    ...readingLines(corpus, record.plan, options.columns),
     ...wrapText(options.caution, options.columns - 1, ' '),
     ` Next: ${options.next}`,
     '',

@@ -14,7 +14,7 @@ const PAIRS_PAY_FROM = 32_768;
  * A word, or a pair of words, of at most this many bits goes out at once beside 7 pending bits: 31
  * bits in all.
  */
-const WORD_BITS_AT_ONCE = 24;
+export const WORD_BITS_AT_ONCE = 24;
 
 /**
  * Writes symbols as words of a canonical prefix code, most significant bit first.
@@ -26,13 +26,16 @@ const WORD_BITS_AT_ONCE = 24;
  */
 export class PrefixEncoder {
   readonly #alphabetSize: number;
-  readonly #codes: Uint32Array;
-  readonly #lengths: Uint8Array;
+  /** Word of each symbol, right-justified; for kernels that keep their own state. */
+  readonly codes: Uint32Array;
+  /** Its length in bits, or {@link ABSENT}. */
+  readonly lengths: Uint8Array;
   readonly #tally = new LengthTally();
   /** Symbols that have a word, so that a new code need not clear the whole alphabet. */
   #present = new Uint32Array(0);
   #presentCount = 0;
-  #longest = 0;
+  /** Longest word, in bits. */
+  longest = 0;
   #pairs: Uint32Array | undefined;
   #pairsAreSet = false;
   #codedSinceSet = 0;
@@ -42,8 +45,8 @@ export class PrefixEncoder {
   /** @param alphabetSize  symbols are 0 … alphabetSize − 1; 5 bytes each */
   constructor(alphabetSize: number) {
     this.#alphabetSize = alphabetSize;
-    this.#codes = new Uint32Array(alphabetSize);
-    this.#lengths = new Uint8Array(alphabetSize).fill(ABSENT);
+    this.codes = new Uint32Array(alphabetSize);
+    this.lengths = new Uint8Array(alphabetSize).fill(ABSENT);
   }
 
   /**
@@ -53,16 +56,16 @@ export class PrefixEncoder {
   setWords(symbols: Float64Array | Uint32Array, lengths: Uint8Array, count: number): void {
     const tally = this.#tally;
     tally.take(lengths, count);
-    for (let i = 0; i < this.#presentCount; i++) this.#lengths[this.#present[i]] = ABSENT;
+    for (let i = 0; i < this.#presentCount; i++) this.lengths[this.#present[i]] = ABSENT;
     if (count > this.#present.length) this.#present = new Uint32Array(Math.max(2 * count, 64));
-    this.#longest = 0;
+    this.longest = 0;
     for (let i = 0; i < count; i++) {
       const symbol = symbols[i];
       const length = lengths[i];
       this.#present[i] = symbol;
-      this.#lengths[symbol] = length;
-      this.#codes[symbol] = length === 0 ? 0 : tally.first[length]++;
-      if (length > this.#longest) this.#longest = length;
+      this.lengths[symbol] = length;
+      this.codes[symbol] = length === 0 ? 0 : tally.first[length]++;
+      if (length > this.longest) this.longest = length;
     }
     this.#presentCount = count;
     this.#pairsAreSet = false;
@@ -71,12 +74,12 @@ export class PrefixEncoder {
 
   /** Word length of a symbol in bits, or {@link ABSENT}. */
   lengthOf(symbol: number): number {
-    return this.#lengths[symbol];
+    return this.lengths[symbol];
   }
 
   /** Bits that {@link encode} would write; a symbol without a word counts as {@link ABSENT}. */
   bitsOf(symbols: SymbolArray, from: number, to: number): number {
-    const lengths = this.#lengths;
+    const lengths = this.lengths;
     let bits = 0;
     let i = from;
     // Four sums at a time: a third less than one by one.
@@ -96,16 +99,13 @@ export class PrefixEncoder {
    * @throws PromiseError for a symbol without a word
    */
   encode(writer: BitWriter, symbols: SymbolArray, from: number, to: number): number {
-    if (this.#longest === 0) {
+    if (this.longest === 0) {
       for (let i = from; i < to; i++)
-        if (this.#lengths[symbols[i]] !== 0) this.#refuse(symbols[i], i);
+        if (this.lengths[symbols[i]] !== 0) this.#refuse(symbols[i], i);
       return 0;
     }
     this.#codedSinceSet += to - from;
-    const pairs =
-      this.#codedSinceSet >= PAIRS_PAY_FROM && this.#alphabetSize <= 256
-        ? this.#pairTable()
-        : undefined;
+    const pairs = this.pairs();
     const startBytes = writer.byteLength;
     const startBits = writer.pendingBits;
     const blockBytes = BLOCK * 4 + 8;
@@ -123,8 +123,8 @@ export class PrefixEncoder {
   }
 
   #encodeSingles(writer: BitWriter, symbols: SymbolArray, from: number, to: number): void {
-    const lengths = this.#lengths;
-    const codes = this.#codes;
+    const lengths = this.lengths;
+    const codes = this.codes;
     const view = this.#view;
     let at = writer.byteLength;
     let bits = writer.pendingBits;
@@ -194,17 +194,23 @@ export class PrefixEncoder {
     if (i < to) this.#encodeSingles(writer, symbols, i, to);
   }
 
+  /** Takes note of symbols to be coded by another kernel: see {@link pairs}. */
+  expect(symbolCount: number): void {
+    this.#codedSinceSet += symbolCount;
+  }
+
   /**
    * Entry of first symbol + 256 × second: both words and, in the low 5 bits, their length; 0 where
-   * they do not go at once.
+   * they do not go at once. Undefined while so few symbols were coded that it would not pay.
    */
-  #pairTable(): Uint32Array {
+  pairs(): Uint32Array | undefined {
+    if (this.#codedSinceSet < PAIRS_PAY_FROM || this.#alphabetSize > 256) return undefined;
     this.#pairs ??= new Uint32Array(65536);
     const pairs = this.#pairs;
     if (this.#pairsAreSet) return pairs;
     pairs.fill(0);
-    const lengths = this.#lengths;
-    const codes = this.#codes;
+    const lengths = this.lengths;
+    const codes = this.codes;
     for (let second = 0; second < this.#alphabetSize; second++) {
       const tail = lengths[second];
       if (tail > WORD_BITS_AT_ONCE) continue;

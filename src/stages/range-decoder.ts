@@ -68,7 +68,8 @@ export class RangeDecoder implements IntervalSource {
   }
 
   /**
-   * The bit where the message's own bits end, after its last interval. The reader is left at the message's start.
+   * The bit where the message's own bits end, after its last interval. The reader is left at the message's start, or, where
+   * its bytes are a window that has moved on, at the window's.
    * @param continuation  as the encoder's
    */
   end(continuation: 'zeros' | 'any'): number {
@@ -99,6 +100,14 @@ export class RangeDecoder implements IntervalSource {
 
   #byteNearLimit(at: number): number {
     const reader = this.#reader;
+    const moved = reader.refill(at);
+    if (moved > 0) {
+      this.#next -= moved;
+      this.#start = Math.max(0, this.#start - 8 * moved);
+      this.#safe = Math.floor((reader.limit - this.#shift) / 8);
+      this.#next--;
+      return this.#byte();
+    }
     const position = at * 8 + this.#shift;
     if (position + 8 > reader.limit + this.#precision.bits) {
       throw new CorruptStreamError('the coded bytes end too early', {

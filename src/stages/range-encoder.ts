@@ -47,6 +47,8 @@ export class RangeEncoder implements IntervalSink {
   #direct = true;
   #start = 0;
   #at = 0;
+  /** Bytes of the message that {@link settle} has handed over. */
+  #settledBytes = 0;
   #low = 0;
   #range = 0;
   #markedAt = 0;
@@ -72,7 +74,37 @@ export class RangeEncoder implements IntervalSink {
 
   /** Bytes of the message shifted out so far. */
   get shiftedBytes(): number {
-    return this.#at - this.#start;
+    return this.#settledBytes + this.#at - this.#start;
+  }
+
+  /**
+   * Hands the writer the bytes of the message that no carry can change any more, and lets it drain, so that a message may be
+   * longer than memory. The state is marked anew.
+   *
+   * A carry raises the last byte that is not 255, and each byte once at most: those before it stay as they are.
+   */
+  settle(): void {
+    const bytes = this.#bytes;
+    let settled = this.#at;
+    while (settled > this.#start && bytes[settled - 1] === 255) settled--;
+    settled = Math.max(this.#start, settled - 1);
+    const count = settled - this.#start;
+    if (count === 0) return;
+    this.#settledBytes += count;
+    const writer = this.#writer;
+    if (this.#direct) {
+      writer.adopt(settled, 0, 0);
+      writer.drain();
+      bytes.copyWithin(writer.byteLength, settled, this.#at);
+      this.#start = writer.byteLength;
+    } else {
+      writer.writeBytes(bytes, 0, settled);
+      writer.drain();
+      bytes.copyWithin(0, settled, this.#at);
+      this.#start = 0;
+    }
+    this.#at = this.#start + (this.#at - settled);
+    this.mark();
   }
 
   /** Starts a message at the writer's position; the writer is not to be used until {@link end}. */
@@ -94,6 +126,7 @@ export class RangeEncoder implements IntervalSink {
   }
 
   #beginInterval(): void {
+    this.#settledBytes = 0;
     this.#low = 0;
     this.#range = this.#precision.initialRange;
     this.mark();
@@ -123,7 +156,7 @@ export class RangeEncoder implements IntervalSink {
 
   /** Bits of the code string, were the message to end here. */
   bitsIfEnded(continuation: 'zeros' | 'any'): number {
-    return 8 * (this.#at - this.#start) + this.#endingBitsFor(continuation);
+    return 8 * this.shiftedBytes + this.#endingBitsFor(continuation);
   }
 
   #endingBitsFor(continuation: 'zeros' | 'any'): number {
@@ -163,7 +196,7 @@ export class RangeEncoder implements IntervalSink {
     const precision = this.#precision;
     const byZeros = continuation === 'zeros';
     const bits = this.#endingBitsFor(continuation);
-    const shifted = this.#at - this.#start;
+    const shifted = this.shiftedBytes;
     this.writtenBits = 8 * shifted;
     this.endingBits = bits;
     this.payloadBits = 8 * shifted + precision.initialBits - Math.log2(this.#range);

@@ -3,52 +3,96 @@ import { nearestWord } from '../errors/nearest.ts';
 import type { RecordShape } from './record.ts';
 
 /**
- * How one field of a record is coded, in words: `transform` or `transform/context`, as in `delta`
- * or `delta/last`.
+ * How one field of a record is coded, in words: `transform`, `transform/context`, and either with
+ * `/first:NAME` after it, as in `delta`, `delta/last` or `linear:supply/was:humidity/first:supply`.
  *
  * Transforms, to the same field of the records before in the message:
  * - `raw`: the value itself;
  * - `delta`: its difference to the one before;
  * - `xor`: the bits in which it differs from the one before;
- * - `delta2`: its difference to the straight line through the two before.
+ * - `delta2`: its difference to the straight line through the two before;
+ * - `linear`, `linear:NAME:NAME…`: its difference to a linear prediction from its own two before
+ *   and from the named fields, with weights fitted on the train split.
  *
- * Contexts, which choose among the field's tables:
+ * Contexts, which choose among the field's tables, and among the weights of `linear`:
  * - none: one table;
  * - `last`: the size of the field's own last difference;
  * - `value`: where the field's own last value lies;
- * - `field:NAME`: the size of the difference of a field that comes earlier in this record.
+ * - `field:NAME`: the size of the difference of a field that comes earlier in this record;
+ * - `at:NAME`: where the value of a field that comes earlier in this record lies;
+ * - `was:NAME`: where the last value of any other field lies.
+ *
+ * `first:NAME`: a message's first record is coded beside the value of a field that comes earlier in
+ * the record, not beside the median of the train split.
  */
 export const TRANSFORMS = ['raw', 'delta', 'xor', 'delta2'] as const;
 
-export type FieldTransform = (typeof TRANSFORMS)[number];
+export type FieldTransform = (typeof TRANSFORMS)[number] | 'linear';
 
 export type FieldContext =
   | { readonly kind: 'none' | 'last' | 'value' }
-  | { readonly kind: 'field'; readonly name: string };
+  | { readonly kind: 'field' | 'at' | 'was'; readonly name: string };
 
 export interface FieldChoice {
   readonly transform: FieldTransform;
+  /** Fields that `linear` asks, at most {@link MOST_INPUTS}; none under other transforms. */
+  readonly inputs?: readonly string[];
   readonly context: FieldContext;
+  /** The field beside which a message's first value is coded. */
+  readonly first?: string;
 }
 
-const FORM = `${TRANSFORMS.join(', ')}, alone or with /last, /value or /field:NAME`;
+/** Fields that one `linear` may ask. */
+export const MOST_INPUTS = 3;
+
+const WORDS = [...TRANSFORMS, 'linear'] as const;
+const FORM = `${TRANSFORMS.join(', ')} or linear:NAME (at most ${MOST_INPUTS} names, each after a colon), alone or with /last, /value, /field:NAME, /at:NAME or /was:NAME, and then /first:NAME`;
 
 /**
- * Reads `transform` or `transform/context`.
+ * Reads a choice.
  * @param field  the field that it is for, named in errors
  * @throws InputError for another form, with the nearest word
  */
 export function parseFieldChoice(field: string, text: string): FieldChoice {
-  const slash = text.indexOf('/');
-  const word = (slash < 0 ? text : text.slice(0, slash)).trim();
-  const transform = TRANSFORMS.find((t) => t === word);
-  if (transform === undefined) refuse(field, text, nearestWord(word, TRANSFORMS));
-  if (slash < 0) return { transform, context: { kind: 'none' } };
-  const rest = text.slice(slash + 1).trim();
-  if (rest === 'last' || rest === 'value') return { transform, context: { kind: rest } };
-  const name = /^field:(.+)$/.exec(rest)?.[1];
-  if (name === undefined) refuse(field, text, nearestWord(rest, ['last', 'value']));
-  return { transform, context: { kind: 'field', name } };
+  const firstAt = text.lastIndexOf('/first:');
+  const body = firstAt < 0 ? text : text.slice(0, firstAt);
+  const first = firstAt < 0 ? undefined : text.slice(firstAt + '/first:'.length).trim();
+  if (first === '') refuse(field, text, undefined);
+  const [, head, rest] = /^(.*?)\/\s*((?:last|value)\s*|(?:field|at|was):.+)$/.exec(body) ?? [
+    body,
+    body,
+  ];
+  const [word, ...inputs] = head.split(':').map((part) => part.trim());
+  const transform = WORDS.find((t) => t === word);
+  if (transform === undefined) refuse(field, text, nearMiss(word));
+  const most = transform === 'linear' ? MOST_INPUTS : 0;
+  if (inputs.length > most || inputs.includes('') || new Set(inputs).size < inputs.length)
+    refuse(field, text, undefined);
+  return {
+    transform,
+    ...(inputs.length > 0 && { inputs }),
+    context: contextOf(rest),
+    ...(first !== undefined && { first }),
+  };
+}
+
+/** @param text  one of the forms of a context, or undefined */
+function contextOf(text: string | undefined): FieldContext {
+  if (text === undefined) return { kind: 'none' };
+  const colon = text.indexOf(':');
+  if (colon < 0) return { kind: text.trim() as 'last' | 'value' };
+  return {
+    kind: text.slice(0, colon) as 'field' | 'at' | 'was',
+    name: text.slice(colon + 1).trim(),
+  };
+}
+
+/** The word that was meant where a transform, or a context after it, is not known. */
+function nearMiss(head: string): string | undefined {
+  const slash = head.indexOf('/');
+  return slash < 0
+    ? nearestWord(head, WORDS)
+    : nearestWord(head.slice(slash + 1), ['last', 'value']);
 }
 
 function refuse(field: string, got: string, near: string | undefined): never {
@@ -60,9 +104,20 @@ function refuse(field: string, got: string, near: string | undefined): never {
 }
 
 /** The form that {@link parseFieldChoice} reads. */
-export function fieldChoiceText({ transform, context }: FieldChoice): string {
-  if (context.kind === 'none') return transform;
-  return `${transform}/${context.kind === 'field' ? `field:${context.name}` : context.kind}`;
+export function fieldChoiceText({ transform, inputs, context, first }: FieldChoice): string {
+  const head = [transform, ...(inputs ?? [])].join(':');
+  const { kind } = context;
+  const middle = kind === 'none' ? '' : `/${'name' in context ? `${kind}:${context.name}` : kind}`;
+  return `${head}${middle}${first === undefined ? '' : `/first:${first}`}`;
+}
+
+/** Names of other fields that a choice asks. */
+export function namesAskedBy({ inputs, context, first }: FieldChoice): readonly string[] {
+  return [
+    ...(inputs ?? []),
+    ...('name' in context ? [context.name] : []),
+    ...(first === undefined ? [] : [first]),
+  ];
 }
 
 /**
@@ -77,9 +132,7 @@ export function checkFieldMap(
   const names = record?.fields.map((field) => field.name) ?? [];
   for (const [name, text] of Object.entries(map)) {
     checkName(names, name);
-    const { context } = parseFieldChoice(name, text);
-    if (context.kind !== 'field') continue;
-    checkName(names, context.name);
+    for (const asked of namesAskedBy(parseFieldChoice(name, text))) checkName(names, asked);
   }
 }
 

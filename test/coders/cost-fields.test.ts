@@ -21,14 +21,15 @@ const setup: Setup = {
 function costsOf(map: string, policy: Setup['policy']) {
   const coder = parseCandidate(`fields:map=${map},range=32`).create();
   const own = { ...setup, policy };
-  if (policy === 'learned') return coder.costs!(own, 50)!;
-  const trainer = coder.trainer!(own);
-  trainer.push({
+  const sequence = {
     alphabetSize: 256,
     symbols: Uint8Array.of(1, 2, 3, 4),
     messageEnds: Uint32Array.of(4),
-  });
-  return coder.costs!({ ...own, tables: trainer.finish() }, 50)!;
+  };
+  if (policy === 'learned') return coder.costs!(own, 50, sequence)!;
+  const trainer = coder.trainer!(own);
+  trainer.push(sequence);
+  return coder.costs!({ ...own, tables: trainer.finish() }, 50, sequence)!;
 }
 
 describe('costs of fields', () => {
@@ -49,6 +50,13 @@ describe('costs of fields', () => {
     // 8 + 1 tables for b: 11 tables, 264 slots, first slots of 2 bytes; 7 bounds to 256 of 2 bytes.
     const { decoder } = costsOf('a:delta+b:delta/value', 'shipped');
     expect(decoder.flashBytes).toBe(528 + 12 * 2 + 2 * 6 + 14);
+  });
+
+  it('add weights, inputs and what a first value is coded beside', () => {
+    // 11 tables as above. A part says beside which it begins: 1 byte more. Bounds of a: 7 of 2 bytes. b: number of inputs 1,
+    // its input 1, 8 classes of 2 + 2 weights of 2 bytes.
+    const { decoder } = costsOf('a:delta+b:linear:a/at:a/first:a', 'shipped');
+    expect(decoder.flashBytes).toBe(528 + 12 * 2 + 2 * 7 + 14 + 1 + 1 + 8 * 4 * 2);
   });
 
   it('move counts to RAM where they adapt', () => {

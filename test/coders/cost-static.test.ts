@@ -219,7 +219,7 @@ describe('bytes of a static model', () => {
     const { setup, table } = trained('arith:order=0', sequenceOf(4, [[0, 1, 2, 3]]));
     // Places 2 · 1; where the unseen begin 2; entries 4 · (symbol 1 + low 2).
     expect(staticTableBytes(table)).toBe(16);
-    const costs = parseCandidate('arith:order=0').create().costs!(setup, 10)!;
+    const costs = parseCandidate('arith:order=0').create().costs!(setup, 10, sequenceOf(4, []))!;
     // Two integers of 48 bits in 8 bytes each, a position of 4; three frames of 32; the coded message at the encoder.
     expect(costs.decoder).toMatchObject({ flashBytes: 16, ramBytes: 16 + 4 + 96 });
     expect(costs.encoder).toMatchObject({ flashBytes: 16, ramBytes: 16 + 4 + 96 + 10 });
@@ -229,21 +229,16 @@ describe('bytes of a static model', () => {
     const { setup, table } = trained('arith:order=1,range=32', sequenceOf(2, [[0, 1, 0, 1]]));
     // Strings of two: start 0, 01, 10; of one: 0, 1. Places 5 · 1; contexts 4 · (shorter 1 + unseen 2); entries 5 · (1 + 2 + 1).
     expect(staticTableBytes(table)).toBe(5 + 12 + 20);
-    const { decoder } = parseCandidate('arith:order=1,range=32').create().costs!(setup, 10)!;
+    const { decoder } = parseCandidate('arith:order=1,range=32').create().costs!(
+      setup,
+      10,
+      sequenceOf(4, []),
+    )!;
     expect(decoder.ramBytes).toBe(4 + 4 + 4 + 1 + 96);
   });
 
   it('unseen=add:X takes one frequency more a context', () => {
     const { table } = trained('arith:order=0,unseen=add:1', sequenceOf(4, [[0, 1, 2, 3]]));
     expect(staticTableBytes(table)).toBe(18);
-  });
-
-  it('is not told where tables are sent or grown', () => {
-    const coder = parseCandidate('arith:order=0').create();
-    const setup = { alphabetSize: 4, reset: 'message', lengths: 'known', align: 8 } as const;
-    for (const policy of ['sent', 'learned', 'primed'] as const) {
-      expect(coder.costs!({ ...setup, policy }, 10)).toBeUndefined();
-      expect(coder.operations!(sequenceOf(4, [[0]]), { ...setup, policy })).toBeUndefined();
-    }
   });
 });

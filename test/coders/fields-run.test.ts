@@ -1,4 +1,5 @@
 import { describe, expect, it } from 'vitest';
+import { compareRun } from '../../src/compare/compare-run.ts';
 import { parsePlan } from '../../src/corpus/plan.ts';
 import { requestOf } from '../../src/harness/plan-request.ts';
 import { type RunRequest, runAll } from '../../src/harness/run-all.ts';
@@ -55,7 +56,11 @@ describe('fields in a run', () => {
     expect(choices.get('supply')).toBe('delta/last');
     expect(choices.get('door')).toBe('raw');
     expect(choices.has('@10.1')).toBe(true);
-    const screen = runScreen(record, { columns: 80, comparisons: [], next: 'nothing' });
+    const screen = runScreen(record, {
+      columns: 80,
+      compared: compareRun(record, new Map()),
+      next: 'nothing',
+    });
     expect(screen).toContain('bits a record');
     expect(screen).toMatch(/^ {2}@10\.1 /m);
     for (const line of screen.split('\n')) expect([...line].length).toBeLessThanOrEqual(80);

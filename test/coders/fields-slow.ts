@@ -5,14 +5,24 @@
  */
 
 export interface SlowField {
-  readonly transform: 'raw' | 'delta' | 'xor' | 'delta2';
-  readonly context: 'none' | 'last' | 'value' | number;
+  readonly transform: 'raw' | 'delta' | 'xor' | 'delta2' | 'linear';
+  /** Fields that `linear` asks. */
+  readonly inputs?: readonly number[];
+  readonly context:
+    | 'none'
+    | 'last'
+    | 'value'
+    | { readonly kind: 'field' | 'at' | 'was'; readonly of: number };
+  /** The field beside which a first value is coded. */
+  readonly first?: number;
 }
 
 /** What both ends know beforehand. */
 export interface SlowFacts {
   readonly reference: number;
   readonly bounds: readonly number[];
+  /** Of `linear`, in 1/4096, by class of the context: constant (of 256), own change, and two an input. */
+  readonly weights?: readonly number[];
 }
 
 const zigzag = (difference: number) => {
@@ -52,30 +62,65 @@ export function slowSteps(
   records.forEach((record, i) => {
     residuals.push([]);
     record.forEach((value, f) => {
-      const { transform, context } = fields[f];
+      const { transform, context, first } = fields[f];
       const before = i >= 1 ? records[i - 1][f] : 0;
       const slope = i >= 2 ? before - records[i - 2][f] : 0;
       let residual: number;
       let table: string;
       if (i === 0) {
-        residual = zigzag(value - facts[f].reference);
+        const { reference } = facts[f];
+        residual = zigzag(value - reference - (first === undefined ? 0 : record[first]));
         table = 'first';
       } else {
-        if (transform === 'raw') residual = value;
-        else if (transform === 'xor') residual = value ^ before;
-        else residual = zigzag(value - before - (transform === 'delta2' ? slope : 0));
+        const classOf = (of: number, at: number) =>
+          facts[of].bounds.filter((bound) => records[at][of] >= bound).length;
+        let contextClass = 0;
         if (context === 'none') table = 'only';
         else if (context === 'last')
           table = i === 1 ? 'none yet' : `last ${sizeClass(residuals[i - 1][f])}`;
-        else if (context === 'value')
-          table = `value ${facts[f].bounds.filter((bound) => before >= bound).length}`;
-        else table = `asked ${sizeClass(residuals[i][context])}`;
+        else {
+          if (context === 'value') contextClass = classOf(f, i - 1);
+          else if (context.kind === 'field') contextClass = sizeClass(residuals[i][context.of]);
+          else contextClass = classOf(context.of, context.kind === 'at' ? i : i - 1);
+          table = `class ${contextClass}`;
+        }
+        if (transform === 'raw') residual = value;
+        else if (transform === 'xor') residual = value ^ before;
+        else if (transform === 'linear')
+          residual = zigzag(
+            value - before - linearChange(records, i, f, fields[f], facts[f], contextClass),
+          );
+        else residual = zigzag(value - before - (transform === 'delta2' ? slope : 0));
       }
       residuals[i].push(residual);
       steps.push({ field: f, table, ...tokenAndExtra(residual) });
     });
   });
   return steps;
+}
+
+/** The change of field `f` that `linear` expects in record `i`. */
+function linearChange(
+  records: readonly (readonly number[])[],
+  i: number,
+  f: number,
+  { inputs = [] }: SlowField,
+  { weights = [] }: SlowFacts,
+  contextClass: number,
+): number {
+  const changeOf = (field: number, at: number) =>
+    at >= 1 ? records[at][field] - records[at - 1][field] : 0;
+  const terms = [
+    256,
+    changeOf(f, i - 1),
+    ...inputs.flatMap((input) => [
+      changeOf(input, input < f ? i : i - 1),
+      records[i - 1][input] - records[i - 1][f],
+    ]),
+  ];
+  const own = weights.slice(terms.length * contextClass);
+  const sum = terms.reduce((total, term, k) => total + term * (own[k] ?? 0), 0);
+  return Math.round(sum / 4096);
 }
 
 /** Tokens of a field of eight bits: 16, and two for each of the bit lengths 5 to 8. */

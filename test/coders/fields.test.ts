@@ -96,6 +96,13 @@ describe('what a setup must have', () => {
     expect(checked('fields:map=a:delta/field:b', { record })).toThrow(
       /a cannot have the context field:b/,
     );
+    expect(checked('fields:map=a:raw/at:b', { record })).toThrow(/cannot have the context at:b/);
+    expect(checked('fields:map=a:raw/first:b', { record })).toThrow(
+      /cannot have the start first:b/,
+    );
+    expect(checked('fields:map=a:linear:c', { record })).toThrow(/have the transform linear:c/);
+    expect(checked('fields:map=a:linear:a', { record })).toThrow(/have the transform linear:a/);
+    expect(checked('fields:map=a:linear:b/was:@3', { record })).not.toThrow();
     const overlapping = { bytes: 4, fields: [...record.fields, parseRecordField('c', 'u8@1', 4)] };
     expect(checked('fields', { record: overlapping })).toThrow('the fields a and c overlap');
   });
@@ -142,38 +149,61 @@ describe('against a slow computation of the method', () => {
         { transform: 'delta', context: 'last' },
         { transform: 'xor', context: 'value' },
         { transform: 'delta2', context: 'none' },
-        { transform: 'raw', context: 1 },
+        { transform: 'raw', context: { kind: 'field', of: 1 } },
       ],
     ],
     [
       'b:delta/field:a+c:delta2/last+d:xor/value',
       [
         { transform: 'raw', context: 'none' },
-        { transform: 'delta', context: 0 },
+        { transform: 'delta', context: { kind: 'field', of: 0 } },
         { transform: 'delta2', context: 'last' },
         { transform: 'xor', context: 'value' },
       ],
     ],
+    [
+      'a:linear:b:c/was:d+b:linear+c:linear:a/at:a/first:a+d:delta/was:a/first:b',
+      [
+        { transform: 'linear', inputs: [1, 2], context: { kind: 'was', of: 3 } },
+        { transform: 'linear', context: 'none' },
+        { transform: 'linear', inputs: [0], context: { kind: 'at', of: 0 }, first: 0 },
+        { transform: 'delta', context: { kind: 'was', of: 0 }, first: 1 },
+      ],
+    ],
+    [
+      'b:linear:c:d:a/last+c:linear:d/value+d:linear:a/field:c/first:c',
+      [
+        { transform: 'raw', context: 'none' },
+        { transform: 'linear', inputs: [2, 3, 0], context: 'last' },
+        { transform: 'linear', inputs: [3], context: 'value' },
+        { transform: 'linear', inputs: [0], context: { kind: 'field', of: 2 }, first: 2 },
+      ],
+    ],
   ];
 
+  const signed = (difference: number) => ((difference + 384) & 255) - 128;
+
   /**
-   * Median, and bounds as trained: both are read off the coder's plan, and the median held against
-   * sorting.
+   * Median, bounds and weights as trained are read off the coder's plan, and the median held
+   * against sorting.
    */
   it.each(maps)('shipped, %s', (map, fields) => {
     const coder = parseCandidate(`fields:map=${map}`).create();
     const setup = setupOf({ record });
     const half = { ...sequence, ...firstMessages(sequence, 6) };
     const tables = train(coder, setup, [half]) as FieldsTables;
-    const { references, bounds } = tables.plan;
-    const facts = names.map((_, f) => {
+    const { references, bounds, weights, weightStart } = tables.plan;
+    const facts = fields.map(({ first }, f) => {
       const sorted = records
         .slice(0, 60)
-        .map((r) => r[f])
+        .map((r) => (first === undefined ? r[f] : signed(r[f] - r[first])))
         .sort((x, y) => x - y);
-      const reference = sorted[29];
-      expect(references[f]).toBe(reference);
-      return { reference, bounds: [...bounds.subarray(7 * f, 7 * f + 7)] };
+      expect(references[f]).toBe(sorted[29] & 255);
+      return {
+        reference: references[f],
+        bounds: [...bounds.subarray(7 * f, 7 * f + 7)],
+        weights: [...weights.subarray(weightStart[f], weightStart[f + 1])],
+      };
     });
     const trained = messages.slice(0, 6).flatMap((m) => slowSteps(m, fields, facts));
     const price = coder.price!(sequence, { ...setup, tables });

@@ -75,11 +75,11 @@ candidates:
   - huffman
   # a comment
   - rice:k=2
-tables: [primed]
+tables: [learned]
 reset: [message, file, never]
 align: 1
 check: none
-timing: {repeats: 3, pacer: deflate-huffman}
+timing: {repeats: 3, pacer: brotli}
 `,
       'plan.yaml',
     );
@@ -106,10 +106,10 @@ timing: {repeats: 3, pacer: deflate-huffman}
       ],
       split: { by: 'block', order: 'random', train: 0.25, seed: 9 },
       candidateLines: [18, 20],
-      tables: ['primed'],
+      tables: ['learned'],
       reset: ['message', 'file', 'never'],
       align: 1,
-      timing: { repeats: 3 },
+      timing: { repeats: 3, pacer: 'brotli' },
       chosen: [],
     });
   });
@@ -221,6 +221,33 @@ const LINES: [good: string, broken: [line: string, key: string, words: RegExp][]
   ['check: none', [['check: crc', 'check', /none or crc32/]]],
   ['timing: {repeats: 5}', [['timing: {repeat: 5}', 'timing.repeat', /Did you mean repeats\?/]]],
 ];
+
+describe('a random split', () => {
+  const withSplit = (split: string, reset: string, tables = 'shipped, learned') =>
+    `${SHORT}split: {${split}}\ntables: [${tables}]\nreset: [${reset}]\n`;
+
+  test.each([
+    ['order: random', 'never', 'never'],
+    ['order: random', 'message, file', 'file'],
+    ['by: block, order: random', 'never, "message*8"', 'never, message*8'],
+    ['by: file, order: random', 'file, never', 'never'],
+  ])('{%s} with reset [%s] is refused, with the line of the order', (split, reset, got) => {
+    const error = refusal(withSplit(split, reset));
+    expect(error.message).toMatch(/line 5, split\.order: .*do not follow one another/);
+    expect(error.message).toContain(`got reset: [${got}]`);
+    expect(error.message).toMatch(/order: in_time/);
+  });
+
+  test.each([
+    ['order: random', 'message', 'shipped'],
+    ['by: file, order: random', 'message, file', 'shipped, primed'],
+    ['order: in_time', 'never, file', 'shipped'],
+    // Nothing trains, so nothing is split.
+    ['order: random', 'never', 'sent, learned'],
+  ])('{%s} with reset [%s] and tables [%s] is a plan', (split, reset, tables) => {
+    expect(parsePlan(withSplit(split, reset, tables), 'plan.yaml').split.order).toBeDefined();
+  });
+});
 
 describe('a broken plan', () => {
   test('the plan that the faults are planted in is sound', () => {
@@ -365,7 +392,6 @@ describe('what is not yet built', () => {
   const CORPUS = '  events: {files: x, symbols: bytes, messages: lines';
   test.each([
     ['coders: {ours: {encode: ./codec -e, decode: ./codec -d, protocol: batch}}', 'coders'],
-    ['vary: {train_share: [0.01, 0.1, 1], message_symbols: [16, 64]}', 'vary'],
     [
       'limits: {max: {flash_bytes: 40960, ram_bytes: 4096, message_bytes_p99: 192}, min: {encode_speed: 0.2, units_per_message: 10}, exports: c, reset: message}',
       'limits',
@@ -381,8 +407,6 @@ describe('what is not yet built', () => {
     ['damage: {flip: 0.0001, seed: 7}', 'damage'],
     ['gate: {allow: {total: 0, each_file: 0.5%}}', 'gate'],
     ['check: crc32', 'check'],
-    ['split: {folds: 5}', 'split.folds'],
-    ['timing: {pacer: brotli}', 'timing.pacer'],
   ])('%s', (line, key) => {
     const error = refusal(`${SHORT}${line}\n`);
     expect(error).toBeInstanceOf(NotYetError);

@@ -1,8 +1,9 @@
 import { describe, expect, it } from 'vitest';
 import { parseCandidates } from '../../src/coders/candidate.ts';
+import { compareRun } from '../../src/compare/compare-run.ts';
 import type { CorpusData } from '../../src/harness/corpus-data.ts';
 import { type RunRequest, runAll } from '../../src/harness/run-all.ts';
-import { runRecordSchema } from '../../src/harness/run-record.ts';
+import { type RunRecord, runRecordSchema } from '../../src/harness/run-record.ts';
 import { runScreen } from '../../src/report/run-screen.ts';
 
 function corpusOf(lengths: readonly number[], more: Partial<CorpusData> = {}): CorpusData {
@@ -83,15 +84,16 @@ describe('billing in steps', () => {
   });
 
   it('shows only where it is asked for', async () => {
-    const options = { columns: 100, comparisons: [], next: 'nothing' };
+    const screenOf = (record: RunRecord) =>
+      runScreen(record, { columns: 100, compared: compareRun(record, new Map()), next: 'nothing' });
     const corpus = corpusOf([3, 5, 8]);
-    const asked = runScreen((await runAll(requestOf(corpus, 4))).record, options);
+    const asked = screenOf((await runAll(requestOf(corpus, 4))).record);
     expect(asked).toContain('steps/');
     // ⌈3/4⌉ + ⌈5/4⌉ + ⌈8/4⌉ = 5 steps for 3 messages.
     expect(asked).toContain('1.67');
     expect(asked).toContain('steps of 4 bytes');
     const plain = await runAll(requestOf(corpus));
     expect(plain.record.cells[0].billing).toBeUndefined();
-    expect(runScreen(plain.record, options)).not.toContain('steps');
+    expect(screenOf(plain.record)).not.toContain('steps');
   });
 });

@@ -115,7 +115,7 @@ describe('costs of a cell', () => {
   });
 
   it('are absent where the coder does not tell', () => {
-    const { coder, unit } = unitOf('huffman:after=delta', 'shipped');
+    const { coder, unit } = unitOf('deflate', 'none');
     const { encoder, decoder } = costRecord(costFigures(coder, [unit], 0));
     expect(encoder).toBeUndefined();
     expect(decoder).toBeUndefined();

@@ -3,7 +3,7 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { parseCandidates } from '../../src/coders/candidate.ts';
-import { compareWithBest } from '../../src/compare/compare-cells.ts';
+import { compareRun } from '../../src/compare/compare-run.ts';
 import { decideSplit } from '../../src/corpus/decide-split.ts';
 import { loadCorpus } from '../../src/corpus/intake.ts';
 import { parseMessageRule } from '../../src/corpus/messages.ts';
@@ -76,7 +76,7 @@ describe('the demo’s telemetry in packets', () => {
       for (const unit of bits) expect(unit).toBeLessThanOrEqual(BUDGET_BITS);
       expect(cell.files!.map((f) => f.coded_bytes)).toEqual([cell.coded_bytes]);
     }
-    const comparisons = compareWithBest(result.record, result.messages);
+    const { comparisons } = compareRun(result.record, result.messages);
     expect(comparisons.length).toBeGreaterThan(5);
     const fewest = Math.min(...result.record.cells.map((c) => c.message_count!));
     for (const { unit, units } of comparisons) {
@@ -94,14 +94,15 @@ describe('the demo’s telemetry in packets', () => {
     // learned and primed under never: arith twice, fields:auto (primed only).
     expect(result.record.not_filled).toBe(5);
     for (const columns of [80, 100]) {
-      const comparisons = compareWithBest(result.record, result.messages);
-      const screen = runScreen(result.record, { columns, comparisons, next: 'nothing' });
+      const compared = compareRun(result.record, result.messages);
+      const screen = runScreen(result.record, { columns, compared, next: 'nothing' });
       const words = screen.replace(/\s+/g, ' ');
       expect(words).toContain('5 combinations of tables and reset gave no cell: messages can be');
       expect(words).toContain('A flipped bit can spoil a whole message and all its units');
       expect(words).toContain('units/');
       expect(words).toContain('120 000 symbols in 5 000 units');
-      expect(words).toContain('blocks of units');
+      expect(words).toMatch(/Cells share a rank .* over \d+ blocks of units, 95 %/);
+      expect(screen).toMatch(/^ {2}candidate +tables +rank +byte/m);
       for (const line of screen.split('\n')) expect([...line].length).toBeLessThanOrEqual(columns);
     }
   });

@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest';
+import { compareRun } from '../../src/compare/compare-run.ts';
 import { type CellRecord, type RunRecord, runRecordSchema } from '../../src/harness/run-record.ts';
-import { delayNote, deviceNote } from '../../src/report/cost-lines.ts';
+import { delayNote, deviceNote, operationsNote, someGrow } from '../../src/report/cost-lines.ts';
 import { runScreen } from '../../src/report/run-screen.ts';
 import { linesRecord } from './sample-record.ts';
 
@@ -23,7 +24,11 @@ function recordWith(device?: 'encoder' | 'decoder'): RunRecord {
 }
 
 const screen = (record: RunRecord, columns: number) =>
-  runScreen(record, { columns, comparisons: [], next: 'bitassay entropy plan.yaml' });
+  runScreen(record, {
+    columns,
+    compared: compareRun(record, new Map()),
+    next: 'bitassay entropy plan.yaml',
+  });
 
 describe('flash and RAM on the screen', () => {
   it('are those of the end that the plan names', () => {
@@ -38,7 +43,8 @@ describe('flash and RAM on the screen', () => {
 
   it('say what they hold', () => {
     const text = screen(recordWith('decoder'), 120).replace(/\s+/g, ' ');
-    expect(text).toContain(deviceNote('decoder'));
+    const record = recordWith('decoder');
+    expect(text).toContain(deviceNote('decoder', someGrow(record.cells)));
   });
 
   it('are dropped where the plan names no end: the screen is as without costs', () => {
@@ -70,6 +76,52 @@ describe('flash and RAM on the screen', () => {
 
   it('lie in a record that keeps the schema', () => {
     expect(runRecordSchema.safeParse(recordWith('encoder')).error?.issues).toBeUndefined();
+  });
+});
+
+describe('what is said of models that grow', () => {
+  const [first] = linesRecord.cells;
+  const cell = (more: Partial<CellRecord>): CellRecord => ({ ...first, ...more });
+
+  it('stands where RAM is told of one', () => {
+    const grows = cell({ coder: 'arith', tables: 'learned', decoder: end(0, 5000) });
+    expect(someGrow([grows])).toBe(true);
+    expect(someGrow([cell({ coder: 'arith', tables: 'shipped', decoder: end(1, 2) })])).toBe(false);
+    expect(someGrow([cell({ coder: 'rice', tables: 'learned', decoder: end(1, 2) })])).toBe(false);
+    const { decoder: _, ...untold } = grows;
+    expect(someGrow([untold])).toBe(false);
+    expect(deviceNote('decoder', true)).toContain('others can need more');
+    expect(deviceNote('decoder', false)).not.toContain('grows');
+  });
+});
+
+describe('the note of operations', () => {
+  const [first] = linesRecord.cells;
+  const kind = (mean: number, worst: number) => ({ total: 1000 * mean, mean, worst });
+  const operations = {
+    multiplies: kind(2.3456, 4),
+    divides: kind(1, 1),
+    table_reads: kind(17.06, 33),
+    branches: kind(120.4, 1500),
+  };
+  const cell: CellRecord = {
+    ...first,
+    candidate: 'arith:order=1',
+    tables: 'shipped',
+    encoder: { ...end(1, 2), operations },
+  };
+
+  it('gives means and the worst of the end that is asked for', () => {
+    const text = operationsNote(cell, 'encoder', 'byte')!;
+    expect(text).toContain(
+      '2.35 multiplies (4), 1 divides (1), 17.1 table reads (33), 120 branches on data (1 500).',
+    );
+    expect(text).toMatch(/^Operations of the encoder of arith:order=1/);
+    expect(text).not.toContain('without what its tables take');
+    expect(operationsNote({ ...cell, tables: 'sent' }, 'encoder', 'byte')).toContain(
+      'without what its tables take',
+    );
+    expect(operationsNote(cell, 'decoder', 'byte')).toBeUndefined();
   });
 });
 

@@ -1,9 +1,23 @@
+import type { MessagePairs } from '../../src/harness/run-all.ts';
 import type { CellRecord, RunRecord } from '../../src/harness/run-record.ts';
 
 /** A record made up by hand, with round figures, to hold the layout of screens; no coder was run for it. */
 
+const paced = (pacerSymbols: number): NonNullable<CellRecord['table_build']> => ({
+  seconds: pacerSymbols / 6e6,
+  pacer_symbols: pacerSymbols,
+  low: pacerSymbols * 0.9,
+  high: pacerSymbols * 1.1,
+});
+
 const speed = (value: number): NonNullable<CellRecord['encode']> => ({
-  seconds: [0.01, 0.01, 0.01],
+  seconds: new Array<number>(6).fill(0.01),
+  pacer_seconds: new Array<number>(6).fill(0.01 * value),
+  set_up: paced(4000),
+  per_message: paced(12),
+  median: 0.01,
+  p95: 0.01,
+  rounds: 1,
   speed: value,
   low: value * 0.95,
   high: value * 1.05,
@@ -25,6 +39,7 @@ function cell(sample: Sample): CellRecord {
   const { corpus, candidate, tables, reset = 'message', messages, symbols, account = {} } = sample;
   const bits = Object.values(account).reduce((sum: number, value) => sum + (value ?? 0), 0);
   const mean = bits / 8 / messages;
+  const most = messages === 1 ? mean : 1.5 * mean;
   return {
     id: `${corpus}/${candidate}@${tables}/${reset}`,
     corpus,
@@ -44,11 +59,25 @@ function cell(sample: Sample): CellRecord {
     carried_bits: bits,
     rate: bits / symbols,
     account,
-    message_bytes: { mean, p50: mean, p95: mean, p99: mean, max: mean },
+    message_bytes: { mean, p50: mean, p95: most, p99: most, max: most },
+    ...(messages === 1
+      ? {}
+      : {
+          messages: {
+            grow_share: most > symbols / messages ? 0.125 : 0,
+            largest_index: 417,
+            worst: { index: 417, bytes: most, fixed_width_bytes: symbols / messages },
+          },
+        }),
     files: [{ sha256: 'ab'.repeat(32), symbol_count: symbols, coded_bytes: Math.ceil(bits / 8) }],
     ...(sample.speeds === undefined
       ? {}
-      : { encode: speed(sample.speeds[0]), decode: speed(sample.speeds[1]) }),
+      : {
+          timed: { pacer: 'deflate-huffman', symbol_count: symbols, message_count: messages },
+          encode: speed(sample.speeds[0]),
+          decode: speed(sample.speeds[1]),
+          ...(tables === 'shipped' ? { table_build: paced(30_000) } : {}),
+        }),
   };
 }
 
@@ -288,3 +317,20 @@ export const linesRecord: RunRecord = {
     }),
   ],
 };
+
+/**
+ * Bits of each message of {@link linesRecord}: even, but for the shipped cell, whose messages need 20 bits more and 20 bits
+ * less in turns of 41, so that one block of them differs from the next by far more than the cells differ in all.
+ */
+export const linesMessages: ReadonlyMap<string, MessagePairs> = new Map(
+  linesRecord.cells.map((cell) => [
+    cell.id,
+    {
+      bits: Float64Array.from({ length: 1_000 }, (_, i) => {
+        const swing = cell.tables === 'shipped' ? 20 * (-1) ** Math.floor(i / 41) : 0;
+        return cell.carried_bits! / 1_000 + swing;
+      }),
+      symbols: new Float64Array(1_000).fill(60),
+    },
+  ]),
+);

@@ -1,29 +1,12 @@
 import { describe, expect, it } from 'vitest';
-import type { Comparison } from '../../src/compare/compare-cells.ts';
+import { compareRun } from '../../src/compare/compare-run.ts';
 import { runRecordSchema } from '../../src/harness/run-record.ts';
 import { corpusSection } from '../../src/report/corpus-section.ts';
 import { runScreen } from '../../src/report/run-screen.ts';
 import { tryScreen } from '../../src/report/try-screen.ts';
-import { linesRecord, wholeRecord } from './sample-record.ts';
+import { linesMessages, linesRecord, wholeRecord } from './sample-record.ts';
 
 /** Layout is held by kept text; the figures in it come from a record made up by hand. */
-
-const comparison = (a: string, b: string, low: number): Comparison => ({
-  corpus: 'events',
-  a: `events/${a}`,
-  b: `events/${b}`,
-  difference: low + 0.004,
-  low,
-  high: low + 0.008,
-  units: 250,
-  unit: 'blocks of messages',
-  decided: low > 0,
-});
-
-const comparisons = [
-  comparison('arith:order=1@learned/never', 'arith:order=1@shipped/message', -0.001),
-  comparison('arith:order=1@learned/never', 'arith:order=1@learned/message', 2.6),
-];
 
 const screens: [name: string, make: (columns: number) => string][] = [
   [
@@ -39,7 +22,11 @@ const screens: [name: string, make: (columns: number) => string][] = [
   [
     'run',
     (columns) =>
-      runScreen(linesRecord, { columns, comparisons, next: 'bitassay entropy plan.yaml' }),
+      runScreen(linesRecord, {
+        columns,
+        compared: compareRun(linesRecord, linesMessages),
+        next: 'bitassay entropy plan.yaml',
+      }),
   ],
 ];
 

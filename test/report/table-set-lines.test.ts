@@ -37,6 +37,27 @@ describe('cells that differ in the tables of their set', () => {
     ]);
   });
 
+  it('say what flash the tables take, at the end that is asked for, or at both', () => {
+    const at = (count: number, rate: number, encoder: number, decoder?: number): CellRecord => ({
+      ...cell('huffman', { tables_in_set: count }, rate),
+      encoder: { flash_bytes: encoder },
+      ...(decoder === undefined ? {} : { decoder: { flash_bytes: decoder } }),
+    });
+    const cells = [at(1, 2, 768, 900), at(2, 1.5, 1536, 1800)];
+    expect(tableSetLines(cells, 'byte', 'decoder')).toEqual([
+      'huffman by tables in set: 1: 2.00, 2: 1.50 bits/byte; flash 900, 1 800 bytes.',
+    ]);
+    expect(tableSetLines(cells, 'byte')).toEqual([
+      'huffman by tables in set: 1: 2.00, 2: 1.50 bits/byte; flash 768, 1 536 bytes at the encoder, 900, 1 800 at the decoder.',
+    ]);
+    expect(tableSetLines([at(1, 2, 5, 5), at(2, 3, 10, 10)], 'byte')).toEqual([
+      'huffman by tables in set: 1: 2.00, 2: 3.00 bits/byte; flash 5, 10 bytes; more than 1 do not pay.',
+    ]);
+    expect(tableSetLines([at(1, 2, 5), at(2, 1, 10)], 'byte', 'decoder')).toEqual([
+      'huffman by tables in set: 1: 2.00, 2: 1.00 bits/byte.',
+    ]);
+  });
+
   it('have no sentence where one of them stands alone or failed', () => {
     const { rate: _, ...failed } = cell('rice', { tables_in_set: 2 }, 1);
     const cells = [cell('rice', { tables_in_set: 1 }, 1), { ...failed, verified: false }];

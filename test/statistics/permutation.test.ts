@@ -20,6 +20,48 @@ describe('signFlipTest', () => {
     );
   });
 
+  it('counts as going through the choices one by one does', () => {
+    fc.assert(
+      fc.property(
+        fc.array(fc.integer({ min: -40, max: 40 }), { minLength: 1, maxLength: 11 }),
+        (list) => {
+          const observed = list.reduce((sum, d) => sum + d, 0);
+          let greater = 0;
+          let twoSided = 0;
+          for (let signs = 0; signs < 2 ** list.length; signs++) {
+            const sum = list.reduce((s, d, i) => s + ((signs >> i) & 1 ? d : -d), 0);
+            if (sum >= observed) greater++;
+            if (Math.abs(sum) >= Math.abs(observed)) twoSided++;
+          }
+          expect(signFlipTest(list)).toEqual({ greater, twoSided, total: 2 ** list.length });
+          // Sums of thirds are not exact, and must count as equal all the same.
+          expect(signFlipTest(list.map((d) => d / 3))).toMatchObject({ greater, twoSided });
+        },
+      ),
+    );
+  });
+
+  it('goes through the 2^24 choices of 24 differences', () => {
+    // The sum is at least as far from 0 only under the observed signs and their opposite.
+    const alike = Array.from({ length: 24 }, (_, i) => i + 1);
+    expect(signFlipTest(alike)).toEqual({ greater: 1, twoSided: 2, total: 2 ** 24 });
+    expect(signFlipTest(alike.map((d) => -d))).toEqual({
+      greater: 2 ** 24,
+      twoSided: 2,
+      total: 2 ** 24,
+    });
+    // One against the others: with the sums 300 − 2 and −298 those of all one sign are as far from 0, ± 300.
+    expect(signFlipTest(alike.map((d) => (d === 1 ? -1 : d)))).toMatchObject({
+      greater: 2,
+      twoSided: 4,
+    });
+  });
+
+  it('turns a difference of 0 both ways at no change', () => {
+    expect(signFlipTest([0, 3, 0, 5])).toEqual({ greater: 4, twoSided: 8, total: 16 });
+    expect(signFlipTest([0, 0])).toEqual({ greater: 4, twoSided: 4, total: 4 });
+  });
+
   it('tells one difference nothing, and many alike all it can', () => {
     expect(signFlipTest([4])).toEqual({ greater: 1, twoSided: 2, total: 2 });
     expect(signFlipTest(new Array(10).fill(0.1))).toEqual({ greater: 1, twoSided: 2, total: 1024 });

@@ -6,10 +6,16 @@ import { InputError } from '../../errors/errors.ts';
 import type { CorpusData } from '../../harness/corpus-data.ts';
 import { type EntropyReport, entropyReport } from '../../harness/entropy-report.ts';
 import { loadCorpusData } from '../../harness/load-corpus-data.ts';
-import { requestOf } from '../../harness/plan-request.ts';
+import { fitsMemory } from '../../harness/memory-budget.ts';
+import type { RunHooks } from '../../harness/pause.ts';
+import { corporaOfPlan } from '../../harness/plan-request.ts';
+import type { StreamedData } from '../../harness/stream-data.ts';
+import { streamedEntropyReport } from '../../harness/stream-entropy.ts';
+import { openStreamed, partByMemory, streamedRequestOf } from '../../harness/stream-request.ts';
 import { entropyScreen } from '../../report/entropy-screen.ts';
 import { CommandEnd, exitCodes } from '../exit.ts';
 import { whileInterruptible } from '../interrupt.ts';
+import { addMemoryOptions, type MemoryOptions, withMemoryOptions } from '../memory-options.ts';
 import { terminalColours, terminalColumns, terminalShowsUnicode } from '../output.ts';
 import { addOutputOptions, type OutputOptions, writeResult } from '../output-options.ts';
 import { ProgressLine } from '../progress.ts';
@@ -21,7 +27,7 @@ import {
   typedOptions,
 } from '../source-options.ts';
 
-interface EntropyOptions extends SourceOptions, OutputOptions {
+interface EntropyOptions extends SourceOptions, OutputOptions, MemoryOptions {
   readonly upto: number;
   readonly rough?: boolean;
   readonly all?: boolean;
@@ -31,13 +37,21 @@ interface EntropyOptions extends SourceOptions, OutputOptions {
 
 const isPlan = (path: string): boolean => /\.ya?ml$/i.test(path);
 
-async function corporaOf(
-  paths: readonly string[],
-  options: EntropyOptions,
-): Promise<readonly CorpusData[]> {
+/** What is asked about: corpora that memory holds, and those that are read in pieces. */
+interface Asked {
+  readonly corpora: readonly CorpusData[];
+  readonly streamed: readonly StreamedData[];
+}
+
+async function corporaOf(paths: readonly string[], options: EntropyOptions): Promise<Asked> {
+  const { memory } = options;
   if (!paths.some(isPlan)) {
     const name = paths.length === 1 ? basename(paths[0]) : 'files';
-    return [await loadCorpusData(specFromOptions(name, paths, options), process.cwd(), undefined)];
+    const spec = specFromOptions(name, paths, options);
+    const folder = process.cwd();
+    if (memory !== undefined && !(await fitsMemory(spec, folder, memory)))
+      return { corpora: [], streamed: await openStreamed([spec], folder, undefined, memory) };
+    return { corpora: [await loadCorpusData(spec, folder, undefined)], streamed: [] };
   }
   if (paths.length > 1) {
     throw new InputError('a plan stands alone', {
@@ -45,26 +59,35 @@ async function corporaOf(
       advice: 'Give one plan, or files that are no plan.',
     });
   }
-  return (await requestOf(await readPlan(paths[0]))).corpora;
+  const plan = withMemoryOptions(await readPlan(paths[0]), options);
+  const { fitting, streamed } = await partByMemory(plan);
+  return {
+    corpora: await corporaOfPlan(fitting),
+    streamed: streamed.length === 0 ? [] : (await streamedRequestOf(plan, streamed)).corpora,
+  };
+}
+
+async function reportOf(
+  { corpora, streamed }: Asked,
+  options: EntropyOptions,
+  hooks: RunHooks,
+): Promise<EntropyReport> {
+  const { upto, rough = false, all = false, resolve } = options;
+  const whole = await entropyReport(corpora, { upto, rough, all, difference: resolve }, hooks);
+  if (streamed.length === 0 || whole.partial) return whole;
+  const pieces = await streamedEntropyReport(streamed, { upto, all }, hooks);
+  return {
+    corpora: [...whole.corpora, ...pieces.corpora],
+    entropy: [...whole.entropy, ...pieces.entropy],
+    partial: pieces.partial,
+  };
 }
 
 async function showEntropy(paths: readonly string[], options: EntropyOptions): Promise<void> {
-  const corpora = await corporaOf(paths, options);
+  const asked = await corporaOf(paths, options);
   const progress = new ProgressLine(true);
-  const report: EntropyReport = await whileInterruptible((interrupted) =>
-    entropyReport(
-      corpora,
-      {
-        upto: options.upto,
-        rough: options.rough === true,
-        all: options.all === true,
-        difference: options.resolve,
-      },
-      {
-        progress: (state) => progress.show(state),
-        interrupted,
-      },
-    ),
+  const report = await whileInterruptible((interrupted) =>
+    reportOf(asked, options, { progress: (state) => progress.show(state), interrupted }),
   ).finally(() => progress.stop());
   const colours = terminalColours();
   await writeResult({ corpora: report.corpora, entropy: report.entropy }, options, () =>
@@ -119,6 +142,7 @@ export function registerEntropy(program: Command): void {
       0.01,
     )
     .option('--ascii', 'no characters beyond ASCII');
+  addMemoryOptions(command);
   addOutputOptions(command)
     .addHelpText(
       'after',
@@ -128,7 +152,8 @@ Examples:
   bitassay entropy events.log --messages lines --upto 3
   bitassay entropy telemetry.bin --all --resolve 0.002
   bitassay entropy plan.yaml --json
-  bitassay entropy large.bin --upto 2 --rough`,
+  bitassay entropy large.bin --upto 2 --rough
+  bitassay entropy year.bin --memory 512MB`,
     )
     .action((files: string[], options: EntropyOptions) => showEntropy(files, options));
 }

@@ -1,25 +1,35 @@
 import { basename, join } from 'node:path';
 import type { Command } from 'commander';
 import { countCandidates } from '../../coders/candidate.ts';
-import { compareWithBest } from '../../compare/compare-cells.ts';
+import { compareRun } from '../../compare/compare-run.ts';
 import { type Plan, readPlan } from '../../corpus/plan.ts';
 import { InputError } from '../../errors/errors.ts';
+import type { Cell } from '../../harness/cells.ts';
 import { estimateSeconds } from '../../harness/estimate.ts';
+import type { RunProgress } from '../../harness/pause.ts';
 import { requestOf } from '../../harness/plan-request.ts';
-import { cellsOf, type RunRequest, runAll } from '../../harness/run-all.ts';
+import { cellsOf, type RunRequest } from '../../harness/run-all.ts';
 import { writeRunFolder } from '../../harness/run-folder.ts';
+import { runWith } from '../../harness/run-with.ts';
+import { partByMemory, streamedRequestOf } from '../../harness/stream-request.ts';
+import { joinResults, runStreamed, streamedCellsOf } from '../../harness/stream-run.ts';
 import { countText, durationText } from '../../report/figures.ts';
 import { notFilledText, runScreen } from '../../report/run-screen.ts';
+import { cacheNotes } from '../cache-notes.ts';
 import { CommandEnd, exitCodes } from '../exit.ts';
 import { whileInterruptible } from '../interrupt.ts';
-import { terminalColumns, writeStandardOutput } from '../output.ts';
+import { addMemoryOptions, type MemoryOptions, withMemoryOptions } from '../memory-options.ts';
+import { terminalColumns, terminalShowsUnicode, writeStandardOutput } from '../output.ts';
 import { ProgressLine } from '../progress.ts';
+import { numberOption } from '../source-options.ts';
 
-interface RunOptions {
+interface RunOptions extends MemoryOptions {
   readonly output?: string;
   readonly only?: string;
   readonly cells?: boolean;
   readonly many?: boolean;
+  readonly fresh?: boolean;
+  readonly workers?: number;
   readonly json?: boolean;
 }
 
@@ -64,9 +74,15 @@ async function guardCells(request: RunRequest, options: RunOptions): Promise<voi
   );
 }
 
-async function listCellsOf(request: RunRequest, json: boolean): Promise<void> {
-  const { cells, undeclared, notFilled } = cellsOf(request);
-  const seconds = await estimateSeconds(cells, request.corpora);
+/** @param others  cells of data that are read in pieces, whose time is not guessed */
+async function listCellsOf(
+  request: RunRequest,
+  others: readonly Cell[],
+  json: boolean,
+): Promise<void> {
+  const { cells: own, undeclared, notFilled } = cellsOf(request);
+  const cells = [...own, ...others];
+  const seconds = await estimateSeconds(own, request.corpora);
   if (json) {
     const list = {
       cells: cells.map((c) => c.id),
@@ -80,7 +96,11 @@ async function listCellsOf(request: RunRequest, json: boolean): Promise<void> {
   const lines = [
     ...cells.map((cell) => cell.id),
     '',
-    `${countText(cells.length)} cells, about ${durationText(seconds)} without timing (a guess from the beginning of the data).`,
+    `${countText(cells.length)} cells, about ${durationText(seconds)} without timing (a guess from the beginning of the data).${
+      others.length === 0
+        ? ''
+        : ` The ${countText(others.length)} that read data in pieces are not in it.`
+    }`,
     ...(undeclared === 0
       ? []
       : [`${countText(undeclared)} combinations give no cell: the coder does not declare them.`]),
@@ -90,22 +110,38 @@ async function listCellsOf(request: RunRequest, json: boolean): Promise<void> {
 }
 
 async function runPlanFile(planFile: string, options: RunOptions): Promise<void> {
-  const plan = await readPlan(planFile);
+  const plan = withMemoryOptions(await readPlan(planFile), options);
   guardCandidates(plan);
-  const whole = await requestOf(plan);
-  const request = options.only === undefined ? whole : { ...whole, only: options.only };
-  if (options.cells) return listCellsOf(request, options.json === true);
-  await guardCells(request, options);
+  const only = options.only === undefined ? {} : { only: options.only };
+  const { fitting, streamed } = await partByMemory(plan);
+  const request = { ...(await requestOf(fitting)), ...only };
+  const inPieces =
+    streamed.length === 0 ? undefined : { ...(await streamedRequestOf(plan, streamed)), ...only };
+  const others = inPieces === undefined ? [] : streamedCellsOf(inPieces).cells;
+  if (options.cells) return listCellsOf(request, others, options.json === true);
+  if (others.length === 0) await guardCells(request, options);
   // A split that nothing uses needs no word.
   const open = plan.chosen.filter(
     (choice) =>
-      request.corpora.some((corpus) => corpus.train !== undefined) || !choice.startsWith('split'),
+      request.corpora.some((corpus) => corpus.train !== undefined) ||
+      inPieces?.corpora.some((corpus) => corpus.train !== undefined) ||
+      !choice.startsWith('split'),
   );
   for (const choice of open) process.stderr.write(`bitassay: the plan leaves open ${choice}\n`);
   const progress = new ProgressLine(true);
-  const result = await whileInterruptible((interrupted) =>
-    runAll(request, { progress: (state) => progress.show(state), interrupted }),
-  ).finally(() => progress.stop());
+  const { fresh = false, workers } = options;
+  // Each lane holds models of its own.
+  const lanes = workers ?? (plan.memoryBytes === undefined ? undefined : 1);
+  const result = await whileInterruptible(async (interrupted) => {
+    const hooks = { progress: (state: RunProgress) => progress.show(state), interrupted };
+    const whole = await runWith(request, hooks, {
+      fresh,
+      ...(lanes === undefined ? {} : { lanes }),
+    });
+    if (inPieces === undefined || whole.record.partial) return whole;
+    return { ...whole, ...joinResults(whole, await runStreamed(inPieces, hooks)) };
+  }).finally(() => progress.stop());
+  for (const note of cacheNotes(result)) process.stderr.write(`bitassay: ${note}\n`);
   const folder = options.output ?? defaultFolder(planFile);
   await writeRunFolder(folder, result);
   const { record } = result;
@@ -116,7 +152,8 @@ async function runPlanFile(planFile: string, options: RunOptions): Promise<void>
     await writeStandardOutput(
       runScreen(record, {
         columns: terminalColumns(),
-        comparisons: compareWithBest(record, result.messages),
+        ascii: !terminalShowsUnicode(),
+        compared: compareRun(record, result.messages),
         next: `bitassay entropy ${planFile}`,
       }),
     );
@@ -127,7 +164,7 @@ async function runPlanFile(planFile: string, options: RunOptions): Promise<void>
 
 /** `bitassay run PLAN`: every cell of a plan, verified, accounted and timed. */
 export function registerRun(program: Command): void {
-  program
+  const command = program
     .command('run')
     .summary('run a plan: the product’s own framing and table policies')
     .description(
@@ -138,7 +175,14 @@ export function registerRun(program: Command): void {
     .option('--only <text>', 'only the cells whose id contains this text')
     .option('--cells', 'list the cells and guess the time, without running them')
     .option('--many', `run a plan of more than ${MANY_CELLS} cells`)
-    .option('--json', 'print the run record')
+    .option('--fresh', 'take nothing from the cache')
+    .option(
+      '--workers <count>',
+      'cells coded at a time (default: one a core)',
+      numberOption(1, true),
+    )
+    .option('--json', 'print the run record');
+  addMemoryOptions(command)
     .addHelpText(
       'after',
       `
@@ -146,7 +190,10 @@ Examples:
   bitassay run plan.yaml
   bitassay run plan.yaml --cells
   bitassay run plan.yaml --only telemetry/arith -o arith.run
-  bitassay run plan.yaml --json > run.json`,
+  bitassay run plan.yaml --json > run.json
+
+Bits are coded by several workers at once, times are taken one cell at a time. What a cell came to is kept in a cache, so that
+an interrupted run goes on where it ended and a changed candidate runs its own cells only; times are always taken anew.`,
     )
     .action((planFile: string, options: RunOptions) => runPlanFile(planFile, options));
 }

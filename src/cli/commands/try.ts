@@ -5,10 +5,19 @@ import type { Reset, TablePolicy } from '../../coders/contract.ts';
 import type { SplitRule } from '../../corpus/decide-split.ts';
 import { InputError } from '../../errors/errors.ts';
 import { describeSplit, loadCorpusData } from '../../harness/load-corpus-data.ts';
-import { type RunRequest, runAll } from '../../harness/run-all.ts';
+import { fitsMemory } from '../../harness/memory-budget.ts';
+import type { RunProgress } from '../../harness/pause.ts';
+import { runAll } from '../../harness/run-all.ts';
+import {
+  boundedRequest,
+  openStreamed,
+  USUAL_STREAMED_CANDIDATES,
+} from '../../harness/stream-request.ts';
+import { runStreamed } from '../../harness/stream-run.ts';
 import { tryScreen } from '../../report/try-screen.ts';
 import { CommandEnd, exitCodes } from '../exit.ts';
 import { whileInterruptible } from '../interrupt.ts';
+import { addMemoryOptions, type MemoryOptions } from '../memory-options.ts';
 import { terminalColumns } from '../output.ts';
 import { addOutputOptions, type OutputOptions, writeResult } from '../output-options.ts';
 import { ProgressLine } from '../progress.ts';
@@ -20,7 +29,7 @@ import {
   typedOptions,
 } from '../source-options.ts';
 
-interface TryOptions extends SourceOptions, OutputOptions {
+interface TryOptions extends SourceOptions, OutputOptions, MemoryOptions {
   readonly coder: readonly string[];
   readonly tables: readonly TablePolicy[];
   readonly reset: readonly Reset[];
@@ -70,29 +79,46 @@ async function tryFiles(files: readonly string[], options: TryOptions): Promise<
     ? { ...HALVES, by: isFill(options) ? 'unit' : 'message' }
     : undefined;
   const name = files.length === 1 ? basename(files[0]).replace(/[^A-Za-z0-9._-]/g, '_') : 'files';
-  const corpus = await loadCorpusData(specFromOptions(name, files, options), process.cwd(), rule);
-  const request: RunRequest = {
+  const spec = specFromOptions(name, files, options);
+  const asked = {
     title: files.join(', '),
-    corpora: [corpus],
     candidates,
     policies,
-    resets: options.reset.length > 0 ? options.reset : ['message'],
+    resets: options.reset.length > 0 ? options.reset : (['message'] as const),
     align: options.align,
     split: describeSplit(rule),
   };
+  const folder = process.cwd();
+  const { memory } = options;
+  const inPieces = memory !== undefined && !(await fitsMemory(spec, folder, memory));
   const progress = new ProgressLine(true);
-  const result = await whileInterruptible((interrupted) =>
-    runAll(request, { progress: (state) => progress.show(state), interrupted }),
-  ).finally(() => progress.stop());
+  const result = await whileInterruptible(async (interrupted) => {
+    const hooks = { progress: (state: RunProgress) => progress.show(state), interrupted };
+    if (!inPieces)
+      return runAll({ ...asked, corpora: [await loadCorpusData(spec, folder, rule)] }, hooks);
+    const corpora = await openStreamed([spec], folder, rule, memory);
+    return runStreamed(
+      boundedRequest({
+        ...asked,
+        corpora,
+        candidates:
+          options.coder.length > 0
+            ? candidates
+            : USUAL_STREAMED_CANDIDATES.flatMap((text) => parseCandidates(text)),
+        memoryBytes: memory,
+      }),
+      hooks,
+    );
+  }).finally(() => progress.stop());
   const { record } = result;
+  const isOneMessage = record.corpora[0].message_count === 1;
   await writeResult(record, options, () =>
     tryScreen(record, {
       columns: terminalColumns(),
-      caution:
-        corpus.test.messageEnds.length === 1
-          ? 'These rates hold for ONE long message. If the product sends packets, ask again with its messages.'
-          : 'No speed was measured here, and one split of one corpus can mislead.',
-      next: nextCommand(files, options, corpus.test.messageEnds.length === 1),
+      caution: isOneMessage
+        ? 'These rates hold for ONE long message. If the product sends packets, ask again with its messages.'
+        : 'No speed was measured here, and one split of one corpus can mislead.',
+      next: nextCommand(files, options, isOneMessage),
     }),
   );
   if (record.partial) throw new CommandEnd(exitCodes.interrupted);
@@ -141,6 +167,7 @@ export function registerTry(program: Command): void {
       numberOption(1, true),
       8,
     );
+  addMemoryOptions(command);
   addOutputOptions(command)
     .addHelpText(
       'after',
@@ -151,6 +178,8 @@ Examples:
   bitassay try uplink.bin --record 24 --messages records=8 --coder huffman --coder arith:order=0..3
   bitassay try uplink.bin --messages fill=192,unit=24
   bitassay try positions.csv --symbols csv:speed_knots --step 0.1
+  bitassay try year.bin --memory 512MB
+  bitassay try year.bin --sample every=12,block=1MB
   bitassay try *.log --json -o first-look.json`,
     )
     .action((files: string[], options: TryOptions) => tryFiles(files, options));

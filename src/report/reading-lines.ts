@@ -1,0 +1,31 @@
+import type { CorpusRecord, RunRecord } from '../harness/run-record.ts';
+import { countText, sizeText, wrapText } from './figures.ts';
+
+/** What a corpus that was not taken as a whole does not say: read in pieces, or only blocks of it. */
+export function readingLines(
+  corpus: CorpusRecord,
+  plan: Pick<RunRecord['plan'], 'memory_bytes'> | undefined,
+  columns: number,
+): string[] {
+  const lines: string[] = [];
+  if (corpus.sample !== undefined) lines.push(sampleText(corpus.sample));
+  if (corpus.in_pieces === true) {
+    const memory =
+      plan?.memory_bytes === undefined ? '' : ` to stay within ${sizeText(plan.memory_bytes)}`;
+    lines.push(
+      `Read in pieces${memory}: entropies of orders 0 to 2 at most, and beside them no coder was run for a ceiling; no repeats between train and test were looked for, no speed measured, no cost on a device.`,
+    );
+  }
+  return lines.flatMap((line) => wrapText(line, columns - 1, ' '));
+}
+
+/** `a sample: 14 of 160 blocks, 8.8 % of the bytes`, and what that means for the figures. */
+function sampleText({
+  blocks,
+  of_blocks,
+  bytes,
+  of_bytes,
+}: NonNullable<CorpusRecord['sample']>): string {
+  const share = `${Number(((100 * bytes) / of_bytes).toPrecision(2))} %`;
+  return `A sample: ${countText(blocks)} of ${countText(of_blocks)} blocks, ${share} of the bytes. Each block is coded as a file of its own. A table that is sent, and what a coder learns, weigh more in a sample than in all the data: such rates are the sample's. Intervals are drawn from whole blocks.`;
+}
