@@ -5,7 +5,7 @@ import { ensure, main } from './ensure.mjs';
 await main(async () => {
   ensure();
   // Built just now, so the compiler cannot know it.
-  const built = new URL('../dist/report/documents.js', import.meta.url);
+  const built = new URL('../dist/cli/documents.js', import.meta.url);
   const { documents } = await import(built.href);
   for (const [name, text] of documents()) {
     writeFileSync(new URL(`../docs/${name}`, import.meta.url), text);

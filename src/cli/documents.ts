@@ -1,7 +1,9 @@
 import { coderEntries } from '../coders/registry.ts';
+import { choiceJsonSchema } from '../compare/choice.ts';
 import { planJsonSchema } from '../corpus/plan-schema.ts';
+import { exportJsonSchema } from '../export/json-file.ts';
 import { runRecordJsonSchema } from '../harness/run-record.ts';
-import { coderDocument } from './coder-document.ts';
+import { coderDocument } from '../report/coder-document.ts';
 
 /** The files of `docs/` that are made from the code, by name. */
 export function documents(): ReadonlyMap<string, string> {
@@ -10,5 +12,7 @@ export function documents(): ReadonlyMap<string, string> {
     ['coders.md', coderDocument(coderEntries.map((entry) => entry.declaration))],
     ['plan.schema.json', json(planJsonSchema())],
     ['run-record.schema.json', json(runRecordJsonSchema())],
+    ['choice.schema.json', json(choiceJsonSchema())],
+    ['export.schema.json', json(exportJsonSchema())],
   ]);
 }

@@ -1,6 +1,6 @@
 import { readFileSync } from 'node:fs';
 import { describe, expect, it } from 'vitest';
-import { documents } from '../../src/report/documents.ts';
+import { documents } from '../../src/cli/documents.ts';
 
 describe('documents made from the code', () => {
   it.each([...documents()])(
