@@ -5,6 +5,7 @@ import { adversarialMessages } from './adversarial.ts';
 import { cFiles } from './c-files.ts';
 import type { ExportSubject } from './export-subject.ts';
 import type { ExportedCoder } from './exporter.ts';
+import { type MeasuredEnd, measureC } from './measure-c.ts';
 import { type Proof, prove } from './prove.ts';
 import { buildC } from './run-c.ts';
 import { loadModule } from './run-ts.ts';
@@ -17,6 +18,14 @@ const DAMAGED_MESSAGES = 10_000;
 /** A proof and what was proven. */
 export interface NamedProof extends Proof {
   readonly what: string;
+  /** Of C built for size, where the compiler tells. */
+  readonly sizes?: { readonly encoder: MeasuredEnd; readonly decoder: MeasuredEnd };
+}
+
+function sizesOf(folder: string, name: string, compiler: string): Pick<NamedProof, 'sizes'> {
+  const encoder = measureC(folder, `${name}_encode.c`, compiler);
+  const decoder = measureC(folder, `${name}_decode.c`, compiler);
+  return encoder === undefined || decoder === undefined ? {} : { sizes: { encoder, decoder } };
 }
 
 /**
@@ -44,7 +53,9 @@ export async function proveExport(
       for (const sanitize of [false, true]) {
         const run = buildC(files, naming.name, setup, folder, { sanitize, compiler });
         const what = sanitize ? `C99, ${compiler} with sanitizers` : `C99, ${compiler} -Os`;
-        proofs.push({ what, ...prove(candidate, setup, sequences, run, DAMAGED_MESSAGES) });
+        const sizes = sanitize ? {} : sizesOf(folder, naming.name, compiler);
+        const proof = prove(candidate, setup, sequences, run, DAMAGED_MESSAGES);
+        proofs.push({ what, ...proof, ...sizes });
       }
     }
     if (languages.includes('ts')) {

@@ -117,12 +117,23 @@ async function subjectOfFiles(
   return exportSubject(candidate, { ...rest, train: test, test: none }, Number(options.align));
 }
 
+function sizeLines({ sizes }: NamedProof): string[] {
+  if (sizes === undefined) return [];
+  return (['encoder', 'decoder'] as const).map((end) => {
+    const { codeBytes, tableBytes, stackBytes } = sizes[end];
+    return `  ${end} here: ${countText(codeBytes)} bytes of code, ${countText(tableBytes)} of tables, at most ${countText(stackBytes)} of stack`;
+  });
+}
+
 function proofLines(proofs: readonly NamedProof[]): string[] {
-  return proofs.map(
-    ({ what, messages, symbols, damaged, refused }) =>
+  return proofs.flatMap((proof) => {
+    const { what, messages, symbols, damaged, refused } = proof;
+    return [
       `  ${what}: ${countText(messages)} messages (${countText(symbols)} symbols) byte-identical both ways; ` +
-      `${countText(damaged)} damaged ones treated alike, ${countText(refused)} of them refused`,
-  );
+        `${countText(damaged)} damaged ones treated alike, ${countText(refused)} of them refused`,
+      ...sizeLines(proof),
+    ];
+  });
 }
 
 async function proofsOf(
