@@ -26,6 +26,12 @@ export type {
 } from './coders/contract.ts';
 export { coderEntries } from './coders/registry.ts';
 export { compareCellSpeeds, type TimedCell } from './compare/cell-speeds.ts';
+export {
+  type ChoiceFile,
+  choiceFileOf,
+  chooseFromRun,
+  type RunChoice,
+} from './compare/choice.ts';
 export { type Comparison, compareCells } from './compare/compare-cells.ts';
 export {
   compareRun,
@@ -34,6 +40,23 @@ export {
   type RunComparison,
   ranksOf,
 } from './compare/compare-run.ts';
+export {
+  type AdaptivePair,
+  adaptivePairs,
+  type Crossing,
+  crossingOf,
+  leastPoint,
+  type TrainingReturn,
+  trainingReturn,
+} from './compare/curve-findings.ts';
+export {
+  type Curve,
+  type CurveEntropy,
+  type CurveLine,
+  type CurvePoint,
+  curvesOf,
+} from './compare/curves.ts';
+export { type PooledRun, plainRun, pooledRun } from './compare/pooled-record.ts';
 export { type LoadedRun, loadRun } from './compare/read-messages.ts';
 export { type Plan, parsePlan, readPlan } from './corpus/plan.ts';
 export {
@@ -43,10 +66,29 @@ export {
 } from './entropy/entropy-by-order.ts';
 export { type Floor, floorOf } from './entropy/floor.ts';
 export * from './errors/errors.ts';
+export { type Export, type ExportFormat, exportFiles } from './export/export-files.ts';
+export { type ExportSubject, exportSubject } from './export/export-subject.ts';
+export { proveExport } from './export/prove-export.ts';
+export { packContainer, unpackContainer } from './harness/container.ts';
+export { type EntropyReport, entropyReport } from './harness/entropy-report.ts';
+export { loadCorpusData } from './harness/load-corpus-data.ts';
+export {
+  type MemoryCorpusOptions,
+  type MessageData,
+  memoryCorpus,
+  sequenceOf,
+} from './harness/memory-corpus.ts';
+export { type OwnCodec, type OwnRate, rateOfOwn } from './harness/own-codec.ts';
 export { requestOf } from './harness/plan-request.ts';
+export { type Rate, type RateOptions, rateOf } from './harness/rate-of.ts';
 export { type RunRequest, type RunResult, runAll } from './harness/run-all.ts';
 export { readRunRecord, writeRunFolder } from './harness/run-folder.ts';
+export { type RunPlanOptions, runPlan } from './harness/run-plan.ts';
 export { type RunRecord, runRecordJsonSchema } from './harness/run-record.ts';
+export { chooseScreen } from './report/choose-screen.ts';
+export { runScreen } from './report/run-screen.ts';
+export { tryScreen } from './report/try-screen.ts';
+export type { SpeedComparison, SpeedVerdict } from './statistics/speed-verdict.ts';
 export {
   oneMessage,
   type SymbolChunk,
