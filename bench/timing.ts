@@ -9,9 +9,9 @@ import { parseCandidate } from '../src/coders/candidate.ts';
 import type { Setup } from '../src/coders/contract.ts';
 import { trainOn } from '../src/coders/verify.ts';
 import { longestEndSeconds } from '../src/harness/time-cell.ts';
+import { Pacer } from '../src/harness/time-pacer.ts';
 import { timeRounds } from '../src/harness/time-rounds.ts';
 import { type TimedTask, threadClock } from '../src/harness/time-sampler.ts';
-import { Pacer } from '../src/harness/time-work.ts';
 import { compareSpeeds, type PacedSamples } from '../src/statistics/speed-verdict.ts';
 import { oneMessage } from '../src/symbols/sequence.ts';
 

@@ -160,5 +160,5 @@ describe('sent as filled packets', () => {
         `telemetry/arith:order=0,position=24@${policy}/message`,
       );
     expect(recordsOf(byFields) / recordsOf(byBytes)).toBeGreaterThanOrEqual(2);
-  }, 60_000);
+  }, 120_000);
 });

@@ -139,6 +139,19 @@ describe('the package', () => {
     });
   });
 
+  it('runs a plan in its workers', { timeout: patience }, () => {
+    writeFileSync(join(consumer, 'run.log'), 'supply -18.3 C, door shut\n'.repeat(50));
+    writeFileSync(
+      join(consumer, 'plan.yaml'),
+      'plan: 1\ncorpora:\n  log: {files: run.log, symbols: bytes, messages: lines}\ncandidates: [huffman]\ntiming: {repeats: 0}\n',
+    );
+    const { code, stdout, stderr } = bitassay('run', 'plan.yaml', '--workers', '2', '--json');
+    expect(code, stderr).toBe(0);
+    const { cells } = JSON.parse(stdout);
+    expect(cells.length).toBeGreaterThan(0);
+    expect(cells.filter((cell: { verified: boolean }) => !cell.verified)).toEqual([]);
+  });
+
   it('tries a file and leaves a record with verified cells', { timeout: patience }, () => {
     const lines = Array.from(
       { length: 200 },

@@ -1,7 +1,7 @@
 import type { Command } from 'commander';
 import { Option } from 'commander';
 import type { CorpusSpec } from '../corpus/corpus.ts';
-import type { SampleRule } from '../corpus/sample-rule.ts';
+import { type SampleRule, sampleRuleText } from '../corpus/sample-rule.ts';
 import { InputError } from '../errors/errors.ts';
 import { checkFieldsApart, parseRecordField, type RecordField } from '../symbols/record.ts';
 
@@ -100,10 +100,15 @@ export function specFromOptions(
 }
 
 /** The options as they were typed, where they differ from the usual ones: for the command that a screen proposes. */
-export function typedOptions(options: SourceOptions, messages?: string): string {
+export function typedOptions(
+  options: SourceOptions & { readonly memory?: number },
+  messages?: string,
+): string {
   const parts: string[] = [];
   if (options.symbols !== 'bytes') parts.push(`--symbols ${options.symbols}`);
   const rule = messages ?? (options.messages === 'whole' ? undefined : options.messages);
   if (rule !== undefined) parts.push(`--messages ${rule}`);
+  if (options.sample !== undefined) parts.push(`--sample ${sampleRuleText(options.sample)}`);
+  if (options.memory !== undefined) parts.push(`--memory ${options.memory}B`);
   return parts.length === 0 ? '' : ` ${parts.join(' ')}`;
 }

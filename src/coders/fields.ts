@@ -1,6 +1,7 @@
 import { fieldChoiceText } from '../symbols/field-choice.ts';
 import type { Coder, CoderEntry } from './contract.ts';
 import { fieldsCosts } from './cost-fields.ts';
+import { fieldsOperations } from './cost-fields-operations.ts';
 import { fieldsDecoder } from './fields-decoder.ts';
 import { fieldsEncoder, fieldsFiller } from './fields-encoder.ts';
 import { fieldsPrice } from './fields-price.ts';
@@ -52,6 +53,7 @@ function create(values: ParameterValues): Coder {
           : adaptiveTablesFor(settings, setup);
       return fieldsCosts(plan, setup.policy, settings.rangeBits, longestCodedBytes);
     },
+    operations: (sequence, setup) => fieldsOperations(settings, sequence, setup),
     decoderHolds: () => settings.rangeBits / 8,
     describeTables: (tables) => describe(tables as FieldsTables),
   };
@@ -80,5 +82,5 @@ function describe(tables: FieldsTables): string[] {
 
 function saving(plainCost: number, cost: number): string {
   if (plainCost === cost) return 'nothing saves against raw';
-  return `${Math.round((100 * (plainCost - cost)) / plainCost)} % less than raw on the later half of what it was chosen on`;
+  return `${Math.round((100 * (plainCost - cost)) / plainCost)} % less than raw on the half of the train split that priced it`;
 }

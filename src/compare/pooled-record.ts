@@ -1,5 +1,5 @@
 import type { CellRecord, EntropyRecord, RunRecord } from '../harness/run-record.ts';
-import { codedKeyOf, variationText } from '../harness/variation.ts';
+import { codedKeyOf, type Variation, variationOf, variationText } from '../harness/variation.ts';
 
 /** A run as screens tell it: the cells of all folds as one, and what the plan varies apart or left out. */
 export interface PooledRun {
@@ -8,24 +8,18 @@ export interface PooledRun {
   readonly foldRates: ReadonlyMap<string, readonly number[]>;
 }
 
-type Vary = NonNullable<CellRecord['vary']>;
-
-function variationOf({ align, message_symbols, train_share }: Vary) {
-  return {
-    ...(align === undefined ? {} : { align }),
-    ...(message_symbols === undefined ? {} : { messageSymbols: message_symbols }),
-    ...(train_share === undefined ? {} : { trainShare: train_share }),
-  };
+function variationWithoutFold({ fold: _, ...vary }: NonNullable<CellRecord['vary']>): Variation {
+  return variationOf(vary);
 }
 
 /** What the plan varies of a cell besides folds, as it stands in its id; empty for the plan's own. */
 export function variationOfCell({ vary = {} }: Pick<CellRecord, 'vary'>): string {
-  return variationText(variationOf(vary));
+  return variationText(variationWithoutFold(vary));
 }
 
 /** Key of the entropies that a cell is held against, where folds are pooled. */
 export function codedKeyOfCell({ corpus, vary = {} }: Pick<CellRecord, 'corpus' | 'vary'>): string {
-  return codedKeyOf(corpus, variationOf(vary));
+  return codedKeyOf(corpus, variationWithoutFold(vary));
 }
 
 const sumOf = <T>(items: readonly T[], of: (item: T) => number): number =>

@@ -14,8 +14,8 @@ import { checkIntake } from './intake.ts';
 import { parseMessageRule } from './messages.ts';
 import type { PlanDocument } from './plan-document.ts';
 import { type Fault, gotText, keyText } from './plan-faults.ts';
-import type { SampleRule } from './sample-rule.ts';
 import { corpusSchema, knownKeysAt, type PlanFile } from './plan-schema.ts';
+import type { SampleRule } from './sample-rule.ts';
 
 type Path = readonly PropertyKey[];
 

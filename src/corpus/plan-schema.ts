@@ -61,6 +61,9 @@ const SHARE = number(0, 1);
 const TRAIN_SHARE = 'a share of the train part, above 0 and up to 1';
 const ALIGNMENTS = [1, 8, 16, 32, 64] as const;
 const LOSS = 'a share of messages lost, above 0 and below 1';
+const CHANCE = 'a probability above 0 and below 1';
+const LOSSES =
+  'a probability above 0 and below 1, or good_to_bad and bad_to_good, with lost_in_bad and lost_in_good, from 0 to 1, where some messages are lost and some arrive';
 const BYTES = pattern(/^\d+(\.\d+)? ?([kKMGT]i?)?B$/, 'a size such as 512MB');
 const RESET = pattern(
   /^(message|file|never|message\*[1-9]\d{0,9})$/,
@@ -140,6 +143,36 @@ export const costSchema = object({
   devices: COUNT.optional(),
 });
 
+function chance() {
+  return z.number({ error: CHANCE }).gt(0, { error: CHANCE }).lt(1, { error: CHANCE });
+}
+
+/** Losses of a channel that is good and bad in turn: some messages must be lost and some arrive, and it must change. */
+const burstLosses = object({
+  good_to_bad: SHARE,
+  bad_to_good: SHARE,
+  lost_in_bad: SHARE.optional(),
+  lost_in_good: SHARE.optional(),
+}).refine(
+  ({ good_to_bad: toBad, bad_to_good: toGood, lost_in_bad = 1, lost_in_good = 0 }) => {
+    const lost = toBad * lost_in_bad + toGood * lost_in_good;
+    return lost > 0 && lost < toBad + toGood;
+  },
+  { error: LOSSES },
+);
+
+/** Damage that is simulated, each kind in an experiment of its own. */
+export const damageSchema = object({
+  flip: chance().optional(),
+  lose_bytes: chance().optional(),
+  lose_messages: either(LOSSES, () => [chance(), burstLosses]).optional(),
+  seed: wholeNumber(0, 2 ** 32 - 1).optional(),
+}).refine(
+  ({ flip, lose_bytes, lose_messages }) =>
+    flip !== undefined || lose_bytes !== undefined || lose_messages !== undefined,
+  { error: 'at least one of flip, lose_bytes and lose_messages' },
+);
+
 /** The schema of a plan file; keys in snake_case. */
 export const planSchema = object({
   plan: z.literal(1, { error: '1, the version of the plan file' }),
@@ -196,7 +229,7 @@ export const planSchema = object({
   loss: object({
     rate: z.number({ error: LOSS }).gt(0, { error: LOSS }).lt(1, { error: LOSS }),
   }).optional(),
-  damage: object({ flip: SHARE, seed: wholeNumber(0, 2 ** 32 - 1).optional() }).optional(),
+  damage: damageSchema.optional(),
   gate: object({
     allow: object({ total: GROWTH.optional(), each_file: GROWTH.optional() }),
   }).optional(),

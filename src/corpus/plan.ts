@@ -37,6 +37,8 @@ export interface Plan {
   readonly reset: readonly ('message' | 'file' | 'never' | `message*${number}`)[];
   /** Share of messages lost on the way, 0 … 1, where the plan gives one. */
   readonly lossRate?: number;
+  /** Damage to coded messages that is simulated, where the plan asks. */
+  readonly damage?: PlanFile['damage'];
   /** Bytes in which the link bills each message, where the plan says. */
   readonly billStepBytes?: number;
   /** Bytes that the process may hold, where the plan says. */
@@ -137,6 +139,8 @@ function planOf(
   if (written.reset === undefined) chosen.push('reset: [message]');
   if (written.align === undefined) chosen.push('align: 8');
   if (timing.repeats === undefined) chosen.push('timing.repeats: 20');
+  if (written.damage !== undefined && written.damage.seed === undefined)
+    chosen.push('damage.seed: 1');
   return {
     file,
     folder: dirname(file),
@@ -161,6 +165,7 @@ function planOf(
     reset: (written.reset ?? ['message']) as Plan['reset'],
     align: written.align ?? 8,
     ...(written.loss === undefined ? {} : { lossRate: written.loss.rate }),
+    ...(written.damage === undefined ? {} : { damage: written.damage }),
     ...(written.cost?.bill_step_bytes === undefined
       ? {}
       : { billStepBytes: written.cost.bill_step_bytes }),

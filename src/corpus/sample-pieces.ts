@@ -129,7 +129,7 @@ function messageStarts(
     return (position) => (position >= reader.size ? reader.size : starts(position));
   };
   if (rule.kind === 'lines') return within((position) => lineStart(reader, position));
-  if (rule.kind === 'prefix') return within(frameStarts(reader, rule.type));
+  if (rule.kind === 'prefix') return frameStarts(reader, rule.type);
   if (taker.alphabet !== 'natural') return within((position) => codePointStart(reader, position));
   const symbolBytes = taker.field === undefined ? 1 / taker.maxSymbolsPerByte : record!.bytes;
   const messageBytes =
@@ -171,7 +171,7 @@ function frameStarts(reader: PieceReader, type: PrefixType): StartAfter {
   let frame = 0;
   let index = 0;
   return (position) => {
-    while (frame < position) {
+    while (frame < Math.min(position, reader.size)) {
       if (frame + width > bufferAt + buffer.length || frame < bufferAt) {
         buffer = reader.read(frame, frame + SCAN_BYTES) as Uint8Array<ArrayBuffer>;
         bufferAt = frame;

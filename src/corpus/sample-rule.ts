@@ -115,6 +115,14 @@ function refuse(text: string, expected: string, near?: string): never {
   });
 }
 
+/** As an option writes it; sizes in bytes. */
+export function sampleRuleText(rule: SampleRule): string {
+  const block = `block=${rule.blockBytes}B`;
+  return rule.kind === 'every'
+    ? `every=${rule.every},${block}`
+    : `reservoir=${rule.bytes}B,${block},seed=${rule.seed}`;
+}
+
 /**
  * Numbers of the blocks that are taken of `count`, rising.
  *

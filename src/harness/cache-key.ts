@@ -72,12 +72,14 @@ export class CacheKeys {
   #codedHash(corpus: CorpusData): string {
     let found = this.#coded.get(corpus.key);
     if (found === undefined) {
-      const { lengths, fill, record, fields, sentMap, testFiles } = corpus;
+      // All there is but what names the data, what trains, and figures of figures: a key that is added later counts.
+      const { name, key, vary, sha256, symbolsAs, messagesAs, sourceBytes, ...known } = corpus;
+      const { train, test, repeated, testFiles, sentMap, ...facts } = known;
       const hash = createHash('sha256');
       const fileEnds = testFiles.map(({ messageEnd }) => messageEnd);
-      hash.update(JSON.stringify([lengths, fill, record, fields, sentMap?.bits, fileEnds]));
+      hash.update(JSON.stringify([facts, sentMap?.bits, fileEnds]));
       if (sentMap !== undefined) hash.update(sentMap.bytes);
-      addSequence(hash, corpus.test);
+      addSequence(hash, test);
       found = hash.digest('hex');
       this.#coded.set(corpus.key, found);
     }
@@ -96,7 +98,7 @@ export class CacheKeys {
   }
 
   /** Of what a cell comes to, or, by another `kind`, of other figures about it. */
-  ofCell(kind: string, cell: Cell, corpus: CorpusData, more: readonly unknown[] = []): string {
+  ofCell(kind: string, cell: Cell, corpus: CorpusData): string {
     const { candidate, policy, reset, align } = cell;
     const isTrained = policy === 'shipped' || policy === 'primed';
     return this.#key([
@@ -107,7 +109,6 @@ export class CacheKeys {
       align,
       this.#codedHash(corpus),
       isTrained ? this.#trainedHash(corpus) : '',
-      ...more,
     ]);
   }
 

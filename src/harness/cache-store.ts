@@ -7,7 +7,7 @@ import { BitassayError } from '../errors/errors.ts';
 import { writeWhole } from './write-whole.ts';
 
 /** Most bytes that the cache keeps; those used longest ago go first. */
-export const MOST_CACHE_BYTES = 1e9;
+export const MOST_CACHE_BYTES = 2 ** 30;
 
 /** Entries lie below this folder, so that clearing takes nothing else with it, whatever folder was named. */
 const ENTRIES = 'entries';

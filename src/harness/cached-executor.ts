@@ -4,6 +4,8 @@ import type { CacheStore } from './cache-store.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import type { FloorOptions } from './corpus-floors.ts';
+import type { DamagePlan } from './damage-experiment.ts';
+import type { CellDamage } from './damage-schema.ts';
 import type { Control, Executor } from './executor.ts';
 import type { FloorPieces } from './floor-pieces.ts';
 import { Interrupted } from './pause.ts';
@@ -104,6 +106,20 @@ export class CachedExecutor implements Executor {
       const { cellId: _, ...kept } = found;
       await this.#store.put(key, kept);
     }
+    return found;
+  }
+
+  async damage(
+    cell: Cell,
+    corpus: CorpusData,
+    plan: DamagePlan,
+    control: Control,
+  ): Promise<readonly CellDamage[] | CellFailure> {
+    const key = this.#keys.ofCell(`damage ${JSON.stringify(plan)}`, cell, corpus);
+    const known = await this.#take<readonly CellDamage[]>(key);
+    if (known !== undefined) return known;
+    const found = await this.#inner.damage(cell, corpus, plan, control);
+    if (!('failure' in found)) await this.#store.put(key, found);
     return found;
   }
 

@@ -11,7 +11,8 @@ import { type LossFigures, lossFigures } from './loss.ts';
 import { growthRecord, messageBytes, messageGrowth } from './message-figures.ts';
 import type { CellBits, CellFailure } from './run-cell.ts';
 import type { CellRecord } from './run-record.ts';
-import { type CellTimes, timesRecordOf } from './time-cell.ts';
+import type { CellTimes } from './time-cell.ts';
+import { timesRecordOf } from './time-record.ts';
 import { varyRecord } from './variation.ts';
 
 function filesOf(bits: CellBits, corpus: CorpusShape): NonNullable<CellRecord['files']> {

@@ -1,31 +1,21 @@
 import type { CodedTotals, FloorShare } from '../account/bit-account.ts';
 import type { FitClass } from '../coders/contract.ts';
-import {
-  adaptiveCeilings,
-  CeilingStop,
-  equalLengthsCeiling,
-  type NoCeiling,
-  noCeilingReason,
-} from '../entropy/ceilings.ts';
-import { ctwCeiling, ctwName } from '../entropy/ctw-ceiling.ts';
+import { equalLengthsCeiling, type NoCeiling } from '../entropy/ceilings.ts';
 import { type EntropyByOrder, entropyByOrder } from '../entropy/entropy-by-order.ts';
 import { blockEstimable } from '../entropy/estimable.ts';
 import { type Ceiling, type Floor, floorOf, openingBits } from '../entropy/floor.ts';
 import { type MatchLengthEntropy, matchLengthEntropy } from '../entropy/match-lengths.ts';
 import { type MatchMeasurements, measureMatches } from '../entropy/match-measurements.ts';
-import { BitassayError, BugError } from '../errors/errors.ts';
 import type { ContextScope } from '../models/context-counts.ts';
-import type { SymbolSequence } from '../symbols/sequence.ts';
 import { type Cell, decodesAlone } from './cells.ts';
-import type { CorpusShape, SequenceShape } from './corpus-data.ts';
+import type { CorpusShape } from './corpus-data.ts';
 import { matchRecord, orderRecord } from './entropy-record.ts';
+import { ceilingsOf, runCeilings, symbolsOf } from './floor-ceilings.ts';
 import { FloorPieces } from './floor-pieces.ts';
 import type { CellBits, CellFailure } from './run-cell.ts';
 import type { EntropyRecord } from './run-record.ts';
-import { codedKeyOf, variationText } from './variation.ts';
+import { codedKeyOf } from './variation.ts';
 
-/** Adaptive back-off coders of these orders always stand among the ceilings. */
-const CEILING_ORDER = 4;
 /** Entropies are counted at least up to this order, and no further than the second. */
 const LEAST_ORDER = 4;
 const MOST_ORDER = 6;
@@ -64,46 +54,11 @@ export interface FloorOptions {
   readonly changes?: boolean;
 }
 
-/**
- * What verified cells reach, in bits per symbol: ideal + tables + index, or all carried bits where a coder has no ideal. Any
- * code that can be decoded bounds the entropy rate from above, whatever its tables and resets. Named by candidate; only a
- * `learned` one that never resets takes the place of a ceiling run.
- */
-function ceilingsOf(results: readonly (CellBits | CellFailure)[], corpus: CorpusShape): Ceiling[] {
-  const { test } = corpus;
-  const ceilings: Ceiling[] = [];
-  for (const result of results) {
-    if ('failure' in result) continue;
-    const { cell, totals } = result;
-    const neverResets = cell.reset === 'never' || test.messageEnds.length <= 1;
-    const { idealBits, tableBits, indexBits, carriedBits } = totals;
-    const bits = idealBits === undefined ? carriedBits : idealBits + tableBits + indexBits;
-    const { policy, reset, candidate } = cell;
-    const { align, trainShare } = cell.vary ?? {};
-    const variation = variationText({
-      ...(align === undefined ? {} : { align }),
-      ...(trainShare === undefined ? {} : { trainShare }),
-    });
-    const name =
-      policy === 'learned' && neverResets
-        ? candidate.id + variation
-        : `${candidate.id}@${policy}/${reset}${variation}`;
-    ceilings.push({ name, bitsPerSymbol: bits / test.symbols.length });
-  }
-  return ceilings;
-}
-
 /** The index one past each file's last symbol. */
 export function fileEndsOf({ test, testFiles }: CorpusShape): Uint32Array {
   return Uint32Array.from(testFiles, ({ messageEnd }) =>
     messageEnd === 0 ? 0 : test.messageEnds[messageEnd - 1],
   );
-}
-
-/** The same sequence, whose symbols must be at hand. */
-function symbolsOf(sequence: SequenceShape): SymbolSequence {
-  if (ArrayBuffer.isView(sequence.symbols)) return sequence as SymbolSequence;
-  throw new BugError('symbols were needed that lie outside memory');
 }
 
 /** Entropies and floors of one corpus, one for each kind of contexts that its cells have. */
@@ -167,16 +122,20 @@ export class CorpusFloors {
     const { test } = this.#corpus;
     if (test.symbols.length === 0) return;
     const ceilings = [equalLengthsCeiling(test.alphabetSize), ...options.ceilings];
-    if (options.run) await this.#runCeilings(ceilings, options.ctw === true, pause);
+    if (options.run) {
+      const ctw = options.ctw === true;
+      this.#without.push(...(await runCeilings(test, ceilings, this.#pieces, ctw, pause)));
+    }
     this.#ceilings = ceilings;
     let measured: MatchMeasurements | undefined;
     for (const contexts of options.scopes) {
       await pause();
       const { upto, useful, all = false, changes = false } = options;
+      const sampled = this.#corpus.sample !== undefined;
       const entropy =
         this.#counted.get(contexts) ??
         this.#pieces.take(
-          `entropy ${JSON.stringify({ contexts, upto, useful, all, changes })}`,
+          `entropy ${JSON.stringify({ contexts, upto, useful, all, changes, sampled })}`,
           () =>
             entropyByOrder(symbolsOf(test), {
               upto,
@@ -185,7 +144,7 @@ export class CorpusFloors {
               all,
               changes,
               fileEnds: fileEndsOf(this.#corpus),
-              sampled: this.#corpus.sample !== undefined,
+              sampled,
             }),
         );
       let matches: MatchLengthEntropy | undefined;
@@ -205,52 +164,6 @@ export class CorpusFloors {
         openingBits: openingBits(test, entropy.orders, floor.order, contexts),
       });
     }
-  }
-
-  /** Adds what the coders that always stand among the ceilings reach; order by order, while they need less. */
-  async #runCeilings(ceilings: Ceiling[], ctw: boolean, pause: () => Promise<void>): Promise<void> {
-    const { test } = this.#corpus;
-    const stop = new CeilingStop(Math.min(...ceilings.map((c) => c.bitsPerSymbol)));
-    for (let order = 0; order <= CEILING_ORDER; order++) {
-      const name = `arith:order=${order}`;
-      let known = ceilings.find((c) => c.name === name);
-      if (known === undefined && stop.reason !== undefined) {
-        this.#without.push({ name, reason: stop.reason });
-        continue;
-      }
-      if (known === undefined) {
-        await pause();
-        const run = this.#pieces.take(`ceiling ${name}`, () => {
-          const { ceilings, without } = adaptiveCeilings(symbolsOf(test), {
-            from: order,
-            upto: order,
-          });
-          return { ceilings, without: without.map(({ name, reason }) => ({ name, reason })) };
-        });
-        known = run.ceilings.find((c) => c.name === name);
-        if (known !== undefined) ceilings.push(known);
-        this.#without.push(...run.without);
-      }
-      if (known !== undefined) stop.note(known);
-    }
-    if (!ctw) return;
-    const name = ctwName(test.alphabetSize);
-    const [equalLengths] = ceilings;
-    if (ceilings.every((c) => c.bitsPerSymbol >= equalLengths.bitsPerSymbol)) {
-      this.#without.push({ name, reason: 'not run: no other coder needs less than equal lengths' });
-      return;
-    }
-    await pause();
-    const found = this.#pieces.take(`ceiling ${name}`, (): Ceiling | NoCeiling => {
-      try {
-        return ctwCeiling(symbolsOf(test));
-      } catch (error) {
-        if (!(error instanceof BitassayError)) throw error;
-        return { name, reason: noCeilingReason(error) };
-      }
-    });
-    if ('reason' in found) this.#without.push(found);
-    else ceilings.push(found);
   }
 
   /** What was counted for one kind of contexts. */

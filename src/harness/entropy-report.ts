@@ -68,7 +68,7 @@ async function reportOf(
   const scopes: ContextScope[] =
     whole.fill !== undefined
       ? ['running']
-      : whole.test.messageEnds.length > 1
+      : whole.test.messageEnds.length > (whole.sample === undefined ? 1 : whole.testFiles.length)
         ? ['message', 'running']
         : ['message'];
   await pause();

@@ -1,6 +1,8 @@
 import type { Ageing } from './ageing.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
+import type { DamagePlan } from './damage-experiment.ts';
+import type { CellDamage } from './damage-schema.ts';
 import type { FloorOptions } from './corpus-floors.ts';
 import type { FloorPieces } from './floor-pieces.ts';
 import type { CellBits, CellFailure } from './run-cell.ts';
@@ -49,6 +51,13 @@ export interface Executor {
     messageEnds: Uint32Array,
     control: Control,
   ): Promise<Ageing | undefined>;
+  /** What damage does to a cell, or why that could not be found out. */
+  damage(
+    cell: Cell,
+    corpus: CorpusData,
+    plan: DamagePlan,
+    control: Control,
+  ): Promise<readonly CellDamage[] | CellFailure>;
   /** Lets workers go. */
   close(): Promise<void>;
 }

@@ -7,7 +7,7 @@ import type { CorpusData } from './corpus-data.ts';
 import { describeSplit, loadCorpusData } from './load-corpus-data.ts';
 import { loadVariedData } from './load-varied-data.ts';
 import type { RunRequest } from './run-all.ts';
-import { checkPacer } from './time-work.ts';
+import { checkPacer } from './time-pacer.ts';
 
 /**
  * The candidates of a plan, ranges opened.
@@ -81,10 +81,31 @@ export async function corporaOfPlan(plan: Plan): Promise<CorpusData[]> {
   return corpora;
 }
 
+/** Most data that one corpus may be varied into. */
+const MOST_DATA = 1000;
+
+/** Refuses, before any file is read, a plan that varies its data more than anybody means. */
+function guardData({ vary, split, file, lineOf }: Plan): void {
+  const sizes = 1 + (vary.messageSymbols?.length ?? 0);
+  const shares = 1 + (vary.trainShares?.length ?? 0);
+  const count = sizes * shares * (split.folds ?? 1);
+  if (count <= MOST_DATA) return;
+  const key = sizes * shares === 1 ? 'split' : 'vary';
+  throw new InputError(`the plan varies the data of each corpus ${count} times`, {
+    file,
+    line: lineOf(key),
+    key,
+    expected: `at most ${MOST_DATA} combinations of message sizes, shares and folds`,
+    got: `${sizes} × ${shares} × ${split.folds ?? 1}, the plan's own among them`,
+    advice: 'Vary one thing at a time, each in a plan of its own.',
+  });
+}
+
 /** Reads the plan's corpora and makes the request that a run takes. */
 export async function requestOf(plan: Plan): Promise<RunRequest> {
   const candidates = candidatesOf(plan);
   const rule = splitRuleOf(plan, candidates);
+  guardData(plan);
   const corpora: CorpusData[] = [];
   for (const spec of plan.corpora) {
     corpora.push(
@@ -103,6 +124,7 @@ export async function requestOf(plan: Plan): Promise<RunRequest> {
     ...(plan.vary.aligns === undefined ? {} : { aligns: plan.vary.aligns }),
     ...(plan.lossRate === undefined ? {} : { lossRate: plan.lossRate }),
     ...(plan.billStepBytes === undefined ? {} : { billStepBytes: plan.billStepBytes }),
+    ...(plan.damage === undefined ? {} : { damage: plan.damage }),
     ...(plan.device === undefined ? {} : { device: plan.device }),
     decision: plan.decision,
     budget: budgetOf(plan.budget),

@@ -9,10 +9,12 @@ import type { CorpusData } from './corpus-data.ts';
 import { corpusRecordsOf } from './corpus-record.ts';
 import { describeEnvironment, toolVersion } from './environment.ts';
 import type { Executor } from './executor.ts';
+import type { DamagePlan } from './damage-experiment.ts';
 import { bitsOfCorpusMessages } from './fill-figures.ts';
 import type { RunHooks } from './pause.ts';
 import { RunBoard } from './run-board.ts';
 import { type CellGroup, type CodedGroup, codeGroup } from './run-group.ts';
+import { damageRecordOf } from './run-damage.ts';
 import type { CellRecord, RunRecord } from './run-record.ts';
 import { type RunTimes, timeCells } from './run-times.ts';
 import { ThisThread } from './this-thread.ts';
@@ -31,6 +33,8 @@ export interface RunRequest {
   readonly aligns?: readonly number[];
   /** Share of messages lost on the way; absent: not asked. */
   readonly lossRate?: number;
+  /** Damage that is simulated; absent: not asked. */
+  readonly damage?: DamagePlan;
   /** Bytes in which a link bills each message; absent: not asked. */
   readonly billStepBytes?: number;
   /** The small end of the product, where the plan names it. */
@@ -101,15 +105,17 @@ export async function runAll(
 ): Promise<RunResult> {
   const { cells, undeclared, notFilled } = cellsOf(request);
   const board = new RunBoard(hooks, cells.length);
-  const groups: CellGroup[] = codedGroups(request.corpora).map((data) => ({
-    data,
-    cells: cells.filter((cell) => data.some(({ key }) => key === cell.dataKey)),
-  }));
+  const groups: CellGroup[] = codedGroups(request.corpora)
+    .map((data) => ({
+      data,
+      cells: cells.filter((cell) => data.some(({ key }) => key === cell.dataKey)),
+    }))
+    .filter((group) => group.cells.length > 0);
   const coded: CodedGroup[] = [];
   let timed: RunTimes;
   try {
     const ages = request.ageing === true;
-    const running = groups.map((group) => codeGroup(group, ages, executor, board));
+    const running = groups.map((group) => codeGroup(group, ages, executor, board, request.damage));
     coded.push(...(await Promise.all(running)));
     timed = await timeCells(coded, request.corpora, request.timing, executor, board);
   } catch (error) {
@@ -131,6 +137,7 @@ export async function runAll(
         tables: [...request.policies],
         resets: [...request.resets],
         ...(request.lossRate === undefined ? {} : { loss_rate: request.lossRate }),
+        ...(request.damage === undefined ? {} : { damage: request.damage }),
         ...(request.billStepBytes === undefined ? {} : { bill_step_bytes: request.billStepBytes }),
         ...(request.device === undefined ? {} : { product: { device: request.device } }),
         ...request.decision,
@@ -155,7 +162,7 @@ function cellResultsOf(
 ): { cellRecords: CellRecord[]; messages: Map<string, MessagePairs> } {
   const dataOf = new Map(request.corpora.map((corpus) => [corpus.key, corpus]));
   const messages = new Map<string, MessagePairs>();
-  const cellRecords = coded.flatMap(({ results, corpus, floors }) =>
+  const cellRecords = coded.flatMap(({ results, corpus, floors, damage }) =>
     results.map((coded) => {
       const result = failures.get(coded.cell.id) ?? coded;
       if (!('failure' in result)) {
@@ -165,7 +172,8 @@ function cellResultsOf(
         });
       }
       const data = dataOf.get(result.cell.dataKey)!;
-      return cellRecordOf(result, data, floors, times.get(result.cell.id), request);
+      const record = cellRecordOf(result, data, floors, times.get(result.cell.id), request);
+      return record.verified ? { ...record, ...damageRecordOf(damage.get(record.id)) } : record;
     }),
   );
   return { cellRecords, messages };

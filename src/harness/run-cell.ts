@@ -186,7 +186,11 @@ export async function runCell(
     // One member for all files: priced over the whole test part, whose contexts differ from the cell's own only in the
     // first k symbols of each file.
     await pause('price');
-    const whole = guarded(() => coder.price!(corpus.test, units[0].setup));
+    const whole = guarded(() => {
+      // Tables that were fitted to one unit need not know the symbols of another.
+      const setup = cell.policy === 'sent' ? setupOf(cell, corpus, corpus.test) : units[0].setup;
+      return coder.price!(corpus.test, setup);
+    });
     if ('failure' in whole) return whole;
     fitBits = whole.fit?.bits;
     fitOf = whole.fit?.of;

@@ -2,11 +2,13 @@ import { type Ageing, ageingRecordOf } from './ageing.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import { CorpusFloors } from './corpus-floors.ts';
+import type { DamagePlan } from './damage-experiment.ts';
 import type { Control, Executor } from './executor.ts';
 import { FloorPieces } from './floor-pieces.ts';
 import { Interrupted } from './pause.ts';
 import type { RunBoard } from './run-board.ts';
 import type { CellBits, CellFailure } from './run-cell.ts';
+import { type DamageResults, damageResults } from './run-damage.ts';
 import type { RunRecord } from './run-record.ts';
 import { isPlain } from './variation.ts';
 
@@ -23,6 +25,8 @@ export interface CodedGroup {
   readonly results: readonly (CellBits | CellFailure)[];
   readonly floors: CorpusFloors;
   readonly ageing?: NonNullable<RunRecord['ageing']>[number];
+  /** By cell id, where it was asked for. */
+  readonly damage: DamageResults;
   /** Interrupted: cells, or coders run for the floor alone, are missing. */
   readonly partial: boolean;
 }
@@ -42,13 +46,15 @@ async function unlessInterrupted<T>(work: Promise<T>): Promise<T | undefined> {
 
 /**
  * Codes the cells of a group, wherever there is room for them, then sets the floor of their data.
- * @param ages  say how shipped tables age
+ * @param ages        say how shipped tables age
+ * @param damagePlan  damage to simulate besides
  */
 export async function codeGroup(
   { data, cells }: CellGroup,
   ages: boolean,
   executor: Executor,
   board: RunBoard,
+  damagePlan?: DamagePlan,
 ): Promise<CodedGroup> {
   const [corpus] = data;
   const dataOf = new Map(data.map((one) => [one.key, one]));
@@ -81,6 +87,10 @@ export async function codeGroup(
     await executor.floorPieces(corpus, options, pieces, UNSTOPPED);
   }
   await floors.buildForCells(results, whole, UNSTOPPED.pause);
+  const damage: DamageResults =
+    damagePlan === undefined || !whole
+      ? new Map()
+      : await damageResults(results, dataOf, damagePlan, executor, board);
   const shipped = ages && whole && corpus.vary === undefined ? bestShipped(results) : undefined;
   const ageing = shipped && (await ageingOf(shipped, corpus, executor, board));
   return {
@@ -88,7 +98,8 @@ export async function codeGroup(
     results,
     floors,
     ...(ageing === undefined ? {} : { ageing: ageingRecordOf(corpus.name, ageing) }),
-    partial: !whole,
+    damage,
+    partial: !whole || [...damage.values()].some((one) => one === undefined),
   };
 }
 

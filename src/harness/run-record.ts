@@ -1,6 +1,7 @@
 import { z } from 'zod';
 import { ACCOUNT_LINES } from '../account/bit-account.ts';
-import { costSchema, limitsSchema } from '../corpus/plan-schema.ts';
+import { costSchema, damageSchema, limitsSchema } from '../corpus/plan-schema.ts';
+import { cellDamageSchema } from './damage-schema.ts';
 import { entropySchema } from './entropy-schema.ts';
 
 /**
@@ -222,6 +223,11 @@ const cell = z.strictObject({
   table_build: pacedTime
     .optional()
     .describe('making the tables: from the train part, or what is coded where they are sent'),
+  damage: z
+    .array(cellDamageSchema)
+    .optional()
+    .describe('simulated damage to the coded messages, where the plan asks: no certification'),
+  damage_failure: z.string().optional().describe('why damage could not be simulated'),
   failure: z.string().optional(),
 });
 
@@ -297,6 +303,7 @@ export const runRecordSchema = z.strictObject({
     resets: z.array(z.string()),
     loss_rate: z.number().optional(),
     bill_step_bytes: z.number().optional(),
+    damage: damageSchema.optional(),
     memory_bytes: z.number().optional().describe('what the process was allowed to hold'),
     limits: limitsSchema.optional(),
     cost: costSchema.optional(),

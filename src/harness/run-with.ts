@@ -9,6 +9,18 @@ import { shareCorpora } from './shared-corpus.ts';
 import { ThisThread } from './this-thread.ts';
 import { WorkerPool, workerEntry } from './worker-pool.ts';
 
+/** Below so many symbols workers take longer to start than they save. */
+const QUICK_SYMBOLS = 2 ** 18;
+
+/** Whether a request is done on this thread before workers would have started. */
+export function isQuick({ corpora }: RunRequest): boolean {
+  const symbols = corpora.reduce(
+    (sum, { train, test }) => sum + test.symbols.length + (train?.symbols.length ?? 0),
+    0,
+  );
+  return symbols < QUICK_SYMBOLS;
+}
+
 /** Where and how a run is done. */
 export interface RunManner {
   /** Cells coded at a time; as many as suit the machine when absent. */
@@ -39,8 +51,8 @@ export async function runWith(
   hooks: RunHooks = {},
   manner: RunManner = {},
 ): Promise<MannerResult> {
-  const shared = { ...request, corpora: shareCorpora(request.corpora) };
   const { modules = [] } = manner;
+  const shared = { ...request, corpora: shareCorpora(request.corpora) };
   const workers = executorFor(shared, manner);
   const folder = manner.cache === false ? undefined : (manner.cache ?? cacheFolder());
   const store = folder === undefined ? undefined : new CacheStore(folder);

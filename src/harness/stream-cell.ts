@@ -2,7 +2,7 @@ import type { Candidate } from '../coders/candidate.ts';
 import type { Coded, FitClass, Setup, Tables } from '../coders/contract.ts';
 import type { PiecesPrice } from '../coders/in-pieces.ts';
 import { decoderSetup } from '../coders/verify.ts';
-import { BitassayError, BugError, InputError } from '../errors/errors.ts';
+import { BitassayError, BugError, InputError, LimitError } from '../errors/errors.ts';
 import type { SymbolChunk } from '../symbols/sequence.ts';
 import { type Cell, unitResetOf } from './cells.ts';
 import { messagesOfUnits } from './corpus-data.ts';
@@ -78,7 +78,8 @@ export async function runStreamedCell(
     return await new StreamedRun(cell, data, options, pause).run();
   } catch (error) {
     if (!(error instanceof BitassayError)) throw error;
-    return { cell, failure: `${error.message}${placeOf(error)}` };
+    const advice = error instanceof LimitError ? ' Or allow more memory.' : '';
+    return { cell, failure: `${error.message}${placeOf(error)}${advice}` };
   }
 }
 

@@ -69,6 +69,16 @@ export async function streamedRequestOf(
       advice: 'Allow more memory, take a sample, or leave vary out.',
     });
   }
+  if (plan.damage !== undefined) {
+    throw new InputError('no damage is simulated on data that are read in pieces', {
+      file: plan.file,
+      line: plan.lineOf('damage'),
+      key: 'damage',
+      expected: `data that the memory holds, or no damage`,
+      got: specs.map(({ name }) => name).join(', '),
+      advice: 'Allow more memory, take a sample, or leave damage out.',
+    });
+  }
   const candidates = candidatesOf(plan);
   const rule = splitRuleOf(plan, candidates);
   return boundedRequest({

@@ -3,11 +3,14 @@ import { type Ageing, ageingOf } from './ageing.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import { CorpusFloors, type FloorOptions } from './corpus-floors.ts';
+import { damageCell } from './damage-cell.ts';
+import type { DamagePlan } from './damage-experiment.ts';
+import type { CellDamage } from './damage-schema.ts';
 import type { Control, Executor } from './executor.ts';
 import type { FloorPieces } from './floor-pieces.ts';
 import { Lanes } from './lanes.ts';
 import { Interrupted } from './pause.ts';
-import { type CellBits, type CellFailure, runCell } from './run-cell.ts';
+import { type CellBits, type CellFailure, placeOf, runCell } from './run-cell.ts';
 import { type CellTimes, type TimingOptions, timeCell } from './time-cell.ts';
 
 /**
@@ -63,6 +66,22 @@ export class ThisThread implements Executor {
     return this.#next(control, async () => {
       await control.pause();
       return ageingOf(cell, corpus, messageEnds);
+    });
+  }
+
+  damage(
+    cell: Cell,
+    corpus: CorpusData,
+    plan: DamagePlan,
+    control: Control,
+  ): Promise<readonly CellDamage[] | CellFailure> {
+    return this.#next(control, async () => {
+      try {
+        return await damageCell(cell, corpus, plan, control.pause);
+      } catch (error) {
+        if (!(error instanceof BitassayError)) throw error;
+        return { cell, failure: `${error.message}${placeOf(error)}` };
+      }
     });
   }
 

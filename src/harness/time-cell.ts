@@ -3,11 +3,11 @@ import { median, quantileOfSorted } from '../statistics/quantiles.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import { setupOf } from './run-cell.ts';
-import type { CellRecord } from './run-record.ts';
+import { Pacer } from './time-pacer.ts';
 import { leadingPart } from './time-part.ts';
 import { type Round, type RoundRule, timeRounds } from './time-rounds.ts';
 import { type Clock, type TimedTask, takeSample, threadClock } from './time-sampler.ts';
-import { type CellWork, cellWork, type EndTasks, Pacer } from './time-work.ts';
+import { type CellWork, cellWork, type EndTasks } from './time-work.ts';
 
 /** How a plan asks for times. Plain data, so that it can be handed to another thread. */
 export interface TimingOptions {
@@ -233,34 +233,4 @@ function buildTime(
   };
   const round = timeRounds(pacer, build, [], rule, clock);
   return pacedTime(round.candidate, round, symbolCount, rule.seed);
-}
-
-/** What a run record keeps of the times of a cell. */
-export function timesRecordOf(
-  times: CellTimes,
-): Required<Pick<CellRecord, 'encode' | 'decode' | 'timed'>> & Pick<CellRecord, 'table_build'> {
-  const { pacer, symbolCount, messageCount, encode, decode, buildTables } = times;
-  return {
-    timed: { pacer, symbol_count: symbolCount, message_count: messageCount },
-    encode: endRecord(encode),
-    decode: endRecord(decode),
-    ...(buildTables === undefined ? {} : { table_build: pacedRecord(buildTables) }),
-  };
-}
-
-function endRecord(times: EndTimes): NonNullable<CellRecord['encode']> {
-  const { setUp, perMessage, pacerSeconds, seconds, unsteady, ...figures } = times;
-  return {
-    ...figures,
-    seconds: [...seconds],
-    pacer_seconds: [...pacerSeconds],
-    ...(unsteady ? { unsteady } : {}),
-    ...(setUp === undefined ? {} : { set_up: pacedRecord(setUp) }),
-    ...(perMessage === undefined ? {} : { per_message: pacedRecord(perMessage) }),
-  };
-}
-
-function pacedRecord(time: PacedTime): NonNullable<CellRecord['table_build']> {
-  const { seconds, pacerSymbols, low, high } = time;
-  return { seconds, pacer_symbols: pacerSymbols, low, high };
 }

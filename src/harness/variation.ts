@@ -43,6 +43,22 @@ export function codedKeyOf(corpus: string, variation: Variation): string {
   return dataKeyOf(corpus, rest);
 }
 
+/** The reverse of {@link varyRecord}. */
+export function variationOf(vary: NonNullable<CellRecord['vary']>): Variation {
+  const { align, message_symbols, train_share, fold } = vary;
+  return {
+    ...(align === undefined ? {} : { align }),
+    ...(message_symbols === undefined ? {} : { messageSymbols: message_symbols }),
+    ...(train_share === undefined ? {} : { trainShare: train_share }),
+    ...(fold === undefined ? {} : { fold }),
+  };
+}
+
+/** Key of the data that a cell of a record coded. */
+export function dataKeyOfCell({ corpus, vary = {} }: Pick<CellRecord, 'corpus' | 'vary'>): string {
+  return dataKeyOf(corpus, variationOf(vary));
+}
+
 /** As a run record says it; undefined where nothing is varied. */
 export function varyRecord(variation: Variation): CellRecord['vary'] {
   const { align, messageSymbols, trainShare, fold } = variation;

@@ -5,6 +5,8 @@ import type { Ageing } from './ageing.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import type { FloorOptions } from './corpus-floors.ts';
+import type { DamagePlan } from './damage-experiment.ts';
+import type { CellDamage } from './damage-schema.ts';
 import type { CellBits, CellStep } from './run-cell.ts';
 import type { CellTimes, TimingOptions } from './time-cell.ts';
 
@@ -41,7 +43,8 @@ export type Job =
       readonly options: FloorOptions;
       readonly known: ReadonlyMap<string, unknown>;
     }
-  | { readonly kind: 'ageing'; readonly cell: PlainCell; readonly messageEnds: Uint32Array };
+  | { readonly kind: 'ageing'; readonly cell: PlainCell; readonly messageEnds: Uint32Array }
+  | { readonly kind: 'damage'; readonly cell: PlainCell; readonly plan: DamagePlan };
 
 /** A cell's bits without what the run has anyway. */
 export type PlainBits = Omit<CellBits, 'cell' | 'units' | 'messageEnds'> & {
@@ -55,6 +58,7 @@ export interface JobResults {
   readonly times: CellTimes | undefined;
   readonly floors: ReadonlyMap<string, unknown>;
   readonly ageing: Ageing | undefined;
+  readonly damage: readonly CellDamage[];
 }
 
 export type Answer<K extends Job['kind']> =

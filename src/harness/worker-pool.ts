@@ -7,6 +7,8 @@ import { type CellBudget, USUAL_BUDGET, usualLanes } from './budget.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import type { FloorOptions } from './corpus-floors.ts';
+import type { DamagePlan } from './damage-experiment.ts';
+import type { CellDamage } from './damage-schema.ts';
 import type { Control, Executor } from './executor.ts';
 import type { FloorPieces } from './floor-pieces.ts';
 import { JobWatch } from './job-watch.ts';
@@ -167,6 +169,21 @@ export class WorkerPool implements Executor {
     const answer = await this.#lanes.run(() => this.#do<'ageing'>(job, seconds, control));
     // A figure beside the cells: where it meets a bound its lines are left out.
     return answer === 'suspect' || 'failure' in answer ? undefined : answer.result;
+  }
+
+  async damage(
+    cell: Cell,
+    _corpus: CorpusData,
+    plan: DamagePlan,
+    control: Control,
+  ): Promise<readonly CellDamage[] | CellFailure> {
+    const job: Job = { kind: 'damage', cell: plainCell(cell), plan };
+    const seconds = FIGURE_BUDGETS * this.#budget.seconds;
+    const answer = await this.#lanes.run(() => this.#do<'damage'>(job, seconds, control));
+    if (answer === 'suspect') return { cell, failure: memoryReason(this.#budget.memoryBytes) };
+    if ('failure' in answer) return { cell, failure: answer.failure };
+    if (answer.interrupted) throw new Interrupted();
+    return answer.result;
   }
 
   async close(): Promise<void> {

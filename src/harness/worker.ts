@@ -1,13 +1,14 @@
 import { workerData } from 'node:worker_threads';
 import type { CoderEntry } from '../coders/contract.ts';
-import { BugError } from '../errors/errors.ts';
+import { BitassayError, BugError } from '../errors/errors.ts';
 import { ageingOf } from './ageing.ts';
 import type { CorpusData } from './corpus-data.ts';
 import { CorpusFloors } from './corpus-floors.ts';
+import { damageCell } from './damage-cell.ts';
 import { FloorPieces } from './floor-pieces.ts';
 import { MemoryGuard } from './memory-guard.ts';
 import { Interrupted } from './pause.ts';
-import { runCell } from './run-cell.ts';
+import { placeOf, runCell } from './run-cell.ts';
 import { timeCell } from './time-cell.ts';
 import {
   type Answer,
@@ -58,6 +59,19 @@ async function resultOf(job: Job, board: JobBoard): Promise<Answer<Job['kind']>>
   const corpus = corpusOf(cell.dataKey);
   if (job.kind === 'times') return { result: timeCell(cell, corpus, job.options) };
   if (job.kind === 'ageing') return { result: ageingOf(cell, corpus, job.messageEnds) };
+  if (job.kind === 'damage') {
+    try {
+      const result = await damageCell(cell, corpus, job.plan, async () => {
+        guard.check();
+        if (board.isStopped) throw new Interrupted();
+      });
+      return { result };
+    } catch (error) {
+      if (error instanceof Interrupted) return { result: [], interrupted: true };
+      if (!(error instanceof BitassayError)) throw error;
+      return { failure: `${error.message}${placeOf(error)}` };
+    }
+  }
   const bits = await runCell(cell, corpus, async (step) => {
     board.enter(step);
     guard.check();

@@ -15,7 +15,8 @@ export async function writeWhole(path: string, content: Uint8Array | string): Pr
     await writeFile(beside, content);
     await rename(beside, path);
   } catch (error) {
-    await rm(beside, { force: true });
+    // Where the folder is none, nothing lies there to be removed.
+    await rm(beside, { force: true }).catch(() => {});
     throw explainFileError(error, path);
   }
 }

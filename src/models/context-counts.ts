@@ -66,7 +66,9 @@ export function countContexts(sequence: SymbolSequence, options: CountingOptions
   const { symbols } = sequence;
   const { upto, contexts, progress } = options;
   checkRange('the highest order', upto, 0, HIGHEST_COUNTED_ORDER);
-  const ends = contexts === 'message' ? sequence.messageEnds
+  const ends =
+    contexts === 'message'
+      ? sequence.messageEnds
       : (options.breaks ?? Uint32Array.of(symbols.length));
   const ranked = rankSymbols(symbols);
   const { distinct } = ranked;

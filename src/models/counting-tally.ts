@@ -31,25 +31,49 @@ export class OperationTally {
   /** Conditions evaluated on data, tables or the coding interval, those of loops included. */
   branches = 0;
   #symbolCount = 0;
-  readonly #total = none();
-  readonly #worst = none();
+  // Totals and worst by kind, one field each: looked up by name they would take most of a counting pass.
+  #multiplies = 0;
+  #divides = 0;
+  #tableReads = 0;
+  #branches = 0;
+  #worstMultiplies = 0;
+  #worstDivides = 0;
+  #worstTableReads = 0;
+  #worstBranches = 0;
 
   /** Ends a symbol. */
   close(): void {
     this.#symbolCount++;
-    for (const kind of OPERATIONS) {
-      this.#total[kind] += this[kind];
-      if (this[kind] > this.#worst[kind]) this.#worst[kind] = this[kind];
-      this[kind] = 0;
-    }
+    this.#multiplies += this.multiplies;
+    this.#divides += this.divides;
+    this.#tableReads += this.tableReads;
+    this.#branches += this.branches;
+    if (this.multiplies > this.#worstMultiplies) this.#worstMultiplies = this.multiplies;
+    if (this.divides > this.#worstDivides) this.#worstDivides = this.divides;
+    if (this.tableReads > this.#worstTableReads) this.#worstTableReads = this.tableReads;
+    if (this.branches > this.#worstBranches) this.#worstBranches = this.branches;
+    this.multiplies = 0;
+    this.divides = 0;
+    this.tableReads = 0;
+    this.branches = 0;
   }
 
   /** The counts of all symbols closed so far. */
   counts(): OperationCounts {
     return {
       symbolCount: this.#symbolCount,
-      total: { ...this.#total },
-      worst: { ...this.#worst },
+      total: {
+        multiplies: this.#multiplies,
+        divides: this.#divides,
+        tableReads: this.#tableReads,
+        branches: this.#branches,
+      },
+      worst: {
+        multiplies: this.#worstMultiplies,
+        divides: this.#worstDivides,
+        tableReads: this.#worstTableReads,
+        branches: this.#worstBranches,
+      },
     };
   }
 }

@@ -3,10 +3,10 @@ import type { TokenReader, TokenWriter } from './field-tables.ts';
 import type { IntervalSink, IntervalSource } from './interval.ts';
 
 /** What a count grows by; a token never met weighs 1. */
-const STEP = 16;
+export const STEP = 16;
 
 /** A table is halved when its total passes this. */
-const LARGEST_TOTAL = 2 ** 15;
+export const LARGEST_TOTAL = 2 ** 15;
 
 /** What a journal remembers at least. */
 const LEAST_JOURNAL = 1024;

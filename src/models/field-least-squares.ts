@@ -13,8 +13,10 @@ const LARGEST_WEIGHT = 2 ** 15 - 1;
 /** What is added to the squares is so small a part of them. */
 const RIDGE = 1024;
 
-/** Fits after the first, and the error below which a row counts no more. */
+/** Fits after the first. */
 const ROUNDS = 3;
+
+/** The error below which a row counts no more. */
 const LEAST_ERROR = 2;
 
 /** A class is fitted as if it held besides so many records spread as in all classes. */
@@ -46,6 +48,8 @@ export class NormalEquations {
     this.#products = new Float64Array((classCount + 1) * size * size);
     this.#withChanges = new Float64Array((classCount + 1) * size);
     this.#counts = new Float64Array(classCount + 1);
+    const products = this.#products;
+    const withChanges = this.#withChanges;
     const row = new Float64Array(size);
     for (let r = 0; r < changes.length; r++) {
       for (let a = 0; a < size; a++) row[a] = columns[a][r];
@@ -55,8 +59,8 @@ export class NormalEquations {
       for (let a = 0; a < size; a++) {
         const at = (from * size + a) * size;
         const value = times * row[a];
-        this.#withChanges[from * size + a] += value * changes[r];
-        for (let b = 0; b <= a; b++) this.#products[at + b] += value * row[b];
+        withChanges[from * size + a] += value * changes[r];
+        for (let b = 0; b <= a; b++) products[at + b] += value * row[b];
       }
     }
     this.#addAll();

@@ -7,7 +7,7 @@ import type { IntervalSink, IntervalSource } from './interval.ts';
  * Extra bits go in pieces of at most so many: small totals cost a range of 32 bits nothing to speak
  * of.
  */
-const PIECE_BITS = 12;
+export const PIECE_BITS = 12;
 
 /**
  * Codes the record at `bytes[at …]`: one step of a message, after which the predictor stands at the

@@ -22,7 +22,7 @@ const LINEAR_SHARE = 128;
 const FIRST_SHARE = 16;
 
 /** `linear` is tried with so many of the contexts that did best without it. */
-const LINEAR_CONTEXTS = 5;
+const LINEAR_CONTEXTS = 3;
 
 /** Weights are fitted, while choosing, to at most so many of the records. */
 const LINEAR_RECORDS = 8192;

@@ -18,13 +18,6 @@ export function highestStreamedOrder(distinct: number): number {
   return order;
 }
 
-/** Bytes of the tables of orders 0 … `upto`. */
-export function streamedCountsBytes(distinct: number, upto: number): number {
-  let cells = 0;
-  for (let order = 0; order <= upto; order++) cells += distinct ** (order + 1);
-  return 4 * cells;
-}
-
 export interface StreamedCountsOptions {
   readonly alphabetSize: number;
   /** Which symbols there are: those whose entry is not 0. */

@@ -19,11 +19,24 @@ const MARKS = 'ABCD';
 
 const plusMinusOf = (ascii: boolean): string => (ascii ? '+-' : '±');
 
-/** The lines of least rate; where messages grow, the best adaptive one and its shipped tables come first. */
+/**
+ * The lines of least rate. Where messages grow, the best adaptive one and its shipped tables come first; over orders the best
+ * and another form of the same coder with the same tables, as pure and back-off are.
+ */
 function chosenLines(curve: Curve): CurveLine[] {
-  const [pair] = curve.over === 'message_symbols' ? adaptivePairs(curve) : [];
-  const first = pair === undefined ? [] : [pair.adaptive, pair.shipped];
+  const first = firstLines(curve);
   return [...first, ...curve.lines.filter((line) => !first.includes(line))].slice(0, MOST_LINES);
+}
+
+function firstLines(curve: Curve): CurveLine[] {
+  if (curve.over === 'message_symbols') {
+    const [pair] = adaptivePairs(curve);
+    return pair === undefined ? [] : [pair.adaptive, pair.shipped];
+  }
+  if (curve.over !== 'order') return [];
+  const [best, ...others] = curve.lines;
+  const form = others.find(({ tables, reset }) => tables === best.tables && reset === best.reset);
+  return form === undefined ? [] : [best, form];
 }
 
 interface Drawing {

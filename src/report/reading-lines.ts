@@ -13,7 +13,7 @@ export function readingLines(
     const memory =
       plan?.memory_bytes === undefined ? '' : ` to stay within ${sizeText(plan.memory_bytes)}`;
     lines.push(
-      `Read in pieces${memory}: entropies of orders 0 to 2 at most, and beside them no coder was run for a ceiling; no repeats between train and test were looked for, no speed measured, no cost on a device.`,
+      `Read in pieces${memory}: the floor rests on orders 0 to 2 and on the coders listed, so that it may lie above what all orders would say; no repeats between train and test were looked for, no speed measured, no cost on a device.`,
     );
   }
   return lines.flatMap((line) => wrapText(line, columns - 1, ' '));

@@ -71,8 +71,9 @@ export class PrefixDecoder {
     const outView = this.#outView;
     const outOffset = out.byteOffset;
     const lastLoad = reader.bytes.length - 5;
-    let bit = reader.position % 8;
-    let at = (reader.position - bit) / 8;
+    // Integers of 32 bits in the eyes of the engine, also where the position is larger.
+    let bit = reader.position & 7;
+    let at = ((reader.position - bit) / 8) >>> 0;
     let filled = from;
 
     // Two look-ups take at most 24 of the 25 bits loaded and give at most 6 symbols; the second
@@ -123,8 +124,9 @@ export class PrefixDecoder {
     const shift = 32 - tableBits;
     const view = this.#view;
     const lastLoad = reader.bytes.length - 5;
-    let bit = reader.position % 8;
-    let at = (reader.position - bit) / 8;
+    // Integers of 32 bits in the eyes of the engine, also where the position is larger.
+    let bit = reader.position & 7;
+    let at = ((reader.position - bit) / 8) >>> 0;
     let filled = from;
     while (filled < to && at <= lastLoad) {
       const entry = table[(view.getInt32(at) << bit) >>> shift];

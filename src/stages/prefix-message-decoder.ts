@@ -83,8 +83,8 @@ export class PrefixMessageDecoder {
     // The next message begins at bit `bit` of byte `at`; both are moved on before it is accepted.
     let index = this.index;
     let from = this.filled;
-    let bit = this.positionBits % 8;
-    let at = (this.positionBits - bit) / 8;
+    let bit = this.positionBits & 7;
+    let at = ((this.positionBits - bit) / 8) >>> 0;
     // The count before: messages of one size need not take theirs apart.
     let lastBits = 1;
     let lastWord = -1;
@@ -155,15 +155,15 @@ export class PrefixMessageDecoder {
         bit &= 7;
       }
       if (!known) break;
-      if (filled > to) {
-        bit -= byteLengths[out[to]];
-        if (filled > to + 1) bit -= byteLengths[out[to + 1]];
-        at += bit >> 3;
-        bit &= 7;
-      }
+      // Masks are −1 where a symbol was one too many.
+      bit -=
+        (byteLengths[out[to]] & ((to - filled) >> 31)) +
+        (byteLengths[out[to + 1]] & ((to + 1 - filled) >> 31));
+      at += bit >> 3;
+      bit &= 7;
 
-      const over = align <= 8 ? bit & (align - 1) : (at % alignBytes) * 8 + bit;
-      const padding = over === 0 ? 0 : align - over;
+      const over = align <= 8 ? bit : (at % alignBytes) * 8 + bit;
+      const padding = align <= 8 ? -bit & (align - 1) : over === 0 ? 0 : align - over;
       if (((view.getInt32(at) << bit) >>> 1) >>> (31 - padding) !== 0) break;
       bit += padding;
       at += bit >>> 3;

@@ -112,7 +112,7 @@ export function fieldChoiceText({ transform, inputs, context, first }: FieldChoi
 }
 
 /** Names of other fields that a choice asks. */
-export function namesAskedBy({ inputs, context, first }: FieldChoice): readonly string[] {
+function namesAskedBy({ inputs, context, first }: FieldChoice): readonly string[] {
   return [
     ...(inputs ?? []),
     ...('name' in context ? [context.name] : []),

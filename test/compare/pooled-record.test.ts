@@ -1,4 +1,5 @@
 import { describe, expect, it } from 'vitest';
+import { pooledLoadedRun } from '../../src/compare/pooled-messages.ts';
 import { plainRun, pooledRun, variationOfCell } from '../../src/compare/pooled-record.ts';
 import { runRecordSchema } from '../../src/harness/run-record.ts';
 import { type Made, madeCell, madeEntropy, madeRecord } from './curve-records.ts';
@@ -92,5 +93,50 @@ describe('a plain run', () => {
     const plain = plainRun(record).record;
     expect(plain.cells.map(({ rate }) => rate)).toEqual([5]);
     expect(plain.entropy.map(({ data }) => data)).toEqual([undefined]);
+  });
+});
+
+describe('a loaded run with folds', () => {
+  const record = madeRecord([
+    cell(1, 4, { more: { message_count: 2 } }),
+    cell(2, 5, { more: { message_count: 1 } }),
+  ]);
+  const messages = new Map([
+    [
+      'a/huffman@shipped/message+fold=2',
+      { bits: Float64Array.of(24), symbols: Float64Array.of(5) },
+    ],
+    [
+      'a/huffman@shipped/message+fold=1',
+      { bits: Float64Array.of(8, 16), symbols: Float64Array.of(2, 3) },
+    ],
+  ]);
+
+  it('has the messages of all folds, as they lie in the corpus', () => {
+    const pooled = pooledLoadedRun({ record, messages });
+    expect([...pooled.messages]).toEqual([
+      [
+        'a/huffman@shipped/message',
+        { bits: Float64Array.of(8, 16, 24), symbols: Float64Array.of(2, 3, 5) },
+      ],
+    ]);
+    expect(pooled.record.cells[0].message_bytes).toMatchObject({ mean: 2, p50: 2, max: 3 });
+  });
+
+  it('has no sizes of messages where they are of units', () => {
+    const units = (one: (typeof record.cells)[number]) => ({
+      ...one,
+      unit_count: 3,
+      units_per_message: { mean: 3, min: 3 },
+    });
+    const filled = { ...record, cells: record.cells.map(units) };
+    const pooled = pooledLoadedRun({ record: filled, messages });
+    expect(pooled.record.cells[0].message_bytes).toBeUndefined();
+  });
+
+  it('is itself without folds', () => {
+    const plain = madeRecord([madeCell({ candidate: 'huffman', rate: 4 })]);
+    const run = { record: plain, messages: new Map() };
+    expect(pooledLoadedRun(run)).toEqual(run);
   });
 });

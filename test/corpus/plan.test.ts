@@ -402,8 +402,6 @@ describe('what is not yet built', () => {
     ],
     ['cost: {bill_step_bytes: 192, devices: 14000}', 'cost'],
     ['budget: {cell_seconds: 120, cell_memory: 2GB}', 'budget'],
-    ['sample: {every: 12, block: 1MB}', 'sample'],
-    ['memory: 512MB', 'memory'],
     ['damage: {flip: 0.0001, seed: 7}', 'damage'],
     ['gate: {allow: {total: 0, each_file: 0.5%}}', 'gate'],
     ['check: crc32', 'check'],
@@ -443,9 +441,52 @@ describe('what is not yet built', () => {
   });
 
   test('beside a real fault it is an InputError, and both are named', () => {
-    const error = refusal(`${SHORT}align: 3\nmemory: 512MB\n`);
+    const error = refusal(`${SHORT}align: 3\ncheck: crc32\n`);
     expect(error).not.toBeInstanceOf(NotYetError);
     expect(faultLines(error)).toHaveLength(2);
+  });
+});
+
+describe('memory and sample', () => {
+  test('are read', () => {
+    const plan = parsePlan(`${SHORT}memory: 512MB\nsample: {every: 12, block: 1MB}\n`, 'p.yaml');
+    expect(plan.memoryBytes).toBe(512e6);
+    expect(plan.corpora[0].sample).toEqual({ kind: 'every', every: 12, blockBytes: 1e6 });
+    const drawn = parsePlan(`${SHORT}sample: {reservoir: 64MB, block: 2MiB, seed: 7}\n`, 'p.yaml');
+    expect(drawn.corpora[0].sample).toEqual({
+      kind: 'reservoir',
+      bytes: 64e6,
+      blockBytes: 2 ** 21,
+      seed: 7,
+    });
+    expect(parsePlan(SHORT, 'p.yaml').memoryBytes).toBeUndefined();
+  });
+
+  test.each([
+    ['memory: 12 bananas', 'memory', 'a size such as 512MB'],
+    ['memory: 512', 'memory', 'a size such as 512MB'],
+    ['memory: 100MB', 'memory', 'at least 256MB'],
+    ['sample: {every: 0}', 'sample.every', 'a whole number from 1'],
+    ['sample: {block: 1MB}', 'sample', 'every or reservoir'],
+    ['sample: {every: 2, reservoir: 1MB}', 'sample', 'not both'],
+    ['sample: {every: 2, block: 1B}', 'sample.block', '256 to'],
+    ['sample: {every: 2, seed: 3}', 'sample.seed', 'reservoir beside it'],
+    ['sample: {reservoir: 1kB}', 'sample.reservoir', '1000000 bytes or more'],
+  ])('%s is refused with its line', (line, key, expected) => {
+    const error = refusal(`${SHORT}${line}\n`);
+    expect(error).not.toBeInstanceOf(NotYetError);
+    expect(faultLines(error)).toEqual([expect.stringMatching(/^line 5, /)]);
+    expect(error.where).toMatchObject({ key, line: 5 });
+    expect(error.message).toContain(expected);
+  });
+
+  test('a sample is held against how the corpora are read', () => {
+    const error = refusal(
+      'plan: 1\ncorpora:\n  e: {files: x, symbols: bytes, messages: "fill=192,unit=24"}\ncandidates: [fixed]\nsample: {every: 2}\n',
+    );
+    expect(faultLines(error)).toEqual([
+      expect.stringMatching(/^line 3, corpora.e: a sample does not go with messages: fill/),
+    ]);
   });
 });
 

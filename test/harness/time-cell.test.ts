@@ -7,9 +7,10 @@ import { CorruptStreamError, InputError } from '../../src/errors/errors.ts';
 import { type Cell, listCells } from '../../src/harness/cells.ts';
 import type { CorpusData } from '../../src/harness/corpus-data.ts';
 import { runRecordSchema } from '../../src/harness/run-record.ts';
-import { timeCell, timesRecordOf } from '../../src/harness/time-cell.ts';
+import { timeCell } from '../../src/harness/time-cell.ts';
+import { checkPacer } from '../../src/harness/time-pacer.ts';
 import { leadingPart } from '../../src/harness/time-part.ts';
-import { checkPacer } from '../../src/harness/time-work.ts';
+import { timesRecordOf } from '../../src/harness/time-record.ts';
 import type { SymbolSequence } from '../../src/symbols/sequence.ts';
 
 /** Messages of unlike lengths, 48 symbols on average, in records of 24. */

@@ -260,6 +260,15 @@ describe('data of a plan that varies', () => {
   });
 });
 
+describe('a part of the cells', () => {
+  it('has the entropies of what it codes, and no others', async () => {
+    const asked = await request('tables: [shipped]\nsplit: {folds: 4}');
+    const { record } = await runAll({ ...asked, only: '+fold=3' });
+    expect(record.entropy.map((one) => one.data)).toEqual(['a+fold=3']);
+    expect(record.cells.length).toBeGreaterThan(0);
+  });
+});
+
 describe('a plan that varies what its data or candidates do not allow', () => {
   const refusal = async (more: string, candidates?: string) => {
     try {
@@ -288,5 +297,13 @@ describe('a plan that varies what its data or candidates do not allow', () => {
   ])('%s with %s is refused', async (more, candidates, key, got) => {
     const error = await refusal(more, candidates);
     expect(error.where).toMatchObject({ key, got, line: 5, file: join(folder, 'p.yaml') });
+  });
+
+  it('is refused before its data are read where it asks for more than anybody means', async () => {
+    const sizes = Array.from({ length: 30 }, (_, i) => i + 1).join(', ');
+    const error = await refusal(`split: {folds: 34}\nvary: {message_symbols: [${sizes}]}`);
+    // 31 × 34 = 1054, the plan's own size among them.
+    expect(error.message).toContain('1054 times');
+    expect(error.where).toMatchObject({ key: 'vary', line: 6 });
   });
 });

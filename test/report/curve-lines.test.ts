@@ -66,7 +66,9 @@ describe('curves on a screen', () => {
       'arith:order=1 learned overtakes its shipped tables between 100 and 1 024 symbols',
     );
     // From 0.3 to 1 are 1.74 doublings of 0.2 of 3.6 bits: 3.2 %.
-    expect(text).toContain('More training data still pay at the last step; gain of a doubling: A 3.2 %.');
+    expect(text).toContain(
+      'More training data still pay at the last step; gain of a doubling: A 3.2 %.',
+    );
     expect(text).toContain('Least: A 3.10 at order 2, the last; B 4.20 at order 1.');
     expect(text).toContain('Combinations of what the plan varies have curves of their own');
   });
@@ -89,6 +91,32 @@ describe('curves on a screen', () => {
     expect(text).toContain('2 more lines: run record.');
     expect(text).toContain('D position=4 shipped');
     expect(text).not.toContain('position=5');
+  });
+
+  it('hold the best line over orders against its other form first', () => {
+    const made = [0, 1, 2].flatMap((k) =>
+      [
+        ['', 'shipped', 3],
+        ['', 'learned', 4],
+        [',backoff=none', 'shipped', 6],
+        [',backoff=none', 'learned', 5],
+      ].map(([form, tables, rate]) =>
+        madeCell({
+          candidate: `arith:order=${k}${form}`,
+          params: { order: k },
+          tables: String(tables),
+          rate: Number(rate) - k / 8,
+        }),
+      ),
+    );
+    const lines = curveLines(curvesOf(madeRecord(made)), {
+      columns: 80,
+      ascii: false,
+      noun: 'byte',
+    });
+    expect(lines.join(' ').replace(/ +/g, ' ')).toContain(
+      'A arith shipped, B backoff=none shipped, C arith learned, D backoff=none learned',
+    );
   });
 
   it('are none where nothing is varied', () => {

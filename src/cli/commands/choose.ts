@@ -2,6 +2,7 @@ import { dirname, join } from 'node:path';
 import type { Command } from 'commander';
 import { choiceFileOf, chooseFromRun } from '../../compare/choice.ts';
 import { readMeasured, withMeasured } from '../../compare/measured.ts';
+import { pooledLoadedRun } from '../../compare/pooled-messages.ts';
 import { loadRun } from '../../compare/read-messages.ts';
 import { cellNamed, whyOf } from '../../compare/why.ts';
 import { readInputFile } from '../../corpus/read-file.ts';
@@ -26,7 +27,7 @@ async function measuredRecord(record: RunRecord, file: string | undefined): Prom
 }
 
 async function choose(run: string, options: ChooseOptions): Promise<void> {
-  const { record: loaded, messages } = await loadRun(run);
+  const { record: loaded, messages } = pooledLoadedRun(await loadRun(run));
   const record = await measuredRecord(loaded, options.measured);
   if (options.why !== undefined) {
     const [a, b, ...more] = options.why;

@@ -14,6 +14,7 @@ import { loadCorpusData } from '../../harness/load-corpus-data.ts';
 import { requestOf } from '../../harness/plan-request.ts';
 import { readRunRecord } from '../../harness/run-folder.ts';
 import type { CellRecord, RunRecord } from '../../harness/run-record.ts';
+import { dataKeyOfCell } from '../../harness/variation.ts';
 import { writeWhole } from '../../harness/write-whole.ts';
 import { countText } from '../../report/figures.ts';
 import { CommandEnd, exitCodes } from '../exit.ts';
@@ -51,6 +52,8 @@ function cellOf(record: RunRecord, text: string | undefined): CellRecord {
     (cell) =>
       cell.verified &&
       (cell.tables === 'shipped' || cell.tables === 'none') &&
+      // What the plan varies is exported only by its whole name; a fold trains on what came after its test part.
+      (cell.vary === undefined || (cell.id === text && cell.vary.fold === undefined)) &&
       whyNotExported(parseCandidate(cell.candidate)) === undefined,
   );
   const named = exportable.filter((cell) => text === undefined || cell.id.includes(text));
@@ -69,9 +72,16 @@ function cellOf(record: RunRecord, text: string | undefined): CellRecord {
   }
   const best = named.toSorted((a, b) => (a.carried_bits ?? 0) - (b.carried_bits ?? 0))[0];
   if (best !== undefined) return best;
+  const folded = record.cells.some((cell) => cell.vary?.fold !== undefined);
   throw new InputError('no cell of this run can be exported', {
     ...(text === undefined ? {} : { got: `--cell ${text}` }),
     expected: `a verified cell with shipped tables of ${exportableCoders.join(', ')}`,
+    ...(folded
+      ? {
+          advice:
+            'Folds train on what came after their test part, too. Run the plan without split.folds, and export from that.',
+        }
+      : {}),
   });
 }
 
@@ -79,7 +89,8 @@ async function subjectOfRun(run: string, options: ExportOptions): Promise<Export
   const record = await readRunRecord(run);
   const cell = cellOf(record, options.cell);
   const request = await requestOf(await readPlan(options.plan ?? planBeside(run)));
-  const corpus = request.corpora.find((c) => c.name === cell.corpus);
+  const key = dataKeyOfCell(cell);
+  const corpus = request.corpora.find((c) => c.key === key);
   const recorded = record.corpora.find((c) => c.name === cell.corpus);
   if (corpus === undefined || recorded === undefined || corpus.sha256 !== recorded.sha256) {
     throw new InputError(`the data of ${cell.corpus} are not those of the run`, {
@@ -88,7 +99,11 @@ async function subjectOfRun(run: string, options: ExportOptions): Promise<Export
       advice: 'Run the plan again, or bring back the files of the run.',
     });
   }
-  return exportSubject(parseCandidate(cell.candidate), corpus, record.plan.align);
+  return exportSubject(
+    parseCandidate(cell.candidate),
+    corpus,
+    cell.vary?.align ?? record.plan.align,
+  );
 }
 
 async function subjectOfFiles(

@@ -6,13 +6,10 @@ import { type Plan, readPlan } from '../../corpus/plan.ts';
 import { InputError } from '../../errors/errors.ts';
 import type { Cell } from '../../harness/cells.ts';
 import { estimateSeconds } from '../../harness/estimate.ts';
-import type { RunProgress } from '../../harness/pause.ts';
-import { requestOf } from '../../harness/plan-request.ts';
 import { cellsOf, type RunRequest } from '../../harness/run-all.ts';
 import { writeRunFolder } from '../../harness/run-folder.ts';
-import { runWith } from '../../harness/run-with.ts';
-import { partByMemory, streamedRequestOf } from '../../harness/stream-request.ts';
-import { joinResults, runStreamed, streamedCellsOf } from '../../harness/stream-run.ts';
+import { plannedRunOf, runPlanned } from '../../harness/run-within.ts';
+import { streamedCellsOf } from '../../harness/stream-run.ts';
 import { countText, durationText } from '../../report/figures.ts';
 import { notFilledText, runScreen } from '../../report/run-screen.ts';
 import { cacheNotes } from '../cache-notes.ts';
@@ -112,11 +109,8 @@ async function listCellsOf(
 async function runPlanFile(planFile: string, options: RunOptions): Promise<void> {
   const plan = withMemoryOptions(await readPlan(planFile), options);
   guardCandidates(plan);
-  const only = options.only === undefined ? {} : { only: options.only };
-  const { fitting, streamed } = await partByMemory(plan);
-  const request = { ...(await requestOf(fitting)), ...only };
-  const inPieces =
-    streamed.length === 0 ? undefined : { ...(await streamedRequestOf(plan, streamed)), ...only };
+  const planned = await plannedRunOf(plan, options.only);
+  const { request, inPieces } = planned;
   const others = inPieces === undefined ? [] : streamedCellsOf(inPieces).cells;
   if (options.cells) return listCellsOf(request, others, options.json === true);
   if (others.length === 0) await guardCells(request, options);
@@ -132,15 +126,13 @@ async function runPlanFile(planFile: string, options: RunOptions): Promise<void>
   const { fresh = false, workers } = options;
   // Each lane holds models of its own.
   const lanes = workers ?? (plan.memoryBytes === undefined ? undefined : 1);
-  const result = await whileInterruptible(async (interrupted) => {
-    const hooks = { progress: (state: RunProgress) => progress.show(state), interrupted };
-    const whole = await runWith(request, hooks, {
-      fresh,
-      ...(lanes === undefined ? {} : { lanes }),
-    });
-    if (inPieces === undefined || whole.record.partial) return whole;
-    return { ...whole, ...joinResults(whole, await runStreamed(inPieces, hooks)) };
-  }).finally(() => progress.stop());
+  const result = await whileInterruptible((interrupted) =>
+    runPlanned(
+      planned,
+      { progress: (state) => progress.show(state), interrupted },
+      { fresh, ...(lanes === undefined ? {} : { lanes }) },
+    ),
+  ).finally(() => progress.stop());
   for (const note of cacheNotes(result)) process.stderr.write(`bitassay: ${note}\n`);
   const folder = options.output ?? defaultFolder(planFile);
   await writeRunFolder(folder, result);

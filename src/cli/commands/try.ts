@@ -8,6 +8,7 @@ import { describeSplit, loadCorpusData } from '../../harness/load-corpus-data.ts
 import { fitsMemory } from '../../harness/memory-budget.ts';
 import type { RunProgress } from '../../harness/pause.ts';
 import { runAll } from '../../harness/run-all.ts';
+import { isQuick, runWith } from '../../harness/run-with.ts';
 import {
   boundedRequest,
   openStreamed,
@@ -94,8 +95,11 @@ async function tryFiles(files: readonly string[], options: TryOptions): Promise<
   const progress = new ProgressLine(true);
   const result = await whileInterruptible(async (interrupted) => {
     const hooks = { progress: (state: RunProgress) => progress.show(state), interrupted };
-    if (!inPieces)
-      return runAll({ ...asked, corpora: [await loadCorpusData(spec, folder, rule)] }, hooks);
+    if (!inPieces) {
+      const request = { ...asked, corpora: [await loadCorpusData(spec, folder, rule)] };
+      if (isQuick(request)) return runAll(request, hooks);
+      return runWith(request, hooks, { cache: false });
+    }
     const corpora = await openStreamed([spec], folder, rule, memory);
     return runStreamed(
       boundedRequest({
