@@ -49,13 +49,8 @@ export {
   type TrainingReturn,
   trainingReturn,
 } from './compare/curve-findings.ts';
-export {
-  type Curve,
-  type CurveEntropy,
-  type CurveLine,
-  type CurvePoint,
-  curvesOf,
-} from './compare/curves.ts';
+export type { CurveLine, CurvePoint } from './compare/curve-points.ts';
+export { type Curve, type CurveEntropy, curvesOf } from './compare/curves.ts';
 export { type PooledRun, plainRun, pooledRun } from './compare/pooled-record.ts';
 export { type LoadedRun, loadRun } from './compare/read-messages.ts';
 export { type Plan, parsePlan, readPlan } from './corpus/plan.ts';

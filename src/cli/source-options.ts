@@ -1,5 +1,6 @@
 import type { Command } from 'commander';
 import { Option } from 'commander';
+import { byteSizeText } from '../corpus/byte-size.ts';
 import type { CorpusSpec } from '../corpus/corpus.ts';
 import { type SampleRule, sampleRuleText } from '../corpus/sample-rule.ts';
 import { InputError } from '../errors/errors.ts';
@@ -47,7 +48,7 @@ export function addSourceOptions(command: Command): Command {
     )
     .option(
       '--messages <how>',
-      'whole, lines, every=N, records=K, prefix=u16be, fill=BYTES,unit=N|line',
+      'whole, lines, every=N, records=K, prefix=u16be, fill=BYTES,unit=N|line|row',
       'whole',
     )
     .addOption(
@@ -109,6 +110,6 @@ export function typedOptions(
   const rule = messages ?? (options.messages === 'whole' ? undefined : options.messages);
   if (rule !== undefined) parts.push(`--messages ${rule}`);
   if (options.sample !== undefined) parts.push(`--sample ${sampleRuleText(options.sample)}`);
-  if (options.memory !== undefined) parts.push(`--memory ${options.memory}B`);
+  if (options.memory !== undefined) parts.push(`--memory ${byteSizeText(options.memory)}`);
   return parts.length === 0 ? '' : ` ${parts.join(' ')}`;
 }

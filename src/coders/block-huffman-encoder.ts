@@ -80,6 +80,11 @@ export class BlockWords {
     return this.#n * this.#symbolBits;
   }
 
+  /** Bits that {@link writeTail} would write. */
+  tailBits(symbols: Uint32Array, count: number): number {
+    return this.#tail.bitsOf(symbols, 0, count);
+  }
+
   /** Writes the words of a message's last symbols and returns the number of bits. */
   writeTail(writer: BitWriter, symbols: Uint32Array, count: number): number {
     return count === 0 ? 0 : this.#tail.encode(writer, symbols, 0, count);

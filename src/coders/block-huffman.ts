@@ -1,6 +1,7 @@
 import { InputError } from '../errors/errors.ts';
 import { type BlockReader, blockDecoder, shippedBlockReader } from './block-huffman-decoder.ts';
 import { BlockWords, fitBlocks, messageEncoder, unitEncoder } from './block-huffman-encoder.ts';
+import { blockFiller } from './block-huffman-filler.ts';
 import { MOST_NGRAMS, ngramSpace } from './block-huffman-ngrams.ts';
 import { priceBlocks } from './block-huffman-price.ts';
 import { blockTables, blockTrainer, describeBlocks } from './block-huffman-tables.ts';
@@ -119,6 +120,9 @@ function createBlock(values: ParameterValues): Coder {
       const fit = fitBlocks(blockTables(setup, n), setup, maxBits);
       return unitEncoder(setup, n, new BlockWords(fit, n, setup.alphabetSize), fit, maxBits);
     },
+
+    filler: (setup) =>
+      setup.policy === 'shipped' ? blockFiller(setup, n, wordsOf(setup)) : undefined,
 
     decoder(setup, limits) {
       const shipped = setup.policy === 'shipped' ? readerOf(setup) : undefined;

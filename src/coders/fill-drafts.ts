@@ -1,5 +1,4 @@
 import { BitWriter } from '../bits/bit-writer.ts';
-import type { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import { RangeEncoder } from '../stages/range-encoder.ts';
 import type { RangeBits } from '../stages/range-precision.ts';
 import type { SymbolArray } from '../symbols/sequence.ts';
@@ -70,15 +69,38 @@ export class CodeStringDraft implements MessageDraft {
   }
 }
 
+/** What writes the words of a {@link WordDraft}; both ends know them, or find them from the message's own symbols. */
+export interface DraftWords {
+  encode(writer: BitWriter, symbols: SymbolArray, from: number, to: number): unknown;
+  /** Bits of the words, where counting them costs less than writing them. */
+  bitsOf?(symbols: SymbolArray, from: number, to: number): number;
+  /** Back to the state of a message's start. */
+  restart?(): void;
+  /** What is written only where the message ends, and may become shorter by more symbols. */
+  readonly tail?: DraftTail;
+}
+
+/** Words for the symbols that wait for more of their kind. */
+export interface DraftTail {
+  /** Whether none ever wait at the end of a unit. */
+  readonly isEmptyAtUnits: boolean;
+  bits(): number;
+  mark(): void;
+  restore(): void;
+  write(writer: BitWriter): void;
+}
+
 /**
- * Messages as words of a prefix code that both ends hold. Words go to their place at once, behind room for a count as long
+ * Messages as words. They go to their place at once, behind room for a count as long
  * as that of the message before; where the count is of another length, they are moved.
  */
 export class WordDraft implements MessageDraft {
   readonly writer = new BitWriter();
   readonly ledger: MessageLedger;
   readonly #setup: Setup;
-  readonly #words: PrefixEncoder;
+  readonly isSteady: boolean;
+  readonly addedBits?: (symbols: SymbolArray, from: number, to: number) => number;
+  readonly #words: DraftWords;
   readonly #start = new WriterMark();
   readonly #mark = new WriterMark();
   readonly #end = new WriterMark();
@@ -86,9 +108,13 @@ export class WordDraft implements MessageDraft {
   #contentFrom = 0;
   #moved = new Uint8Array(0);
 
-  constructor(setup: Setup, words: PrefixEncoder) {
+  constructor(setup: Setup, words: DraftWords) {
     this.#setup = setup;
     this.#words = words;
+    this.isSteady = words.tail?.isEmptyAtUnits ?? true;
+    if (words.bitsOf !== undefined) {
+      this.addedBits = (symbols, from, to) => words.bitsOf!(symbols, from, to);
+    }
     this.ledger = new MessageLedger(setup.align);
     this.#start.take(this.writer);
   }
@@ -98,32 +124,32 @@ export class WordDraft implements MessageDraft {
     this.#start.restore(writer);
     writer.writeRun(0, this.#countBits);
     this.#contentFrom = writer.position;
-    this.#mark.take(writer);
+    this.#words.restart?.();
+    this.mark();
   }
 
   take(symbols: SymbolArray, from: number, to: number): void {
     this.#words.encode(this.writer, symbols, from, to);
   }
 
-  addedBits(symbols: SymbolArray, from: number, to: number): number {
-    return this.#words.bitsOf(symbols, from, to);
-  }
-
   contentBits(): number {
-    return this.writer.position - this.#contentFrom;
+    return this.writer.position - this.#contentFrom + (this.#words.tail?.bits() ?? 0);
   }
 
   mark(): void {
     this.#mark.take(this.writer);
+    this.#words.tail?.mark();
   }
 
   restore(): void {
     this.#mark.restore(this.writer);
+    this.#words.tail?.restore();
   }
 
   end(symbolCount: number): void {
     const { ledger, writer } = this;
     const bits = this.contentBits();
+    this.#words.tail?.write(writer);
     const countBits = symbolCountBits(this.#setup, symbolCount);
     if (countBits === this.#countBits) this.#putCount(symbolCount);
     else this.#moveContent(symbolCount, bits);

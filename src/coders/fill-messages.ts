@@ -6,12 +6,14 @@ import { symbolCountBits } from './message-frame.ts';
 import type { MessageLedger } from './message-ledger.ts';
 
 /**
- * One message at a time that can be taken back to a mark; its size never falls when symbols are added. What is in front of
+ * One message at a time that can be taken back to a mark; its size never falls when symbols are added, unless it says so. What is in front of
  * its content, the count, is known only at its end.
  */
 export interface MessageDraft {
   readonly writer: BitWriter;
   readonly ledger: MessageLedger;
+  /** False: the size may fall. Absent: never. */
+  readonly isSteady?: boolean;
   /** Begins a message; one that was not ended is forgotten. */
   start(): void;
   take(symbols: SymbolArray, from: number, to: number): void;
@@ -33,7 +35,8 @@ const LEAST_TRUST = 0.2;
 /**
  * Fills messages by taking unit after unit, with a mark after each; on overflow it goes back to the mark, ends the message
  * there and begins the next with the unit that did not fit. Exact because sizes never fall. Most of a message, guessed by
- * the size of the units before, is taken at once; where that was too much, the message begins again.
+ * the size of the units before, is taken at once; where that was too much, the message begins again. Where sizes may fall,
+ * every unit is taken by itself, up to the first that does not fit.
  *
  * Cost: a plain encode, and about one unit more for each message.
  */
@@ -77,7 +80,7 @@ class MessageFiller {
       this.#next = unit;
       this.#at = from;
       draft.start();
-      this.#takeGuessed(symbols, ends, from);
+      if (draft.isSteady !== false) this.#takeGuessed(symbols, ends, from);
       const isFull =
         draft.addedBits === undefined
           ? this.#takeUntilOver(symbols, ends, from)

@@ -6,6 +6,8 @@ import { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import { newSymbolArray } from '../symbols/sequence.ts';
 import type { Coder, CoderEntry, Declaration, Setup } from './contract.ts';
 import { fixedCosts, fixedOperations } from './cost-fixed.ts';
+import { WordDraft } from './fill-drafts.ts';
+import { fillingEncoder } from './fill-messages.ts';
 import { MessageWalk, writeSymbolCount } from './message-frame.ts';
 import { MessageLedger } from './message-ledger.ts';
 import { MessagePieces } from './message-pieces.ts';
@@ -43,6 +45,15 @@ function equalWords(alphabetSize: number): { symbols: Uint32Array; lengths: Uint
   };
 }
 
+/** Writes the words of an alphabet that is not too large; undefined for one that is. */
+function kernelOf({ alphabetSize }: Setup): PrefixEncoder | undefined {
+  if (alphabetSize > KERNEL_ALPHABET) return undefined;
+  const { symbols, lengths } = equalWords(alphabetSize);
+  const kernel = new PrefixEncoder(alphabetSize);
+  kernel.setWords(symbols, lengths, alphabetSize);
+  return kernel;
+}
+
 /**
  * A code of equal lengths. One symbol only (m = 1): 0 bits a symbol, the count alone is carried.
  */
@@ -55,12 +66,7 @@ const coder: Coder = {
     const width = symbolWidth(setup.alphabetSize);
     const writer = new BitWriter();
     const ledger = new MessageLedger(setup.align);
-    let kernel: PrefixEncoder | undefined;
-    if (setup.alphabetSize <= KERNEL_ALPHABET) {
-      const { symbols, lengths } = equalWords(setup.alphabetSize);
-      kernel = new PrefixEncoder(setup.alphabetSize);
-      kernel.setWords(symbols, lengths, setup.alphabetSize);
-    }
+    const kernel = kernelOf(setup);
     const pieces = new MessagePieces({
       begin(symbolCount) {
         ledger.framingBits += writeSymbolCount(writer, setup, symbolCount);
@@ -82,6 +88,21 @@ const coder: Coder = {
         return ledger.finish(writer);
       },
     };
+  },
+
+  filler(setup) {
+    const width = symbolWidth(setup.alphabetSize);
+    const kernel = kernelOf(setup);
+    return fillingEncoder(
+      setup,
+      new WordDraft(setup, {
+        encode(writer, symbols, from, to) {
+          if (kernel !== undefined) kernel.encode(writer, symbols, from, to);
+          else for (let i = from; i < to; i++) writer.writeBits(symbols[i], width);
+        },
+        bitsOf: (_, from, to) => (to - from) * width,
+      }),
+    );
   },
 
   growsSteadily: () => true,

@@ -6,6 +6,7 @@ import { SymbolCounts } from './huffman-counts.ts';
 import { integerDecoder } from './integer-decoder.ts';
 import { integerEncoder } from './integer-encoder.ts';
 import type { IntegerFamily } from './integer-family.ts';
+import { integerFiller } from './integer-filler.ts';
 import {
   type IntegerTables,
   integerTables,
@@ -98,6 +99,8 @@ export function integerCoder(
       : {}),
 
     encoder: (setup) => integerEncoder(family, setup, given),
+
+    filler: (setup) => integerFiller(family, setup, given),
 
     // Every word has a bit or more; and one more symbol shortens no code, so also not the best, whose parameter has a fixed width.
     growsSteadily: () => true,

@@ -65,7 +65,8 @@ export function comparedBits(cell: CellRecord, pairs: MessagePairs): Float64Arra
   return spread;
 }
 
-function joined(parts: readonly Float64Array[]): Float64Array {
+/** Arrays one after another. */
+export function joined(parts: readonly Float64Array[]): Float64Array {
   if (parts.length === 1) return parts[0];
   const all = new Float64Array(parts.reduce((sum, part) => sum + part.length, 0));
   let at = 0;

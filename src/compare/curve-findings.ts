@@ -1,4 +1,5 @@
-import type { Curve, CurveLine, CurvePoint } from './curves.ts';
+import type { CurveLine, CurvePoint } from './curve-points.ts';
+import type { Curve } from './curves.ts';
 
 /** A doubling of the training data gains too little where it lowers the rate by less than this share of it. */
 export const LEAST_GAIN = 0.01;

@@ -1,29 +1,6 @@
 import type { CellRecord, CorpusRecord, RunRecord } from '../harness/run-record.ts';
-import { codedKeyOfCell, pooledRun, variationOfCell } from './pooled-record.ts';
-
-/** The rate of one cell at one value of what a curve goes over. */
-export interface CurvePoint {
-  readonly x: number;
-  /** Bits per symbol. */
-  readonly rate: number;
-  /**
-   * Half the width of the rate's 95 % interval, by that of the mean over messages; absent where messages differ in length, so
-   * that the interval of their mean is not that of the rate.
-   */
-  readonly margin?: number;
-  /** Without its fold, where folds are pooled. */
-  readonly cell: string;
-}
-
-/** Cells that differ in one thing only. */
-export interface CurveLine {
-  /** The candidate without what the curve goes over: `arith:backoff=none`. */
-  readonly candidate: string;
-  readonly tables: string;
-  readonly reset: string;
-  /** By x, which is never equal; at least two. */
-  readonly points: readonly CurvePoint[];
-}
+import { type CurveLine, linesOf, type Placed } from './curve-points.ts';
+import { codedKeyOfCell, grouped, pooledRun, variationOfCell } from './pooled-record.ts';
 
 /** The corrected entropy of one order, where a curve goes over orders. */
 export interface CurveEntropy {
@@ -52,70 +29,6 @@ export interface Curve {
 /** Fewest values of a parameter, or of R, that are worth a curve; two of what the plan varies are. */
 const LEAST_VALUES = 3;
 const TABLE_SETS = 'tables_in_set';
-
-/** A cell as a point of a line: all that the cells of a line have in common, and where it stands. */
-interface Placed {
-  readonly cell: CellRecord;
-  readonly candidate: string;
-  readonly x: number;
-}
-
-/** Whether all messages have as many symbols: no file ends with a shorter one. */
-function hasEqualMessages({ messages_as, symbol_count, message_count }: CellRecord): boolean {
-  const rule = /^(every|records)=(\d+)$/.exec(messages_as);
-  if (rule === null) return false;
-  const size = symbol_count! / message_count!;
-  const count = Number(rule[2]);
-  return rule[1] === 'every' ? size === count : Number.isInteger(size / count);
-}
-
-function pointOf({ cell, x }: Placed): CurvePoint {
-  const { mean, mean_low, mean_high } = cell.message_bytes ?? {};
-  const known = mean_low !== undefined && mean_high !== undefined && mean! > 0;
-  return {
-    x,
-    rate: cell.rate!,
-    ...(known && hasEqualMessages(cell)
-      ? { margin: (cell.rate! * Math.max(mean_high - mean!, mean! - mean_low)) / mean! }
-      : {}),
-    cell: cell.id,
-  };
-}
-
-/** Lines of at least two points; of cells that stand at the same x, the first. */
-function linesOf(placed: readonly Placed[]): CurveLine[] {
-  const lines = new Map<string, Placed[]>();
-  for (const one of placed) {
-    const key = JSON.stringify([one.candidate, one.cell.tables, one.cell.reset]);
-    const line = lines.get(key) ?? [];
-    if (!line.some(({ x }) => x === one.x)) lines.set(key, [...line, one]);
-  }
-  return [...lines.values()]
-    .filter((line) => line.length > 1)
-    .map(
-      (line): CurveLine => ({
-        candidate: line[0].candidate,
-        tables: line[0].cell.tables,
-        reset: line[0].cell.reset,
-        points: line.map(pointOf).sort((a, b) => a.x - b.x),
-      }),
-    )
-    .sort((a, b) => leastRate(a) - leastRate(b));
-}
-
-/** The least rate of a line. */
-export function leastRate({ points }: CurveLine): number {
-  return Math.min(...points.map((point) => point.rate));
-}
-
-function groupBy<T>(items: readonly T[], keyOf: (item: T) => string): T[][] {
-  const groups = new Map<string, T[]>();
-  for (const item of items) {
-    const key = keyOf(item);
-    groups.set(key, [...(groups.get(key) ?? []), item]);
-  }
-  return [...groups.values()];
-}
 
 /** The candidate's text without one parameter. */
 function withoutKey(candidate: string, key: string): string {
@@ -213,7 +126,7 @@ function longest(lines: readonly CurveLine[]): number {
 }
 
 function parameterCurves(record: RunRecord, corpus: string, all: readonly CellRecord[]): Curve[] {
-  return groupBy(all, variationOfCell).flatMap((cells) => {
+  return grouped(all, variationOfCell).flatMap((cells) => {
     const variation = variationOfCell(cells[0]);
     const kinds = new Map<string, { coder: string; key: string }>();
     for (const { coder, params } of cells) {
@@ -246,7 +159,7 @@ function parameterCurves(record: RunRecord, corpus: string, all: readonly CellRe
 }
 
 function resetCurves(corpus: string, all: readonly CellRecord[]): Curve[] {
-  return groupBy(all, variationOfCell).flatMap((cells): Curve[] => {
+  return grouped(all, variationOfCell).flatMap((cells): Curve[] => {
     const placed = cells.flatMap((cell): Placed[] => {
       // Shipped tables and coders without any have nothing to forget.
       const x =
@@ -270,7 +183,7 @@ function varyCurves(
   return keys
     .filter((key) => cells.some((cell) => cell.vary?.[key] !== undefined))
     .flatMap((key) =>
-      groupBy(cells, (cell) => variationWithout(cell, key)).flatMap((own): Curve[] => {
+      grouped(cells, (cell) => variationWithout(cell, key)).flatMap((own): Curve[] => {
         const lines = linesOf(placedByVary(own, key, ownValue(key, record, corpus)));
         if (lines.length === 0) return [];
         const variation = variationWithout(own[0], key);

@@ -1,19 +1,9 @@
 import { messageBytes } from '../harness/message-figures.ts';
 import type { MessagePairs } from '../harness/run-all.ts';
 import type { CellRecord } from '../harness/run-record.ts';
-import { partsOfId } from './contenders.ts';
+import { joined, partsOfId } from './contenders.ts';
 import { pooledRun } from './pooled-record.ts';
 import type { LoadedRun } from './read-messages.ts';
-
-function joined(parts: readonly Float64Array[]): Float64Array {
-  const all = new Float64Array(parts.reduce((sum, part) => sum + part.length, 0));
-  let at = 0;
-  for (const part of parts) {
-    all.set(part, at);
-    at += part.length;
-  }
-  return all;
-}
 
 /** With sizes of messages over all folds; where messages are filled, the figures are of units and tell none. */
 function withMessageBytes(cell: CellRecord, pairs: MessagePairs | undefined): CellRecord {

@@ -35,7 +35,8 @@ function withoutFold(text: string): string {
   return text.replace(/\+fold=\d+/, '');
 }
 
-function grouped<T>(items: readonly T[], keyOf: (item: T) => string): T[][] {
+/** Items by key, groups and items in the order of their first appearance. */
+export function grouped<T>(items: readonly T[], keyOf: (item: T) => string): T[][] {
   const groups = new Map<string, T[]>();
   for (const item of items) {
     const key = keyOf(item);

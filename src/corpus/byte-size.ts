@@ -22,6 +22,18 @@ export function parseByteSize(text: string): number {
   return Math.floor(Number.parseFloat(trimmed) * base ** (POWERS[unit[0]] ?? 0));
 }
 
+/** As a plan would write it: the largest unit, in powers of 1000, of which there is a whole number. */
+export function byteSizeText(bytes: number): string {
+  const units = ['B', 'kB', 'MB', 'GB', 'TB'];
+  let power = 0;
+  let count = bytes;
+  while (count > 0 && count % 1000 === 0 && power < units.length - 1) {
+    count /= 1000;
+    power++;
+  }
+  return `${count}${units[power]}`;
+}
+
 /** In whole megabytes, rounded up. */
 export function megabytesText(bytes: number): string {
   return `${Math.ceil(bytes / 1e6)}MB`;

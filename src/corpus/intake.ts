@@ -42,10 +42,18 @@ export function checkIntake(
   const taker = parseSymbolTaker(spec.symbols);
   const rule = parseMessageRule(spec.messages);
   if (spec.sample !== undefined) checkSampled(spec, taker, rule);
-  if (taker.takesRows && rule.kind !== 'whole' && rule.kind !== 'every') {
+  const byRows = rule.kind === 'fill' && rule.unit === 'row';
+  if (byRows && !taker.takesRows) {
     throw new InputError(`messages: ${spec.messages} does not go with symbols: ${taker.text}`, {
       key: 'messages',
-      expected: 'every=N or whole, since each row is one symbol',
+      expected: 'unit=N bytes or unit=line; rows are units of symbols: csv:COLUMN',
+      got: spec.messages,
+    });
+  }
+  if (taker.takesRows && !byRows && rule.kind !== 'whole' && rule.kind !== 'every') {
+    throw new InputError(`messages: ${spec.messages} does not go with symbols: ${taker.text}`, {
+      key: 'messages',
+      expected: 'every=N, fill=BYTES,unit=row or whole, since each row is one symbol',
       got: spec.messages,
     });
   }
@@ -108,7 +116,7 @@ function checkUnit(
   taker: SymbolTaker,
   rule: MessageRule,
 ): void {
-  if (rule.kind !== 'fill' || rule.unit === 'line') return;
+  if (rule.kind !== 'fill' || typeof rule.unit !== 'number') return;
   const { unit } = rule;
   if (taker.alphabet !== 'natural') {
     throw new InputError(`messages: ${spec.messages} does not go with symbols: ${taker.text}`, {
@@ -234,8 +242,14 @@ function takeFile(
     ...(spec.record === undefined ? {} : { record: spec.record }),
     ...(spec.step === undefined ? {} : { step: spec.step }),
   });
-  if (rule.kind !== 'every') return taken;
-  return { values: taken.values, messageEnds: everyEnds(valueCount(taken.values), rule.count) };
+  const { values } = taken;
+  if (rule.kind === 'every') {
+    return { values, messageEnds: everyEnds(valueCount(values), rule.count) };
+  }
+  if (rule.kind === 'fill' && rule.unit === 'row') {
+    return { values, messageEnds: everyEnds(valueCount(values), 1) };
+  }
+  return taken;
 }
 
 /** What {@link CorpusFacts} says of filling; units of a fixed size all have the symbols of the first. */

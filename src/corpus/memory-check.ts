@@ -6,7 +6,7 @@ import { planSchema } from './plan-schema.ts';
 import { type SampleRule, sampleRule } from './sample-rule.ts';
 
 /** The program, tables of order 2 for a byte alphabet, and a small model: with less, data cannot be read in pieces. */
-export const LEAST_MEMORY_BYTES = 256e6;
+const LEAST_MEMORY_BYTES = 256e6;
 
 /**
  * Bytes that the process may hold, as a plan or an option says them.

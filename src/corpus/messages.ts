@@ -1,4 +1,4 @@
-import { InputError, NotYetError } from '../errors/errors.ts';
+import { InputError } from '../errors/errors.ts';
 import { nearestWord } from '../errors/nearest.ts';
 import { checkWholeRecords, type RecordShape } from '../symbols/record.ts';
 import { type ByteSegments, oneSegment } from '../symbols/segments.ts';
@@ -22,7 +22,8 @@ export type PrefixType = keyof typeof PREFIXES;
  * - `records`: `count` records, the last message of a file shorter.
  * - `prefix`: frames, each after its length in bytes, which is no symbol.
  * - `fill`: as many whole units as fit into so many coded bytes, so each candidate cuts its own; what a file is cut into
- *   here are the units: so many source bytes, or a line with its newline, which is a symbol, since it parts the lines again.
+ *   here are the units: so many source bytes, a line with its newline, which is a symbol, since it parts the lines again, or
+ *   a row of a table, of which a column gives one symbol.
  */
 export type MessageRule =
   | { readonly kind: 'whole' }
@@ -30,19 +31,19 @@ export type MessageRule =
   | { readonly kind: 'every'; readonly count: number }
   | { readonly kind: 'records'; readonly count: number }
   | { readonly kind: 'prefix'; readonly type: PrefixType }
-  | { readonly kind: 'fill'; readonly bytes: number; readonly unit: number | 'line' };
+  | { readonly kind: 'fill'; readonly bytes: number; readonly unit: number | 'line' | 'row' };
 
 /** What the decoder gets for free: symbol counts, where messages end, or neither. */
 export type LengthsGranted = 'known' | 'link' | 'sent';
 
 const FORMS =
-  'whole, lines, every=N, records=K, prefix=u8|u16le|u16be|u32le|u32be or fill=BYTES,unit=N|line';
+  'whole, lines, every=N, records=K, prefix=u8|u16le|u16be|u32le|u32be or fill=BYTES,unit=N|line|row';
 
 const LARGEST_COUNT = 2 ** 31;
 
 /**
  * Reads a rule as a plan or an option writes it.
- * @throws InputError with the nearest word; NotYetError for `unit=row`
+ * @throws InputError with the nearest word
  */
 export function parseMessageRule(text: string): MessageRule {
   const trimmed = text.trim();
@@ -68,21 +69,14 @@ export function parseMessageRule(text: string): MessageRule {
 
 function parseFill(text: string): MessageRule {
   const match = /^fill=\s*(\d{1,10})\s*,\s*unit=\s*(\d{1,10}|line|row)$/.exec(text);
-  const expected = `fill=BYTES,unit=N or fill=BYTES,unit=line, with whole numbers from 1 to ${LARGEST_COUNT}`;
+  const expected = `fill=BYTES,unit=N, unit=line or unit=row, with whole numbers from 1 to ${LARGEST_COUNT}`;
   if (match === null) refuseRule(text, expected, undefined);
   const bytes = Number(match[1]);
   const unit = match[2];
-  if (unit === 'row') {
-    throw new NotYetError('units that are rows of a table are not yet built', {
-      expected,
-      got: text,
-      advice: 'Meanwhile unit=line fills messages with lines of text.',
-    });
-  }
-  const size = unit === 'line' ? 1 : Number(unit);
+  const size = unit === 'line' || unit === 'row' ? 1 : Number(unit);
   if (bytes < 1 || bytes > LARGEST_COUNT || size < 1 || size > LARGEST_COUNT)
     refuseRule(text, expected, undefined);
-  return { kind: 'fill', bytes, unit: unit === 'line' ? 'line' : size };
+  return { kind: 'fill', bytes, unit: unit === 'line' || unit === 'row' ? unit : size };
 }
 
 function refuseRule(got: string, expected: string, near: string | undefined): never {
@@ -107,7 +101,7 @@ export function usualLengths(rule: MessageRule): LengthsGranted {
 }
 
 /**
- * The byte ranges of a file's messages. Under `every`, where symbols are counted, this is the whole file: see
+ * The byte ranges of a file's messages. Under `every` and for rows, where symbols are counted, this is the whole file: see
  * {@link everyEnds}.
  * @param record  needed under `records`
  * @throws InputError for a ragged record file (size, record, remainder) or a frame that the file ends inside (offset)
@@ -129,6 +123,7 @@ export function segmentFile(
     case 'prefix':
       return frameSegments(bytes, rule.type, file);
     case 'fill':
+      if (rule.unit === 'row') return oneSegment(bytes.length);
       return rule.unit === 'line'
         ? wholeLineSegments(bytes)
         : unitSegments(bytes.length, rule.unit, file);

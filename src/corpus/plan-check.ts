@@ -200,7 +200,7 @@ export function togetherFaults(document: PlanDocument): Fault[] {
         line: document.lineOf(by),
         key: keyText(by),
         problem: `the corpus ${other[0]} has no units`,
-        expected: 'messages: fill=BYTES,unit=N|line in every corpus',
+        expected: 'messages: fill=BYTES,unit=N|line|row in every corpus',
         got: `messages: ${gotText(other[1]?.messages)}`,
         advice: 'Use by: message, which means units where messages are filled.',
       });

@@ -1,5 +1,6 @@
 import { z } from 'zod';
 import { MAX_ALPHABET_SIZE } from '../symbols/alphabet-map.ts';
+import { BYTE_SIZE } from './byte-size.ts';
 
 /**
  * The plan file, every key that it has or will have. The text of each `error` says what is expected there and is shown
@@ -64,7 +65,7 @@ const LOSS = 'a share of messages lost, above 0 and below 1';
 const CHANCE = 'a probability above 0 and below 1';
 const LOSSES =
   'a probability above 0 and below 1, or good_to_bad and bad_to_good, with lost_in_bad and lost_in_good, from 0 to 1, where some messages are lost and some arrive';
-const BYTES = pattern(/^\d+(\.\d+)? ?([kKMGT]i?)?B$/, 'a size such as 512MB');
+const BYTES = pattern(BYTE_SIZE, 'a size such as 512MB');
 const RESET = pattern(
   /^(message|file|never|message\*[1-9]\d{0,9})$/,
   'message, file, never or message*R',

@@ -1,7 +1,7 @@
 import { InputError } from '../errors/errors.ts';
 import { nearestWord } from '../errors/nearest.ts';
 import { SeededGenerator } from '../statistics/generator.ts';
-import { parseByteSize } from './byte-size.ts';
+import { byteSizeText, parseByteSize } from './byte-size.ts';
 
 /**
  * Which blocks of the files of a corpus are read. Each file is cut into blocks of `blockBytes`, the last one shorter; blocks
@@ -29,7 +29,7 @@ export interface SampleFacts {
   readonly ofBytes: number;
 }
 
-export const USUAL_BLOCK_BYTES = 1_000_000;
+const USUAL_BLOCK_BYTES = 1_000_000;
 const LEAST_BLOCK_BYTES = 256;
 const LARGEST_COUNT = 2 ** 31;
 const USUAL_SEED = 1;
@@ -115,12 +115,12 @@ function refuse(text: string, expected: string, near?: string): never {
   });
 }
 
-/** As an option writes it; sizes in bytes. */
+/** As an option writes it. */
 export function sampleRuleText(rule: SampleRule): string {
-  const block = `block=${rule.blockBytes}B`;
+  const block = `block=${byteSizeText(rule.blockBytes)}`;
   return rule.kind === 'every'
     ? `every=${rule.every},${block}`
-    : `reservoir=${rule.bytes}B,${block},seed=${rule.seed}`;
+    : `reservoir=${byteSizeText(rule.bytes)},${block},seed=${rule.seed}`;
 }
 
 /**

@@ -14,7 +14,7 @@ import { inputFileBytes } from './read-file.ts';
 import { chunkCutter, type StreamedRule } from './stream-cut.ts';
 
 /** Bytes read at once; divisible by the bytes of any symbol that is streamed. */
-export const CHUNK_BYTES = 2 ** 20;
+const CHUNK_BYTES = 2 ** 20;
 
 const MOST_SYMBOLS = 2 ** 32 - 1;
 

@@ -14,8 +14,8 @@ import type { SymbolSequence } from '../symbols/sequence.ts';
 import { type Cell, decodesAlone } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
 import { type DamageExperiment, type DamagePlan, damageExperiments } from './damage-experiment.ts';
-import { type DamageOutcome, damageOutcome } from './damage-outcome.ts';
 import { figuresOf, parametersOf } from './damage-figures.ts';
+import { type DamageOutcome, damageOutcome } from './damage-outcome.ts';
 import type { CellDamage } from './damage-schema.ts';
 import {
   type Arrived,
@@ -264,7 +264,10 @@ class DamagedCell {
     if (experiment.kind !== 'lose_messages') return {};
     const { law } = experiment;
     if (this.#alone) return { unusable_share: lossRateOf(law) };
-    const most = this.#units.reduce((a, { messages }) => Math.max(a, messages.messageEnds.length), 0);
+    const most = this.#units.reduce(
+      (a, { messages }) => Math.max(a, messages.messageEnds.length),
+      0,
+    );
     const arrive = allArrive(law, most);
     let unusable = 0;
     for (const { messages } of this.#units)

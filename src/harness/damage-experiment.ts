@@ -29,7 +29,9 @@ export function damageExperiments(plan: DamagePlan): DamageExperiment[] {
   const { flip, lose_bytes, lose_messages, seed = USUAL_DAMAGE_SEED } = plan;
   return [
     ...(flip === undefined ? [] : [{ kind: 'flip', chance: flip, seed } as const]),
-    ...(lose_bytes === undefined ? [] : [{ kind: 'lose_bytes', chance: lose_bytes, seed } as const]),
+    ...(lose_bytes === undefined
+      ? []
+      : [{ kind: 'lose_bytes', chance: lose_bytes, seed } as const]),
     ...(lose_messages === undefined
       ? []
       : [

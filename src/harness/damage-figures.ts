@@ -24,10 +24,7 @@ export function parametersOf(
 }
 
 /** What is counted over the damages of a kind. */
-type Figures = Omit<
-  CellDamage,
-  keyof ReturnType<typeof parametersOf> | 'share' | 'unusable_share'
->;
+type Figures = Omit<CellDamage, keyof ReturnType<typeof parametersOf> | 'share' | 'unusable_share'>;
 
 /**
  * Figures over all damages of a kind.

@@ -20,11 +20,13 @@ export const cellDamageSchema = z
       .number()
       .optional()
       .describe(
-        'of messages lost, or spoiled if all after a lost one are until the reset: exact for the model',
+        'most of all messages that are lost or spoiled: if a lost one spoils all up to the reset; exact for the model',
       ),
     events: z
       .number()
-      .describe('simulated: a damaged message, or a run of lost ones; the figures below are of these'),
+      .describe(
+        'simulated: a damaged message, or a run of lost ones; the figures below are of these',
+      ),
     errors: z.number().describe('flipped bits, lost bytes or lost messages in all events'),
     detected: z.number().describe('events in which the decoder stopped with an error'),
     by_check: z

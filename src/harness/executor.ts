@@ -1,9 +1,9 @@
 import type { Ageing } from './ageing.ts';
 import type { Cell } from './cells.ts';
 import type { CorpusData } from './corpus-data.ts';
+import type { FloorOptions } from './corpus-floors.ts';
 import type { DamagePlan } from './damage-experiment.ts';
 import type { CellDamage } from './damage-schema.ts';
-import type { FloorOptions } from './corpus-floors.ts';
 import type { FloorPieces } from './floor-pieces.ts';
 import type { CellBits, CellFailure } from './run-cell.ts';
 import type { CellTimes, TimingOptions } from './time-cell.ts';

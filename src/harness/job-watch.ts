@@ -8,6 +8,13 @@ const START_SECONDS = 60;
 /** What the process may grow by besides its cells: garbage, results, the heaps of workers. */
 const SLACK_BYTES = 384e6;
 
+/** What a job may take. */
+export interface JobBounds {
+  /** From when a worker begins it. */
+  readonly seconds: number;
+  readonly memoryBytes: number;
+}
+
 /** A job in a worker, as it looks from outside. */
 export interface WatchedJob {
   readonly board: JobBoard;
@@ -20,7 +27,7 @@ export interface WatchedJob {
 
 class Watched implements WatchedJob {
   readonly board = new JobBoard();
-  readonly seconds: number;
+  readonly bounds: JobBounds;
   readonly control: Control;
   readonly posted = performance.now();
   began: number | undefined;
@@ -28,8 +35,8 @@ class Watched implements WatchedJob {
   isSuspect = false;
   readonly #abort = new AbortController();
 
-  constructor(seconds: number, control: Control) {
-    this.seconds = seconds;
+  constructor(bounds: JobBounds, control: Control) {
+    this.bounds = bounds;
     this.control = control;
   }
 
@@ -51,27 +58,22 @@ class Watched implements WatchedJob {
  * any bound that the engine keeps for a thread, so that the growth of the process is all there is to see while a step goes on.
  */
 export class JobWatch {
-  readonly #memoryBytes: number;
   readonly #jobs = new Set<Watched>();
   #timer: NodeJS.Timeout | undefined;
   #idleBytes = 0;
-  #mostJobs = 0;
+  #mostBytes = 0;
 
-  /** @param memoryBytes  that one job may take */
-  constructor(memoryBytes: number) {
-    this.#memoryBytes = memoryBytes;
-  }
-
-  /** @param seconds  that the job may take from when a worker begins it */
-  begin(seconds: number, control: Control): WatchedJob {
+  begin(bounds: JobBounds, control: Control): WatchedJob {
     if (this.#jobs.size === 0) {
       this.#idleBytes = process.memoryUsage.rss();
-      this.#mostJobs = 0;
+      this.#mostBytes = 0;
     }
-    const job = new Watched(seconds, control);
+    const job = new Watched(bounds, control);
     this.#jobs.add(job);
+    let bytes = 0;
+    for (const { bounds } of this.#jobs) bytes += bounds.memoryBytes;
     // A worker whose job has ended still holds what was not collected.
-    this.#mostJobs = Math.max(this.#mostJobs, this.#jobs.size);
+    this.#mostBytes = Math.max(this.#mostBytes, bytes);
     this.#timer ??= setInterval(() => this.#look(), LOOK_MILLISECONDS);
     return job;
   }
@@ -93,12 +95,11 @@ export class JobWatch {
       if (job.began === undefined) {
         if (job.board.step > 0) job.began = now;
         else if (now - job.posted > 1000 * START_SECONDS) job.end('could not be begun by a worker');
-      } else if (now - job.began > 1000 * job.seconds) {
-        job.end(`took longer than budget.cell_seconds, ${job.seconds} s${job.board.place}`);
+      } else if (now - job.began > 1000 * job.bounds.seconds) {
+        job.end(`took longer than budget.cell_seconds, ${job.bounds.seconds} s${job.board.place}`);
       }
     }
-    const allowed = this.#mostJobs * this.#memoryBytes + SLACK_BYTES;
-    if (process.memoryUsage.rss() - this.#idleBytes <= allowed) return;
+    if (process.memoryUsage.rss() - this.#idleBytes <= this.#mostBytes + SLACK_BYTES) return;
     for (const job of this.#jobs) job.end(undefined);
   }
 }

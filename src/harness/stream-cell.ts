@@ -30,7 +30,7 @@ const BLOCKS_A_PAUSE = 16;
 /**
  * Why a cell cannot be run in pieces, as a sentence; undefined where it can, as far as can be told beforehand.
  */
-export function whyCellNotStreamed(cell: Cell): string | undefined {
+function whyCellNotStreamed(cell: Cell): string | undefined {
   if (cell.candidate.create().inPieces === undefined)
     return `${cell.candidate.id} needs all data at once, and these do not fit the memory allowed; huffman and arith code data in pieces`;
   if (cell.reset.startsWith('message*'))

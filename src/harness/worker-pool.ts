@@ -11,7 +11,7 @@ import type { DamagePlan } from './damage-experiment.ts';
 import type { CellDamage } from './damage-schema.ts';
 import type { Control, Executor } from './executor.ts';
 import type { FloorPieces } from './floor-pieces.ts';
-import { JobWatch } from './job-watch.ts';
+import { type JobBounds, JobWatch } from './job-watch.ts';
 import { Lanes } from './lanes.ts';
 import { memoryReason } from './memory-guard.ts';
 import { Interrupted } from './pause.ts';
@@ -41,6 +41,8 @@ export interface WorkerPoolOptions {
 
 /** Figures about cells are made in several passes over their data, and may take so many times what a cell may. */
 const FIGURE_BUDGETS = 10;
+/** What counting entropies and running the coders of a floor may take: they are no cells, and bound themselves. */
+const FLOOR_BYTES = 8e9;
 
 /** The entry of workers beside this file; undefined in the sources, which Node does not run in a worker. */
 export function workerEntry(): URL | undefined {
@@ -56,7 +58,7 @@ export function workerEntry(): URL | undefined {
 export class WorkerPool implements Executor {
   readonly lanes: number;
   readonly #lanes: Lanes;
-  readonly #watch: JobWatch;
+  readonly #watch = new JobWatch();
   readonly #budget: CellBudget;
   readonly #entry: URL;
   readonly #setup: WorkerSetup;
@@ -79,7 +81,6 @@ export class WorkerPool implements Executor {
     this.lanes = lanes;
     this.#lanes = new Lanes(lanes);
     this.#budget = budget;
-    this.#watch = new JobWatch(budget.memoryBytes);
     this.#entry = entry;
     this.#setup = {
       corpora: shareCorpora(corpora),
@@ -114,7 +115,7 @@ export class WorkerPool implements Executor {
     control: Control,
   ): Promise<CellBits | CellFailure> {
     const job: Job = { kind: 'bits', cell: plainCell(cell) };
-    const run = () => this.#do<'bits'>(job, this.#budget.seconds, control);
+    const run = () => this.#do<'bits'>(job, this.#budget, control);
     let answer = await this.#lanes.run(run);
     // Which of several cells took all the memory cannot be seen from outside: each is run again, alone.
     if (answer === 'suspect') answer = await this.#lanes.runAlone(run);
@@ -131,7 +132,9 @@ export class WorkerPool implements Executor {
   ): Promise<CellTimes | undefined | CellFailure> {
     const job: Job = { kind: 'times', cell: plainCell(cell), options };
     const seconds = 2 * this.#budget.seconds + 8 * longestEndSeconds(options.repeats);
-    const answer = await this.#lanes.runAlone(() => this.#do<'times'>(job, seconds, control));
+    const answer = await this.#lanes.runAlone(() =>
+      this.#do<'times'>(job, { ...this.#budget, seconds }, control),
+    );
     if (answer === 'suspect') return { cell, failure: memoryReason(this.#budget.memoryBytes) };
     if ('failure' in answer) return { cell, failure: `when it was timed: ${answer.failure}` };
     return answer.result;
@@ -144,7 +147,11 @@ export class WorkerPool implements Executor {
     control: Control,
   ): Promise<void> {
     const job: Job = { kind: 'floors', dataKey: corpus.key, options, known: pieces.asMap() };
-    const run = () => this.#do<'floors'>(job, Number.POSITIVE_INFINITY, control);
+    const bounds = {
+      seconds: Number.POSITIVE_INFINITY,
+      memoryBytes: Math.max(FLOOR_BYTES, this.#budget.memoryBytes),
+    };
+    const run = () => this.#do<'floors'>(job, bounds, control);
     let answer = await this.#lanes.run(run);
     if (answer === 'suspect') answer = await this.#lanes.runAlone(run);
     const failure = answer === 'suspect' ? memoryReason(this.#budget.memoryBytes) : undefined;
@@ -166,7 +173,9 @@ export class WorkerPool implements Executor {
   ): Promise<Ageing | undefined> {
     const job: Job = { kind: 'ageing', cell: plainCell(cell), messageEnds };
     const seconds = FIGURE_BUDGETS * this.#budget.seconds;
-    const answer = await this.#lanes.run(() => this.#do<'ageing'>(job, seconds, control));
+    const answer = await this.#lanes.run(() =>
+      this.#do<'ageing'>(job, { ...this.#budget, seconds }, control),
+    );
     // A figure beside the cells: where it meets a bound its lines are left out.
     return answer === 'suspect' || 'failure' in answer ? undefined : answer.result;
   }
@@ -179,7 +188,9 @@ export class WorkerPool implements Executor {
   ): Promise<readonly CellDamage[] | CellFailure> {
     const job: Job = { kind: 'damage', cell: plainCell(cell), plan };
     const seconds = FIGURE_BUDGETS * this.#budget.seconds;
-    const answer = await this.#lanes.run(() => this.#do<'damage'>(job, seconds, control));
+    const answer = await this.#lanes.run(() =>
+      this.#do<'damage'>(job, { ...this.#budget, seconds }, control),
+    );
     if (answer === 'suspect') return { cell, failure: memoryReason(this.#budget.memoryBytes) };
     if ('failure' in answer) return { cell, failure: answer.failure };
     if (answer.interrupted) throw new Interrupted();
@@ -193,14 +204,14 @@ export class WorkerPool implements Executor {
 
   async #do<K extends Job['kind']>(
     job: Extract<Job, { kind: K }>,
-    seconds: number,
+    bounds: JobBounds,
     control: Control,
   ): Promise<Answer<K> | 'suspect'> {
     if (control.interrupted()) throw new Interrupted();
     control.begun?.();
     this.#pool ??= this.#start();
     const pool = await this.#pool;
-    const watched = this.#watch.begin(seconds, control);
+    const watched = this.#watch.begin(bounds, control);
     const posted: PostedJob = { job, board: watched.board.numbers };
     try {
       return (await pool.run(posted, { signal: watched.signal })) as Answer<K>;

@@ -7,7 +7,7 @@ import { countedBits, startContextBits } from './empirical-length.ts';
 import { PairTree } from './pair-tree.ts';
 
 /** Highest order that is counted in pieces: its table has a cell for every possible pair. */
-export const HIGHEST_STREAMED_ORDER = 2;
+const HIGHEST_STREAMED_ORDER = 2;
 /** 64 MiB. */
 const MOST_CELLS = 2 ** 24;
 

@@ -85,11 +85,12 @@ function columnsFor(cells: readonly CellRecord[], options: CellTableOptions): Co
   const folded = cells.flatMap((c) => options.foldRates?.get(c.id) ?? []);
   if (folded.length > 0) {
     const folds = Math.max(...cells.map((c) => options.foldRates!.get(c.id)?.length ?? 0));
-    columns.push(
-      always([`${folds} folds`, 'least–most'], true, (c) =>
-        rangeText(options.foldRates!.get(c.id), folds, decimals),
-      ),
-    );
+    columns.push({
+      spare: 1,
+      head: [`${folds} folds`, 'least–most'],
+      right: true,
+      text: (c) => rangeText(options.foldRates!.get(c.id), folds, decimals),
+    });
   }
   if (cells.some((c) => c.units_per_message !== undefined)) {
     columns.push(

@@ -23,6 +23,12 @@ export function someGrow(cells: readonly CellRecord[]): boolean {
   );
 }
 
+/** What is coded in one step, where that is more than a symbol. */
+function stepsOf({ coder }: CellRecord): string {
+  if (coder === 'fields') return ' record';
+  return coder === 'block-huffman' ? ' block' : '';
+}
+
 /** What a symbol takes of the cell at one end, on average and at most; undefined where it is not told. */
 export function operationsNote(
   cell: CellRecord,
@@ -42,7 +48,7 @@ export function operationsNote(
     return `${Number(mean.toPrecision(3))} ${words[kind]} (${countText(worst)})`;
   });
   const tables = cell.tables === 'sent' ? ', without what its tables take' : '';
-  return `Operations of the ${device} of ${cellPhrase(cell)}, for each ${noun} on average, in parentheses the most of one${tables}: ${kinds.join(', ')}.`;
+  return `Operations of the ${device} of ${cellPhrase(cell)}, for each ${noun} on average, in parentheses the most of one${stepsOf(cell)}${tables}: ${kinds.join(', ')}.`;
 }
 
 /** In packets: the candidates whose decoder gives no symbol before it has the whole message; undefined where none. */

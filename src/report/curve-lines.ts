@@ -1,5 +1,6 @@
 import { adaptivePairs } from '../compare/curve-findings.ts';
-import { type Curve, type CurveEntropy, type CurveLine, leastRate } from '../compare/curves.ts';
+import { type CurveLine, leastRate } from '../compare/curve-points.ts';
+import type { Curve, CurveEntropy } from '../compare/curves.ts';
 import { type CurveRow, curvePlot, figuresWidth, LEAST_PLOT, TOGETHER } from './curve-plot.ts';
 import { curveNotes, lineName, wordsOf } from './curve-words.ts';
 import { countText, decimalsFor, rateText } from './figures.ts';

@@ -6,7 +6,8 @@ import {
   leastPoint,
   trainingReturn,
 } from '../compare/curve-findings.ts';
-import type { Curve, CurveLine } from '../compare/curves.ts';
+import type { CurveLine } from '../compare/curve-points.ts';
+import type { Curve } from '../compare/curves.ts';
 import { rateText } from './figures.ts';
 import { countInText } from './paragraph.ts';
 

@@ -7,6 +7,7 @@ import { comparisonLines } from './comparison-lines.ts';
 import { corpusSection } from './corpus-section.ts';
 import { deviceNote, someGrow } from './cost-lines.ts';
 import { curveLines } from './curve-lines.ts';
+import { damageLines } from './damage-lines.ts';
 import { countText, rateText, sizeText, symbolNoun, wrapText } from './figures.ts';
 import { cellPhrase } from './floor-lines.ts';
 import { resetLines } from './loss-lines.ts';
@@ -93,6 +94,11 @@ export function runScreen(record: RunRecord, options: RunScreenOptions): string 
         symbolNoun(corpus.symbols_as),
       ).flatMap((line) => wrapText(line, options.columns - 1, ' ')),
       ...ageingLines(record, corpus.name, options.columns),
+      ...damageLines(
+        plain.cells.filter((cell) => cell.corpus === corpus.name),
+        symbolNoun(corpus.symbols_as),
+        options.columns,
+      ),
       ...readingLines(corpus, record.plan, options.columns),
       '',
     );

@@ -39,9 +39,9 @@ describe('--memory', () => {
       ...['try', 'year.log', '--memory', '256MB', '--coder', 'huffman', '--coder', 'brotli'],
     );
     expect(code).toBe(3);
-    expect(out).toContain('Read in pieces to stay within 244.1 MiB');
+    expect(out).toContain('Read in pieces to stay within 256MB');
     expect(out).toMatch(/brotli.*no rate\. brotli needs all data at once/s);
-    expect(out).toContain('--memory 256000000B');
+    expect(out).toContain('--messages every=4096 --memory 256MB');
     expect(leftFolders()).toEqual([]);
   });
 

@@ -6,7 +6,8 @@ import {
   leastPoint,
   trainingReturn,
 } from '../../src/compare/curve-findings.ts';
-import type { Curve, CurveLine } from '../../src/compare/curves.ts';
+import type { CurveLine } from '../../src/compare/curve-points.ts';
+import type { Curve } from '../../src/compare/curves.ts';
 
 const line = (points: readonly (readonly [number, number])[], tables = 'shipped'): CurveLine => ({
   candidate: 'huffman',

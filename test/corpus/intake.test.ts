@@ -106,6 +106,16 @@ describe('loadCorpus', () => {
     expect(corpus.lengths).toBe('link');
   });
 
+  test('takes rows of a table as units to fill messages with', async () => {
+    const more = { symbols: 'csv:temperature', messages: 'fill=8,unit=row', step: 0.1 };
+    const corpus = await load(['p.csv', 'q.csv'], more);
+    expect([...corpus.sequence.symbols]).toEqual([0, 3, 2, 1, 2, 12]);
+    expect([...corpus.sequence.messageEnds]).toEqual([1, 2, 3, 4, 5, 6]);
+    expect([...corpus.fileEnds]).toEqual([4, 6]);
+    expect(corpus.fill).toEqual({ bytes: 8, unitSymbols: 1 });
+    expect(corpus.lengths).toBe('link');
+  });
+
   test('numbers the distinct texts of a column across files', async () => {
     const corpus = await load(['p.csv', 'q.csv'], { symbols: 'csv:temperature' });
     const texts = ['-17.0', '-17.9', '-18.0', '-18.1', '-18.2'];
@@ -242,7 +252,21 @@ describe('bad input is one paragraph', () => {
       'p.csv',
       { symbols: 'csv:time', messages: 'lines' },
       'does not go with symbols: csv:time',
-      { expected: 'every=N or whole, since each row is one symbol' },
+      { expected: 'every=N, fill=BYTES,unit=row or whole, since each row is one symbol' },
+    ],
+    [
+      'rows of bytes',
+      'abc.bin',
+      { messages: 'fill=8,unit=row' },
+      'does not go with symbols: bytes',
+      { key: 'messages' },
+    ],
+    [
+      'bytes of a table',
+      'p.csv',
+      { symbols: 'csv:time', messages: 'fill=8,unit=4' },
+      'does not go with symbols: csv:time',
+      { key: 'messages' },
     ],
     [
       'prefix of a table',

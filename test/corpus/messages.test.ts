@@ -7,7 +7,6 @@ import {
   segmentFile,
   usualLengths,
 } from '../../src/corpus/messages.ts';
-import { NotYetError } from '../../src/errors/errors.ts';
 
 /** The messages as slices of the bytes. */
 function cut(rule: string, bytes: Uint8Array, recordBytes?: number): Uint8Array[] {
@@ -54,14 +53,13 @@ describe('parseMessageRule', () => {
     }
   });
 
-  test('unit=row is not built yet and names the way meanwhile', () => {
-    try {
-      parseMessageRule('fill=192,unit=row');
-      expect.unreachable();
-    } catch (error) {
-      expect(error).toBeInstanceOf(NotYetError);
-      expect((error as NotYetError).where.advice).toContain('unit=line');
-    }
+  test('units are so many bytes, lines or rows', () => {
+    for (const [text, unit] of [
+      ['fill=192,unit=24', 24],
+      ['fill=192,unit=line', 'line'],
+      ['fill=192,unit=row', 'row'],
+    ])
+      expect(parseMessageRule(String(text))).toEqual({ kind: 'fill', bytes: 192, unit });
   });
 });
 

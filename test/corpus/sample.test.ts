@@ -3,7 +3,7 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import fc from 'fast-check';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
-import { parseByteSize } from '../../src/corpus/byte-size.ts';
+import { byteSizeText, parseByteSize } from '../../src/corpus/byte-size.ts';
 import type { CorpusSpec } from '../../src/corpus/corpus.ts';
 import { loadCorpus, loadRawCorpus } from '../../src/corpus/intake.ts';
 import {
@@ -57,6 +57,15 @@ describe('sizes', () => {
   test.each(['12 bananas', '512', '-1MB', 'MB', '1 mb', ''])('refuses %j', (text) =>
     expect(() => parseByteSize(text)).toThrow(InputError),
   );
+});
+
+describe('a size as it is written again', () => {
+  test.each([
+    [512e6, '512MB'],
+    [2e9, '2GB'],
+    [1500, '1500B'],
+    [0, '0B'],
+  ])('%d', (bytes, text) => expect(byteSizeText(bytes)).toBe(text));
 });
 
 describe('a sample rule', () => {

@@ -161,10 +161,6 @@ describe('the rule fill', () => {
     expect(() => parseMessageRule(text)).not.toThrow(NotYetError);
   });
 
-  it('has no rows yet', () => {
-    expect(() => parseMessageRule('fill=192,unit=row')).toThrow(NotYetError);
-  });
-
   it('goes with split by: unit, which other messages do not have', () => {
     expect(parsePlan(PLAN, 'plan.yaml').split.by).toBe('unit');
     const other = PLAN.replace('fill=192,unit=24', 'records=8');

@@ -216,8 +216,8 @@ describe('a run in pieces', () => {
           estimable,
           interval_unit: order.interval_unit,
         });
-        expect(order.low).toBeCloseTo(other.orders[k].low, 5);
-        expect(order.high).toBeCloseTo(other.orders[k].high, 5);
+        expect(order.low!).toBeCloseTo(other.orders[k].low!, 5);
+        expect(order.high!).toBeCloseTo(other.orders[k].high!, 5);
       });
     }
   }, 20_000);

@@ -121,6 +121,9 @@ describe('the note of operations', () => {
     expect(operationsNote({ ...cell, tables: 'sent' }, 'encoder', 'byte')).toContain(
       'without what its tables take',
     );
+    expect(operationsNote({ ...cell, coder: 'fields' }, 'encoder', 'byte')).toContain(
+      'the most of one record: ',
+    );
     expect(operationsNote(cell, 'decoder', 'byte')).toBeUndefined();
   });
 });

@@ -122,18 +122,25 @@ async function tryFiles(files: readonly string[], options: TryOptions): Promise<
       caution: isOneMessage
         ? 'These rates hold for ONE long message. If the product sends packets, ask again with its messages.'
         : 'No speed was measured here, and one split of one corpus can mislead.',
-      next: nextCommand(files, options, isOneMessage),
+      next: nextCommand(files, options, isOneMessage, inPieces),
     }),
   );
   if (record.partial) throw new CommandEnd(exitCodes.interrupted);
   if (record.cells.some((cell) => !cell.verified)) throw new CommandEnd(exitCodes.cellFailed);
 }
 
-function nextCommand(files: readonly string[], options: TryOptions, whole: boolean): string {
+function nextCommand(
+  files: readonly string[],
+  options: TryOptions,
+  whole: boolean,
+  inPieces: boolean,
+): string {
   const names = files.map((file) => (/[^\w./-]/.test(file) ? `'${file}'` : file)).join(' ');
   if (whole) {
     const { record } = options;
-    const messages = record === undefined ? 'every=192' : `fill=192,unit=${record}`;
+    const packets = record === undefined ? 'every=192' : `fill=192,unit=${record}`;
+    // Filled messages, and millions of them, are not read in pieces.
+    const messages = inPieces ? 'every=4096' : packets;
     return `bitassay try ${names}${typedOptions(options, messages)}`;
   }
   return `bitassay entropy ${names}${typedOptions(options)}`;
