@@ -1,14 +1,17 @@
 import { readFileSync } from 'node:fs';
 import { fileURLToPath } from 'node:url';
-import { describe, expect, it } from 'vitest';
+import { beforeAll, describe, expect, it } from 'vitest';
 import { parseCandidates } from '../src/coders/candidate.ts';
 import type { Reset, TablePolicy } from '../src/coders/contract.ts';
+import { chooseForCorpus } from '../src/compare/choose-corpus.ts';
+import type { Limits } from '../src/compare/limits.ts';
 import type { CorpusSpec } from '../src/corpus/corpus.ts';
 import type { SplitRule } from '../src/corpus/decide-split.ts';
 import { parsePlan } from '../src/corpus/plan.ts';
 import { loadCorpusData } from '../src/harness/load-corpus-data.ts';
 import { requestOf } from '../src/harness/plan-request.ts';
 import { type MessagePairs, type RunResult, runAll } from '../src/harness/run-all.ts';
+import type { CellRecord } from '../src/harness/run-record.ts';
 import { intoBlocks, pairedDifference } from '../src/statistics/paired-difference.ts';
 
 /**
@@ -137,7 +140,9 @@ describe('sent as short messages', () => {
 });
 
 describe('sent as filled packets', () => {
-  it('telemetry.bin: fields:auto carries at least twice the records of any byte-wise candidate', async () => {
+  let result: RunResult;
+
+  beforeAll(async () => {
     const {
       timing: _,
       ageing: __,
@@ -145,10 +150,14 @@ describe('sent as filled packets', () => {
     } = await requestOf(
       parsePlan(readFileSync(`${folder}/plan.yaml`, 'utf8'), `${folder}/plan.yaml`),
     );
-    const { record } = await runAll({
+    result = await runAll({
       ...request,
       corpora: request.corpora.filter(({ name }) => name === 'telemetry'),
     });
+  }, 120_000);
+
+  it('telemetry.bin: fields:auto carries at least twice the records of any byte-wise candidate', () => {
+    const { record } = result;
     const recordsOf = (cells: typeof record.cells) =>
       Math.max(...cells.map(({ units_per_message }) => units_per_message!.mean));
     const byFields = record.cells.filter(({ coder }) => coder === 'fields');
@@ -160,5 +169,67 @@ describe('sent as filled packets', () => {
         `telemetry/arith:order=0,position=24@${policy}/message`,
       );
     expect(recordsOf(byFields) / recordsOf(byBytes)).toBeGreaterThanOrEqual(2);
-  }, 120_000);
+  });
+
+  /** Each step tightens the one before; what was picked there must break the new limit, and nothing better may be left. */
+  const steps: [reason: string, limits: Limits, pick: string | undefined][] = [
+    ['nothing is asked', {}, 'fields:auto@shipped'],
+    [
+      'the tables of all fields are too large',
+      { max: { flash_bytes: 8000 } },
+      'arith:order=0,position=24@learned',
+    ],
+    [
+      'counts for each place in the record are too large; of the orders that cannot be told apart the smallest remains',
+      { max: { flash_bytes: 8000, ram_bytes: 16_384 } },
+      'arith:order=1@learned',
+    ],
+    [
+      'and so are counts for each byte before',
+      { max: { flash_bytes: 8000, ram_bytes: 4096 } },
+      'arith:order=0@learned',
+    ],
+    [
+      'no counts at all: two static coders cannot be told apart, and Huffman takes less',
+      { max: { flash_bytes: 8000, ram_bytes: 1024 } },
+      'huffman@shipped',
+    ],
+    ['no table fits', { max: { flash_bytes: 500, ram_bytes: 1024 } }, 'fixed@none'],
+    [
+      'more units are asked for than equal widths carry',
+      { max: { flash_bytes: 500, ram_bytes: 1024 }, min: { units_per_message: 8 } },
+      undefined,
+    ],
+  ];
+
+  it('telemetry.bin: the pick changes, rightly, as each limit tightens', () => {
+    const { record, messages } = result;
+    const choose = (limits: Limits) =>
+      chooseForCorpus(record, messages, 'telemetry', { limits, cost: {}, end: 'encoder' });
+    let before: CellRecord | undefined;
+    for (const [reason, limits, expected] of steps) {
+      const { pick, nearest } = choose(limits);
+      expect(pick?.cell.id, reason).toBe(
+        expected === undefined ? undefined : `telemetry/${expected}/message`,
+      );
+      const broken = ({ encoder, units_per_message }: CellRecord) =>
+        (encoder?.flash_bytes ?? Infinity) > (limits.max?.flash_bytes ?? Infinity) ||
+        (encoder?.ram_bytes ?? Infinity) > (limits.max?.ram_bytes ?? Infinity) ||
+        units_per_message!.mean < (limits.min?.units_per_message ?? 0);
+      if (before !== undefined) expect(broken(before), reason).toBe(true);
+      // Independent of the choice: no cell that meets the limits carries more than those the corpus cannot tell from the pick.
+      const meeting = record.cells.filter((cell) => !cell.reference && !broken(cell));
+      const most = Math.max(0, ...meeting.map((cell) => cell.units_per_message!.mean));
+      if (pick === undefined) {
+        expect(meeting).toEqual([]);
+        expect(nearest).toHaveLength(3);
+      } else {
+        const rank = choose({}).alternatives.find(
+          (a) => a.cell.units_per_message!.mean === most,
+        )?.rank;
+        expect(pick.cell.units_per_message!.mean === most || pick.rank === rank, reason).toBe(true);
+      }
+      before = pick?.cell;
+    }
+  });
 });
