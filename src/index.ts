@@ -80,6 +80,7 @@ export { type RunRequest, type RunResult, runAll } from './harness/run-all.ts';
 export { readRunRecord, writeRunFolder } from './harness/run-folder.ts';
 export { type RunPlanOptions, runPlan } from './harness/run-plan.ts';
 export { type RunRecord, runRecordJsonSchema } from './harness/run-record.ts';
+export { type MannerResult, type RunManner, runWith } from './harness/run-with.ts';
 export { chooseScreen } from './report/choose-screen.ts';
 export { runScreen } from './report/run-screen.ts';
 export { tryScreen } from './report/try-screen.ts';

@@ -10,6 +10,9 @@ export function cacheNotes({ record, cellsTaken, cacheTrouble }: MannerResult): 
       : [
           `bits of ${countText(cellsTaken)} of ${countText(cells)} cells came from the cache; --fresh codes them anew`,
         ]),
+    ...(record.partial && cacheTrouble === undefined
+      ? ['interrupted; the same command goes on where this run ended']
+      : []),
     ...(cacheTrouble === undefined
       ? []
       : [`nothing could be kept in the cache: ${cacheTrouble}; the run is whole without it`]),

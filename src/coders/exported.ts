@@ -7,6 +7,9 @@ const UNEXPORTED_KEYS = ['after', 'stored', 'tables_in_set'] as const;
 /** Highest order of `arith` that is exported: tables beyond it belong into no flash. */
 const MOST_EXPORTED_ORDER = 2;
 
+const whyNotRange = (range: unknown): string | undefined =>
+  String(range) === '32' ? undefined : 'only range=32 is exported, which fits 32-bit integers';
+
 /** For each coder that can be exported with shipped tables: why one with these parameters cannot, or undefined. */
 const EXPORTED: ReadonlyMap<string, (values: ParameterValues) => string | undefined> = new Map([
   ['huffman', () => undefined],
@@ -19,11 +22,10 @@ const EXPORTED: ReadonlyMap<string, (values: ParameterValues) => string | undefi
     ({ order, range }: ParameterValues) => {
       if (Number(order) > MOST_EXPORTED_ORDER)
         return `only orders up to ${MOST_EXPORTED_ORDER} are exported`;
-      return String(range) === '32'
-        ? undefined
-        : 'only range=32 is exported, which fits 32-bit integers';
+      return whyNotRange(range);
     },
   ],
+  ['fields', ({ range }: ParameterValues) => whyNotRange(range)],
 ]);
 
 /** Names of the coders that have an exported form. */

@@ -6,8 +6,7 @@ import { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import { newSymbolArray } from '../symbols/sequence.ts';
 import type { Coder, CoderEntry, Declaration, Setup } from './contract.ts';
 import { fixedCosts, fixedOperations } from './cost-fixed.ts';
-import { WordDraft } from './fill-drafts.ts';
-import { fillingEncoder } from './fill-messages.ts';
+import { countingFiller } from './fill-counted.ts';
 import { MessageWalk, writeSymbolCount } from './message-frame.ts';
 import { MessageLedger } from './message-ledger.ts';
 import { MessagePieces } from './message-pieces.ts';
@@ -92,17 +91,8 @@ const coder: Coder = {
 
   filler(setup) {
     const width = symbolWidth(setup.alphabetSize);
-    const kernel = kernelOf(setup);
-    return fillingEncoder(
-      setup,
-      new WordDraft(setup, {
-        encode(writer, symbols, from, to) {
-          if (kernel !== undefined) kernel.encode(writer, symbols, from, to);
-          else for (let i = from; i < to; i++) writer.writeBits(symbols[i], width);
-        },
-        bitsOf: (_, from, to) => (to - from) * width,
-      }),
-    );
+    const { fill: _, ...plain } = setup;
+    return countingFiller(setup, coder.encoder(plain), (_, from, to) => (to - from) * width);
   },
 
   growsSteadily: () => true,

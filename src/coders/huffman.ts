@@ -4,8 +4,7 @@ import { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import type { Coder, CoderEntry, Declaration, Setup, Tables } from './contract.ts';
 import { PREFIX_WINDOW_BYTES, prefixCosts, prefixOperations } from './cost-prefix.ts';
 import { sentPrefixCosts, sentPrefixOperations } from './cost-sent-prefix.ts';
-import { WordDraft } from './fill-drafts.ts';
-import { fillingEncoder } from './fill-messages.ts';
+import { countingFiller } from './fill-counted.ts';
 import { symbolWidth } from './fixed.ts';
 import { sentReader, shippedReader } from './huffman-decoder.ts';
 import { messageEncoder, streamEncoder } from './huffman-encoder.ts';
@@ -135,10 +134,14 @@ function createHuffman(values: ParameterValues): Coder {
       return streamEncoder(setup, words, table, maxBits);
     },
 
-    filler: (setup) =>
-      setup.policy === 'shipped'
-        ? fillingEncoder(setup, new WordDraft(setup, shippedEncoder(setup)))
-        : undefined,
+    filler(setup) {
+      if (setup.policy !== 'shipped') return undefined;
+      const { fill: _, ...plain } = setup;
+      const words = shippedEncoder(setup);
+      return countingFiller(setup, streamEncoder(plain, words, undefined, 0), (symbols, from, to) =>
+        words.bitsOf(symbols, from, to),
+      );
+    },
 
     growsSteadily: (setup) => setup.policy !== 'sent',
 

@@ -27,9 +27,10 @@ const coderOf = (cell: CellRecord): string => cell.id.slice(cell.corpus.length +
 
 /**
  * One coder for several corpora against one for each: how much more each shared coder sends on each corpus than the best that meets
- * the limits there. Corpora without a weight in the plan weigh as much as their source symbols.
+ * the limits there. Where the plan
+ * gives no weight at all, corpora weigh as much as their symbols; where it gives some, the others weigh 1.
  *
- * @param written  weights that the plan gives, by corpus; all or none of the corpora
+ * @param written  weights that the plan gives, by corpus
  * @returns undefined for a run of one corpus, or where some corpus has no cell that meets the limits
  */
 export function chooseAcross(
@@ -38,7 +39,10 @@ export function chooseAcross(
   written: Readonly<Record<string, number>>,
 ): CorporaChoice | undefined {
   if (choices.length < 2) return undefined;
-  const raw = choices.map(({ corpus }) => written[corpus] ?? symbolCounts.get(corpus) ?? 0);
+  const weighted = Object.keys(written).length > 0;
+  const raw = choices.map(
+    ({ corpus }) => written[corpus] ?? (weighted ? 1 : (symbolCounts.get(corpus) ?? 0)),
+  );
   const sum = raw.reduce((a, b) => a + b, 0);
   if (sum === 0) return undefined;
   const weights = new Map(choices.map(({ corpus }, i) => [corpus, raw[i] / sum]));

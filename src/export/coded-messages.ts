@@ -1,4 +1,5 @@
 import type { Coder, Setup } from '../coders/contract.ts';
+import { CorruptStreamError, LimitError } from '../errors/errors.ts';
 import type { SymbolArray, SymbolSequence } from '../symbols/sequence.ts';
 
 /** One message and what the program itself makes of it. */
@@ -31,26 +32,29 @@ export function codedMessages(
 }
 
 /**
- * What the program's own decoder makes of the bytes of one message.
+ * What the program's own decoder makes of the bytes of one message; undefined where it refuses them.
  * @param count  the symbols of the message, where the framing grants them, else the most that are allowed
- * @returns undefined where it refuses them
  */
-export function decodedMessage(
+export function messageDecoder(
   coder: Coder,
   setup: Setup,
-  bytes: Uint8Array,
   count: number,
-): SymbolArray | undefined {
+): (bytes: Uint8Array) => SymbolArray | undefined {
   const decoder = coder.decoder(setup, { maxSymbols: count });
-  try {
-    const { sequence } = decoder.decode({
-      bytes,
-      messageCount: 1,
-      ...(setup.lengths === 'link' ? { messageEndsBits: Float64Array.of(bytes.length * 8) } : {}),
-      ...(setup.lengths === 'known' ? { symbolCounts: Uint32Array.of(count) } : {}),
-    });
-    return sequence.symbols;
-  } catch {
-    return undefined;
-  }
+  return (bytes) => {
+    try {
+      const { sequence } = decoder.decode({
+        bytes,
+        messageCount: 1,
+        ...(setup.lengths === 'link'
+          ? { messageEndsBits: Float64Array.of(bytes.length * 8) }
+          : {}),
+        ...(setup.lengths === 'known' ? { symbolCounts: Uint32Array.of(count) } : {}),
+      });
+      return sequence.symbols;
+    } catch (error) {
+      if (error instanceof CorruptStreamError || error instanceof LimitError) return undefined;
+      throw error;
+    }
+  };
 }

@@ -68,10 +68,13 @@ export function exportSubject(
   const train = code(candidate, filling, corpus.train);
   const test = corpus.test.symbols.length === 0 ? undefined : code(candidate, filling, corpus.test);
   const { fill: _, ...setup } = filling;
+  const { record } = setup;
+  // Coders of records count those, where the product counts nothing larger.
+  const counted = candidate.declaration.needsRecord && record !== undefined;
   return {
     candidate,
     corpus,
-    setup,
+    setup: counted ? { unitSymbols: record.bytes, ...setup } : setup,
     train: train.sequence,
     trainRate: train.rate,
     ...(test === undefined ? {} : { test: test.sequence, testRate: test.rate }),

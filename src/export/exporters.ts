@@ -4,6 +4,7 @@ import { exportableCoders, whyNotExported } from '../coders/exported.ts';
 import { InputError } from '../errors/errors.ts';
 import { exportArith } from './export-arith.ts';
 import { exportBlockHuffman } from './export-block-huffman.ts';
+import { exportFields } from './export-fields.ts';
 import { exportHuffman } from './export-huffman.ts';
 import { exportInteger } from './export-integer.ts';
 import type { ExportedCoder, Exporter } from './exporter.ts';
@@ -13,6 +14,7 @@ const exporters: ReadonlyMap<string, Exporter> = new Map([
   ['huffman', exportHuffman],
   ['block-huffman', exportBlockHuffman],
   ['arith', exportArith],
+  ['fields', exportFields],
   ['rice', exportInteger],
   ['golomb', exportInteger],
   ['exp-golomb', exportInteger],

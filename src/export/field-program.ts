@@ -1,4 +1,4 @@
-import type { FieldShape } from './field-tables.ts';
+import type { FieldShape } from './field-arrays.ts';
 
 /**
  * Records by their fields, decision for decision those of `src/models/field-predictor.ts` and `field-records.ts`. What a plan does not
@@ -168,10 +168,10 @@ fn add_product(value, part, weight) {
     size = 0 - weight;
   }
   let upper = (number >> 16) * size;
-  let low = (number & 0xffff) * size;
-  let product = low + (upper << 16);
+  let lower = (number & 0xffff) * size;
+  let product = lower + (upper << 16);
   let high = (upper >> 16) - (part_signed[part] & (number >> 31)) * size;
-  if (product < low) {
+  if (product < lower) {
     high = high + 1;
   }
   if (size != weight) {

@@ -6,7 +6,7 @@ import { cFiles } from './c-files.ts';
 import type { ExportSubject } from './export-subject.ts';
 import type { ExportedCoder } from './exporter.ts';
 import { type MeasuredEnd, measureC } from './measure-c.ts';
-import { type Proof, prove } from './prove.ts';
+import { expectation, type Proof, prove } from './prove.ts';
 import { buildC } from './run-c.ts';
 import { loadModule } from './run-ts.ts';
 import { tsFile } from './ts-file.ts';
@@ -44,6 +44,7 @@ export async function proveExport(
   const { alphabetSize, unitSymbols = 1 } = setup;
   const adversarial = adversarialMessages(alphabetSize, unitSymbols, ADVERSARIAL_MESSAGES, 1);
   const sequences = test === undefined ? [train, adversarial] : [train, test, adversarial];
+  const expected = expectation(candidate, setup, sequences, DAMAGED_MESSAGES);
   const naming = { name: 'proof', provenance: ['Made for a proof.'] };
   const folder = mkdtempSync(join(tmpdir(), 'bitassay-proof-'));
   const proofs: NamedProof[] = [];
@@ -54,7 +55,7 @@ export async function proveExport(
         const run = buildC(files, naming.name, setup, folder, { sanitize, compiler });
         const what = sanitize ? `C99, ${compiler} with sanitizers` : `C99, ${compiler} -Os`;
         const sizes = sanitize ? {} : sizesOf(folder, naming.name, compiler);
-        const proof = prove(candidate, setup, sequences, run, DAMAGED_MESSAGES);
+        const proof = prove(expected, run);
         proofs.push({ what, ...proof, ...sizes });
       }
     }
@@ -64,7 +65,7 @@ export async function proveExport(
       const run = await loadModule(file);
       proofs.push({
         what: 'TypeScript, its types taken off',
-        ...prove(candidate, setup, sequences, run, DAMAGED_MESSAGES),
+        ...prove(expected, run),
       });
     }
   } finally {

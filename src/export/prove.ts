@@ -1,8 +1,8 @@
 import type { Candidate } from '../coders/candidate.ts';
-import type { Coder, Setup } from '../coders/contract.ts';
+import type { Setup } from '../coders/contract.ts';
 import { SeededGenerator } from '../statistics/generator.ts';
 import type { SymbolArray, SymbolSequence } from '../symbols/sequence.ts';
-import { type CodedMessage, codedMessages, decodedMessage } from './coded-messages.ts';
+import { type CodedMessage, codedMessages, messageDecoder } from './coded-messages.ts';
 
 /** What an exported coder answers; `status` 0 is done. */
 export interface Answer {
@@ -63,20 +63,51 @@ function damagedBytes(coded: readonly CodedMessage[], count: number, seed: numbe
   });
 }
 
-/**
- * Holds an exported coder to the program's own: messages byte by byte, decodes symbol by symbol, damaged bytes by verdict.
- * @param sequences  train, test, adversarial messages
- * @throws ParityError that names the first message that differs
- */
-export function prove(
+/** What the program's own coder makes of messages and of damaged bytes: found once, held against every export. */
+export interface Expectation {
+  readonly messages: readonly CodedMessage[];
+  readonly damaged: readonly DamagedMessage[];
+}
+
+interface DamagedMessage {
+  readonly bytes: Uint8Array;
+  /** Symbols that its decoder has room for, or is told to give. */
+  readonly capacity: number;
+  /** Undefined where the bytes are refused. */
+  readonly symbols: SymbolArray | undefined;
+}
+
+/** Room that a decoder of damaged bytes is given, in symbols. */
+const DAMAGED_CAPACITY = 4096;
+
+/** @param sequences  train, test, adversarial messages */
+export function expectation(
   candidate: Candidate,
   setup: Setup,
   sequences: readonly SymbolSequence[],
-  run: TaskRunner,
   damagedCount: number,
-): Proof {
+): Expectation {
   const coder = candidate.create();
   const messages = sequences.flatMap((sequence) => codedMessages(coder, setup, sequence));
+  const { unitSymbols = 1 } = setup;
+  const capacity =
+    setup.lengths === 'known'
+      ? 8 * unitSymbols
+      : Math.floor(DAMAGED_CAPACITY / unitSymbols) * unitSymbols;
+  const decode = messageDecoder(coder, setup, capacity);
+  const damaged = damagedBytes(messages, damagedCount, 1).map((bytes) => ({
+    bytes,
+    capacity,
+    symbols: decode(bytes),
+  }));
+  return { messages, damaged };
+}
+
+/**
+ * Holds an exported coder to the program's own: messages byte by byte, decodes symbol by symbol, damaged bytes by verdict.
+ * @throws ParityError that names the first message that differs
+ */
+export function prove({ messages, damaged }: Expectation, run: TaskRunner): Proof {
   const encoded = run(messages.map(({ symbols }) => ({ kind: 'encode', symbols })));
   messages.forEach(({ bytes }, i) => {
     const answer = encoded[i];
@@ -96,42 +127,27 @@ export function prove(
       `message ${i} is decoded otherwise: status ${answer.status}, ${answer.elements.length} symbols of ${symbols.length}, ${answer.usedBytes} bytes of ${bytes.length}`,
     );
   });
-  const refused = proveDamaged(coder, setup, messages, run, damagedCount);
+  proveDamaged(damaged, run);
   return {
     messages: messages.length,
     symbols: messages.reduce((sum, { symbols }) => sum + symbols.length, 0),
     bytes: messages.reduce((sum, { bytes }) => sum + bytes.length, 0),
-    damaged: damagedCount,
-    refused,
+    damaged: damaged.length,
+    refused: damaged.filter(({ symbols }) => symbols === undefined).length,
   };
 }
 
-/** Room that a decoder of damaged bytes is given, in symbols. */
-const DAMAGED_CAPACITY = 4096;
-
-function proveDamaged(
-  coder: Coder,
-  setup: Setup,
-  messages: readonly CodedMessage[],
-  run: TaskRunner,
-  count: number,
-): number {
-  const { unitSymbols = 1 } = setup;
-  const capacity = Math.floor(DAMAGED_CAPACITY / unitSymbols) * unitSymbols;
-  const granted = setup.lengths === 'known' ? 8 * unitSymbols : capacity;
-  const damaged = damagedBytes(messages, count, 1);
-  const answers = run(damaged.map((bytes) => ({ kind: 'decode', bytes, capacity: granted })));
-  let refused = 0;
-  damaged.forEach((bytes, i) => {
-    const own = decodedMessage(coder, setup, bytes, granted);
+function proveDamaged(damaged: readonly DamagedMessage[], run: TaskRunner): void {
+  const answers = run(damaged.map(({ bytes, capacity }) => ({ kind: 'decode', bytes, capacity })));
+  damaged.forEach(({ bytes, symbols }, i) => {
     const answer = answers[i];
-    if (own === undefined) refused++;
     const agree =
-      own === undefined ? answer.status !== 0 : answer.status === 0 && same(answer.elements, own);
+      symbols === undefined
+        ? answer.status !== 0
+        : answer.status === 0 && same(answer.elements, symbols);
     if (agree) return;
     throw new ParityError(
-      `damaged bytes ${hex(bytes)} (${bytes.length}) are ${own === undefined ? 'refused' : 'decoded'} here and ${answer.status === 0 ? 'decoded' : `refused (${answer.status})`} there`,
+      `damaged bytes ${hex(bytes)} (${bytes.length}) are ${symbols === undefined ? 'refused' : 'decoded'} here and ${answer.status === 0 ? 'decoded' : `refused (${answer.status})`} there`,
     );
   });
-  return refused;
 }

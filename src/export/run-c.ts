@@ -57,11 +57,14 @@ export function buildC(
 /** Tasks handed to one process at once: their answers must fit into a pipe's buffer here. */
 const BATCH = 20_000;
 
+/** What kind of task, a length, a capacity. */
+const MOST_HEAD_BYTES = 1 + 4 + 4;
+
 function runDriver(program: string, tasks: readonly Task[], elementBytes: number): Answer[] {
   const answers: Answer[] = [];
   for (let from = 0; from < tasks.length; from += BATCH) {
     const batch = tasks.slice(from, from + BATCH);
-    const input = Buffer.concat(batch.map((task) => written(task)));
+    const input = written(batch);
     const done = spawnSync(program, { input, maxBuffer: 2 ** 30 });
     if (done.error)
       throw new ParityError(`the exported program cannot be run: ${done.error.message}`);
@@ -75,16 +78,24 @@ function runDriver(program: string, tasks: readonly Task[], elementBytes: number
   return answers;
 }
 
-function written(task: Task): Buffer {
-  const numbers =
-    task.kind === 'encode' ? [task.symbols.length] : [task.bytes.length, task.capacity];
-  const head = Buffer.alloc(1 + 4 * numbers.length);
-  head[0] = task.kind.charCodeAt(0);
-  numbers.forEach((value, i) => {
-    head.writeUInt32LE(value, 1 + 4 * i);
-  });
-  const { buffer, byteOffset, byteLength } = task.kind === 'encode' ? task.symbols : task.bytes;
-  return Buffer.concat([head, Buffer.from(buffer, byteOffset, byteLength)]);
+/** The tasks one after another, as the driver reads them. */
+function written(tasks: readonly Task[]): Buffer {
+  const dataOf = (task: Task): Uint8Array => {
+    const { buffer, byteOffset, byteLength } = task.kind === 'encode' ? task.symbols : task.bytes;
+    return new Uint8Array(buffer, byteOffset, byteLength);
+  };
+  const size = tasks.reduce((sum, task) => sum + MOST_HEAD_BYTES + dataOf(task).length, 0);
+  const input = Buffer.allocUnsafe(size);
+  let at = 0;
+  for (const task of tasks) {
+    const data = dataOf(task);
+    input[at++] = task.kind.charCodeAt(0);
+    at = input.writeUInt32LE(task.kind === 'encode' ? task.symbols.length : data.length, at);
+    if (task.kind === 'decode') at = input.writeUInt32LE(task.capacity, at);
+    input.set(data, at);
+    at += data.length;
+  }
+  return input.subarray(0, at);
 }
 
 function readAnswers(
@@ -98,10 +109,21 @@ function readAnswers(
     const [status, count, usedBytes] = [0, 4, 8].map((i) => output.readUInt32LE(at + i));
     at += 12;
     const size = task.kind === 'encode' ? 1 : elementBytes;
-    const elements = Array.from({ length: count }, (_, i) =>
-      output.readUIntLE(at + i * size, size),
-    );
+    const elements = elementsAt(output, at, count, size);
     at += count * size;
     answers.push({ status, elements, usedBytes });
   }
+}
+
+/** Elements of 1, 2 or 4 bytes, low first, at any place. */
+function elementsAt(
+  output: Buffer,
+  at: number,
+  count: number,
+  size: number,
+): Uint8Array | Uint16Array | Uint32Array {
+  if (size === 1) return output.subarray(at, at + count);
+  const elements = size === 2 ? new Uint16Array(count) : new Uint32Array(count);
+  for (let i = 0; i < count; i++) elements[i] = output.readUIntLE(at + i * size, size);
+  return elements;
 }

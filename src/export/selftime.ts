@@ -2,7 +2,7 @@ import type { Candidate } from '../coders/candidate.ts';
 import type { Setup } from '../coders/contract.ts';
 import { SeededGenerator } from '../statistics/generator.ts';
 import { newSymbolArray, type SymbolArray } from '../symbols/sequence.ts';
-import { decodedMessage } from './coded-messages.ts';
+import { messageDecoder } from './coded-messages.ts';
 import type { ExportedCoder } from './exporter.ts';
 
 /** About how many symbols are coded again and again. */
@@ -21,12 +21,12 @@ function typicalSymbols(
   const random = new SeededGenerator(1);
   const bytes = new Uint8Array(Math.ceil((count * longestSymbolBits) / 8) + 16);
   for (let i = 0; i < bytes.length; i++) bytes[i] = random.integer(0, 255);
-  const found = decodedMessage(
+  const decode = messageDecoder(
     candidate.create(),
     { ...setup, lengths: 'known', align: 8 },
-    bytes,
     count,
   );
+  const found = decode(bytes);
   if (found?.length === count) return found;
   const symbols = newSymbolArray(alphabetSize, count);
   for (let i = 0; i < count; i++) symbols[i] = random.integer(0, alphabetSize - 1);

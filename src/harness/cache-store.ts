@@ -4,6 +4,7 @@ import { readFile, rm, unlink, utimes } from 'node:fs/promises';
 import { join } from 'node:path';
 import { deserialize, serialize } from 'node:v8';
 import { BitassayError } from '../errors/errors.ts';
+import { Lanes } from './lanes.ts';
 import { writeWhole } from './write-whole.ts';
 
 /** Most bytes that the cache keeps; those used longest ago go first. */
@@ -30,6 +31,8 @@ interface FileFacts {
 export class CacheStore {
   readonly folder: string;
   readonly #entries: string;
+  /** A run asks for thousands of entries at once; a process may hold some hundred files open. */
+  readonly #reading = new Lanes(16);
   #trouble: string | undefined;
 
   constructor(folder: string) {
@@ -47,7 +50,11 @@ export class CacheStore {
   }
 
   /** What was kept under the key, undefined where there is nothing sound. */
-  async get(key: string): Promise<unknown> {
+  get(key: string): Promise<unknown> {
+    return this.#reading.run(() => this.#read(key));
+  }
+
+  async #read(key: string): Promise<unknown> {
     const path = this.#pathOf(key);
     let content: Buffer;
     try {

@@ -55,7 +55,8 @@ interface MessagePlace {
  *
  * The figures depend on the cell, its data and the plan's seed alone. Cost: for each kind of damage at most 2000 decodes, of
  * at most 2²² symbols in all unless 16 decodes take more.
- * @param pause  awaited now and then; may throw to stop
+ * @param pause       awaited now and then; may throw to stop
+ * @param mostEvents  damages of each kind, at most
  * @throws PromiseError where a decoder throws what no decoder may, whatever its bytes; what coding and `pause` throw
  */
 export async function damageCell(
@@ -63,8 +64,9 @@ export async function damageCell(
   corpus: CorpusData,
   plan: DamagePlan,
   pause: () => Promise<void>,
+  mostEvents = MOST_EVENTS,
 ): Promise<CellDamage[]> {
-  const damage = new DamagedCell(cell, await codeUnits(cell, corpus, pause));
+  const damage = new DamagedCell(cell, await codeUnits(cell, corpus, pause), mostEvents);
   const figures: CellDamage[] = [];
   for (const experiment of damageExperiments(plan)) {
     const figure = await damage.simulate(experiment, pause);
@@ -79,9 +81,11 @@ class DamagedCell {
   readonly #alone: boolean;
   readonly #places: readonly MessagePlace[];
   readonly #longest: number;
+  readonly #mostEvents: number;
 
-  constructor(cell: Cell, units: readonly CodedUnit[]) {
+  constructor(cell: Cell, units: readonly CodedUnit[], mostEvents: number) {
     this.#cell = cell;
+    this.#mostEvents = mostEvents;
     this.#units = units;
     this.#alone = decodesAlone(cell);
     this.#places = units.flatMap(({ messages }, unit) =>
@@ -154,7 +158,7 @@ class DamagedCell {
   /** How many damages are simulated: fewer where each takes long to decode. */
   #eventCount({ kind }: DamageExperiment, sums: Float64Array): number {
     // Nothing needs to be decoded to know what is lost.
-    if (kind === 'lose_messages' && this.#alone) return MOST_EVENTS;
+    if (kind === 'lose_messages' && this.#alone) return this.#mostEvents;
     let symbols = 0;
     this.#places.forEach(({ unit, index }, i) => {
       const { messages } = this.#units[unit];
@@ -165,7 +169,7 @@ class DamagedCell {
     });
     const mean = symbols / sums[sums.length - 1];
     const affordable = Math.floor(MOST_SYMBOLS / Math.max(1, mean));
-    return Math.max(FEWEST_EVENTS, Math.min(MOST_EVENTS, affordable));
+    return Math.min(this.#mostEvents, Math.max(FEWEST_EVENTS, affordable));
   }
 
   #stretchOf({ unit, index }: MessagePlace): { stretch: Stretch; index: number } {

@@ -1,5 +1,6 @@
 import { megabytesText } from '../corpus/byte-size.ts';
 import type { CorpusSpec } from '../corpus/corpus.ts';
+import { countMessages } from '../corpus/count-messages.ts';
 import { findFiles } from '../corpus/find-files.ts';
 import { inputFileBytes } from '../corpus/read-file.ts';
 import type { SampleRule } from '../corpus/sample-rule.ts';
@@ -15,6 +16,10 @@ const MODEL_SHARE = 0.6;
 const BYTES_A_MESSAGE = 120;
 /** Held for each symbol where data are taken as a whole: source, symbols, both coded and decoded, contexts sorted. */
 const WHOLE_BYTES_A_SYMBOL = 32;
+/** Held for each message there. */
+const WHOLE_BYTES_A_MESSAGE = 160;
+/** What a message of a sample is taken to have. */
+const SAMPLED_MESSAGE_BYTES = 32;
 
 /** What reading in pieces may take. */
 export interface StreamingLimits {
@@ -32,7 +37,7 @@ export function streamingLimits(memoryBytes: number): StreamingLimits {
 }
 
 /**
- * Whether a corpus can be taken as a whole within the memory, by the size of its files.
+ * Whether a corpus can be taken as a whole within the memory, by the size of its files and the number of its messages.
  * @throws InputError where it cannot, and cannot be read in pieces either; as intake does for files
  */
 export async function fitsMemory(
@@ -40,12 +45,21 @@ export async function fitsMemory(
   baseFolder: string,
   memoryBytes: number,
 ): Promise<boolean> {
-  let bytes = 0;
-  for (const { absolutePath, path } of await findFiles(spec.files, baseFolder))
-    bytes += await inputFileBytes(absolutePath, path);
+  const found = await findFiles(spec.files, baseFolder);
+  const sizes: number[] = [];
+  for (const { absolutePath, path } of found) sizes.push(await inputFileBytes(absolutePath, path));
+  let bytes = sizes.reduce((a, b) => a + b, 0);
   if (spec.sample !== undefined) bytes = Math.min(bytes, sampleBytes(spec.sample, bytes));
   const { maxSymbolsPerByte } = parseSymbolTaker(spec.symbols);
-  const needed = PROGRAM_BYTES + bytes + bytes * maxSymbolsPerByte * WHOLE_BYTES_A_SYMBOL;
+  let needed = PROGRAM_BYTES + bytes + bytes * maxSymbolsPerByte * WHOLE_BYTES_A_SYMBOL;
+  if (needed <= memoryBytes) {
+    // Of a sample nothing is read but its blocks.
+    const messages =
+      spec.sample === undefined
+        ? found.reduce((sum, f, i) => sum + countMessages(f, sizes[i], maxSymbolsPerByte, spec), 0)
+        : bytes / SAMPLED_MESSAGE_BYTES;
+    needed += messages * WHOLE_BYTES_A_MESSAGE;
+  }
   if (needed <= memoryBytes) return true;
   const refusal = spec.sample === undefined ? whyNotStreamed(spec) : 'a sample is taken as a whole';
   if (refusal === undefined) return false;

@@ -100,10 +100,10 @@ const STEPS: readonly (CellStep | 'begin')[] = ['begin', 'train', 'encode', 'dec
 const PLACES = [
   '',
   '',
-  ' while it was being trained',
-  ' while it encoded',
-  ' while it decoded',
-  ' while its bits were being accounted for',
+  ', while it was being trained',
+  ', while it encoded',
+  ', while it decoded',
+  ', while its bits were being accounted for',
 ];
 
 /** What is sent to a worker. */

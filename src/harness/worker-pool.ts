@@ -211,15 +211,20 @@ export class WorkerPool implements Executor {
     control.begun?.();
     this.#pool ??= this.#start();
     const pool = await this.#pool;
-    const watched = this.#watch.begin(bounds, control);
-    const posted: PostedJob = { job, board: watched.board.numbers };
-    try {
-      return (await pool.run(posted, { signal: watched.signal })) as Answer<K>;
-    } catch (error) {
-      if (watched.isSuspect) return 'suspect';
-      return { failure: watched.reason ?? endText(error, this.#budget, watched.board.place) };
-    } finally {
-      this.#watch.end(watched);
+    // A worker can end before it begins a job, by what an earlier one left behind; a second one that does so ends by itself.
+    for (let tries = 1; ; tries++) {
+      const watched = this.#watch.begin(bounds, control);
+      const posted: PostedJob = { job, board: watched.board.numbers };
+      try {
+        return (await pool.run(posted, { signal: watched.signal })) as Answer<K>;
+      } catch (error) {
+        if (watched.isSuspect) return 'suspect';
+        const failure = watched.reason ?? endText(error, this.#budget, watched.board.place);
+        if (watched.board.step > 0) return { failure };
+        if (tries > 1) throw new EnvironmentError('workers do not start', { got: failure });
+      } finally {
+        this.#watch.end(watched);
+      }
     }
   }
 }

@@ -73,7 +73,7 @@ function corpusLines(
       paragraph(line, columns),
     ),
     ...section('Room under each limit', pick.verdicts.length === 0 ? [] : roomTable(pick)),
-    ...section('Cells that no other beats in everything', frontTable(choice)),
+    ...section('Cells that no other beats in everything', frontTable(choice, columns)),
     ...section('Beaten', dominatedLines(choice, columns)),
     ...section(
       'Pick as one limit or cost changes',

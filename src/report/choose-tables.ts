@@ -47,8 +47,32 @@ const sizeOf = (a: Alternative, key: 'flash_bytes' | 'ram_bytes'): string => {
   return figure === undefined ? '–' : figureText(figure.value);
 };
 
+/** Limits in one word each, for a column. */
+const SHORT_WORDS: Readonly<Record<string, string>> = {
+  flash_bytes: 'flash',
+  ram_bytes: 'RAM',
+  code_bytes: 'code',
+  cycles_per_symbol: 'cycles',
+  message_bytes_mean: 'mean',
+  message_bytes_p50: 'p50',
+  message_bytes_p95: 'p95',
+  message_bytes_p99: 'p99',
+  message_bytes_max: 'max',
+  encode_speed: 'encode',
+  decode_speed: 'decode',
+  units_per_message: 'units',
+};
+
+function brokenText({ verdicts }: Alternative): string {
+  return verdicts
+    .filter(({ verdict }) => verdict !== 'pass')
+    .map(({ key }) => key.slice(key.indexOf('.') + 1))
+    .map((name) => SHORT_WORDS[name] ?? name)
+    .join(' ');
+}
+
 /** Cells that nothing dominates, best by the goal first. */
-export function frontTable({ alternatives, goal, pick }: CorpusChoice): string[] {
+export function frontTable({ alternatives, goal, pick }: CorpusChoice, columns: number): string[] {
   const front = alternatives
     .filter(({ onFront }) => onFront)
     .toSorted((a, b) => a.cell.rate! - b.cell.rate!);
@@ -57,9 +81,6 @@ export function frontTable({ alternatives, goal, pick }: CorpusChoice): string[]
   const cycles = front.some((a) => a.figures.of('cycles_per_symbol') !== undefined);
   const rows = front.map((a) => {
     const { cell } = a;
-    const broken = a.verdicts
-      .filter(({ verdict }) => verdict !== 'pass')
-      .map(({ key }) => limitWords(key));
     return [
       `${a.cell.id === pick?.cell.id ? '▸ ' : '  '}${cell.candidate}`,
       cell.tables === 'none' ? '–' : cell.tables,
@@ -73,10 +94,10 @@ export function frontTable({ alternatives, goal, pick }: CorpusChoice): string[]
       sizeOf(a, 'flash_bytes'),
       sizeOf(a, 'ram_bytes'),
       a.rank === undefined ? '–' : String(a.rank),
-      broken.length === 0 ? '' : broken.join(', '),
+      brokenText(a),
     ];
   });
-  return textTable(
+  const lines = textTable(
     [
       { title: '  candidate', right: false },
       { title: 'tables', right: false },
@@ -89,6 +110,9 @@ export function frontTable({ alternatives, goal, pick }: CorpusChoice): string[]
       { title: 'breaks', right: false },
     ],
     rows,
+  );
+  return lines.map((line) =>
+    [...line].length < columns ? line : `${[...line].slice(0, columns - 2).join('')}…`,
   );
 }
 

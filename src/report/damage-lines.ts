@@ -157,6 +157,7 @@ export function damageLines(cells: readonly CellRecord[], noun: string, columns:
       ? `Distance: ${noun}s from the first wrong one until all are right again, at most in 95 % of damages.`
       : '',
     heads.includes('after') ? 'After: messages spoiled behind the damaged ones, on average.' : '',
+    'A message that decodes alone is taken to arrive by itself, its beginning known.',
     rest === 0 ? '' : `${rest === 1 ? 'The other cell' : `The other ${rest} cells`}: run record.`,
   ].filter((text) => text !== '');
   const caution = [

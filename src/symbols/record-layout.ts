@@ -4,6 +4,18 @@ import { bitRangeOf, checkFieldsApart, type RecordField, type RecordShape } from
 /** Largest record that is taken apart, in bytes. */
 const LARGEST_RECORD_BYTES = 4096;
 
+/** Where a part lies in its record. */
+export interface PartPlace {
+  /** The byte of its least significant bits. */
+  readonly lowAt: number;
+  /** Whether the others come before that byte, not after it. */
+  readonly reversed: boolean;
+  /** Bytes that it lies in. */
+  readonly count: number;
+  /** Its lowest bit in the lowest byte. */
+  readonly shift: number;
+}
+
 /**
  * A record taken apart into integers and put together again: declared fields, and what lies between
  * them.
@@ -59,6 +71,16 @@ export class RecordLayout {
 
   get partCount(): number {
     return this.names.length;
+  }
+
+  /** Where each part lies, for a program of its own that takes records apart. */
+  get places(): readonly PartPlace[] {
+    return this.names.map((_, part) => ({
+      lowAt: this.#lowAt[part],
+      reversed: this.#step[part] < 0 && this.#count[part] > 1,
+      count: this.#count[part],
+      shift: this.#shift[part],
+    }));
   }
 
   /** The values of the record at `bytes[at …]`, one a part. */

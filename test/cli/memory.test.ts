@@ -125,7 +125,7 @@ corpora:
 candidates: [huffman]
 tables: [sent]
 timing: {repeats: 0}
-sample: {every: 100, block: 10kB}
+sample: {every: 1000, block: 2kB}
 `,
     );
     const blocks = (...more: string[]) => {
@@ -134,8 +134,8 @@ sample: {every: 100, block: 10kB}
       const text = readFileSync(join(folder, 'sampled.run', 'run.json'), 'utf8');
       return runRecordSchema.parse(JSON.parse(text)).corpora[0].sample?.blocks;
     };
-    expect(blocks()).toBe(5);
-    expect(blocks('--sample', 'reservoir=70kB,block=10kB,seed=2')).toBe(7);
+    expect(blocks()).toBe(3);
+    expect(blocks('--sample', 'reservoir=8kB,block=2kB,seed=2')).toBe(4);
   });
 
   test('refuses a key that there is not', () => {

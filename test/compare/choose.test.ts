@@ -302,6 +302,21 @@ describe('several corpora', () => {
     expect(heavy.leastWorst?.worstRegret).toBeCloseTo(0.2, 12);
   });
 
+  it('weigh 1 where the plan weighs only others', () => {
+    const { weights } = chooseAcross(
+      choices,
+      new Map([
+        ['a', 7],
+        ['b', 9],
+      ]),
+      { b: 0.25 },
+    )!;
+    expect([...weights]).toEqual([
+      ['a', 0.8],
+      ['b', 0.2],
+    ]);
+  });
+
   it('say nothing of one corpus', () => {
     expect(chooseAcross(choices.slice(0, 1), new Map([['a', 1]]), {})).toBeUndefined();
   });

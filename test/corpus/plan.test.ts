@@ -389,19 +389,8 @@ describe('a broken plan', () => {
 });
 
 describe('what is not yet built', () => {
-  const CORPUS = '  events: {files: x, symbols: bytes, messages: lines';
   test.each([
     ['coders: {ours: {encode: ./codec -e, decode: ./codec -d, protocol: batch}}', 'coders'],
-    [
-      'limits: {max: {flash_bytes: 40960, ram_bytes: 4096, message_bytes_p99: 192}, min: {encode_speed: 0.2, units_per_message: 10}, exports: c, reset: message}',
-      'limits',
-    ],
-    [
-      'cost: {price_per_megabyte: 900, currency: EUR, bill_step_bytes: 192, units_per_day: 480, devices: 14000}',
-      'cost',
-    ],
-    ['cost: {bill_step_bytes: 192, devices: 14000}', 'cost'],
-    ['damage: {flip: 0.0001, seed: 7}', 'damage'],
     ['gate: {allow: {total: 0, each_file: 0.5%}}', 'gate'],
     ['check: crc32', 'check'],
   ])('%s', (line, key) => {
@@ -409,12 +398,6 @@ describe('what is not yet built', () => {
     expect(error).toBeInstanceOf(NotYetError);
     expect(faultLines(error)).toEqual([expect.stringMatching(/^line 5, .*not yet built/)]);
     expect(error.where).toMatchObject({ key, line: 5 });
-  });
-
-  test.each([[', weight: 0.2}', 'corpora.events.weight']])('a corpus with %s', (more, key) => {
-    const error = refusal(`plan: 1\ncorpora:\n${CORPUS}${more}\ncandidates: [fixed]\n`);
-    expect(error).toBeInstanceOf(NotYetError);
-    expect(error.where).toMatchObject({ key, line: 3 });
   });
 
   test.each([
@@ -430,17 +413,54 @@ describe('what is not yet built', () => {
     expect(error.where.key).toBe(key);
   });
 
-  test('a billing step alone is built', () => {
-    expect(parsePlan(`${SHORT}cost: {bill_step_bytes: 192}\n`, 'p.yaml').billStepBytes).toBe(192);
-    expect(parsePlan(SHORT, 'p.yaml').billStepBytes).toBeUndefined();
-    expect(refusal(`${SHORT}cost: {bill_step_bytes: 0}\n`)).toBeInstanceOf(InputError);
-    expect(refusal(`${SHORT}cost: {bill_step_bytes: 1.5}\n`)).toBeInstanceOf(InputError);
-  });
-
   test('beside a real fault it is an InputError, and both are named', () => {
     const error = refusal(`${SHORT}align: 3\ncheck: crc32\n`);
     expect(error).not.toBeInstanceOf(NotYetError);
     expect(faultLines(error)).toHaveLength(2);
+  });
+});
+
+describe('what a choice is made by', () => {
+  const LIMITS =
+    'limits: {max: {flash_bytes: 40960, message_bytes_p99: 192}, min: {encode_speed: 0.2}, exports: c, reset: message}';
+  const COST =
+    'cost: {price_per_megabyte: 900, currency: EUR, bill_step_bytes: 192, units_per_day: 480, devices: 14000}';
+
+  test('is read as it stands', () => {
+    expect(parsePlan(SHORT, 'p.yaml').decision).toEqual({});
+    const { decision, billStepBytes } = parsePlan(`${SHORT}${LIMITS}\n${COST}\n`, 'p.yaml');
+    expect(decision.limits).toEqual({
+      max: { flash_bytes: 40960, message_bytes_p99: 192 },
+      min: { encode_speed: 0.2 },
+      exports: 'c',
+      reset: 'message',
+    });
+    expect(decision.cost?.devices).toBe(14000);
+    expect(billStepBytes).toBe(192);
+    expect(decision.weights).toBeUndefined();
+  });
+
+  test('takes the weights of corpora', () => {
+    const plan = parsePlan(
+      'plan: 1\ncorpora:\n  e: {files: x, symbols: bytes, messages: lines, weight: 0.2}\ncandidates: [fixed]\n',
+      'p.yaml',
+    );
+    expect(plan.decision.weights).toEqual({ e: 0.2 });
+  });
+
+  test.each([
+    'cost: {bill_step_bytes: 0}',
+    'cost: {bill_step_bytes: 1.5}',
+    'cost: {price: 3}',
+    'limits: {max: {flash: 3}}',
+    'limits: {max: {flash_bytes: -3}}',
+    'limits: {min: {encode_speed: fast}}',
+    'limits: {exports: rust}',
+    'limits: {reset: sometimes}',
+  ])('refuses %s, with its line', (line) => {
+    const error = refusal(`${SHORT}${line}\n`);
+    expect(error).toBeInstanceOf(InputError);
+    expect(error.where.line).toBe(5);
   });
 });
 

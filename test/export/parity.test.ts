@@ -9,7 +9,7 @@ import { trainOn } from '../../src/coders/verify.ts';
 import { adversarialMessages } from '../../src/export/adversarial.ts';
 import { cFiles } from '../../src/export/c-files.ts';
 import { exportedCoder } from '../../src/export/exporters.ts';
-import { prove } from '../../src/export/prove.ts';
+import { expectation, prove } from '../../src/export/prove.ts';
 import { buildC } from '../../src/export/run-c.ts';
 import { loadModule } from '../../src/export/run-ts.ts';
 import { tsFile } from '../../src/export/ts-file.ts';
@@ -34,7 +34,8 @@ async function proven(text: string, sequences: SymbolSequence[], base: Omit<Setu
       buildC(files, naming.name, setup, folder, { sanitize: true }),
       await loadModule(module),
     ];
-    return runners.map((run) => prove(candidate, setup, sequences, run, 500));
+    const expected = expectation(candidate, setup, sequences, 500);
+    return runners.map((run) => prove(expected, run));
   } finally {
     rmSync(folder, { recursive: true, force: true });
   }

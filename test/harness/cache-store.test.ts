@@ -66,6 +66,13 @@ describe('the cache', () => {
     expect(await new CacheStore(folder).get(keyOf(2))).toBeUndefined();
   });
 
+  it('gives back thousands of entries that are asked for at once', async () => {
+    const store = new CacheStore(folder);
+    for (let i = 0; i < 3000; i++) await store.put(keyOf(i), i);
+    const found = await Promise.all(Array.from({ length: 3000 }, (_, i) => store.get(keyOf(i))));
+    expect(found).toEqual(Array.from({ length: 3000 }, (_, i) => i));
+  });
+
   it('takes no entry that was damaged anywhere, and removes it', async () => {
     const store = new CacheStore(folder);
     await store.put(keyOf(1), value);

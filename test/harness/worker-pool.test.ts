@@ -2,6 +2,7 @@
 import { describe, expect, it } from 'vitest';
 import { type Candidate, parseCandidate, parseCandidateWith } from '../../src/coders/candidate.ts';
 import type { CoderEntry } from '../../src/coders/contract.ts';
+import { EnvironmentError } from '../../src/errors/errors.ts';
 import type { CellBudget } from '../../src/harness/budget.ts';
 import type { CorpusData } from '../../src/harness/corpus-data.ts';
 import { type RunRequest, runAll } from '../../src/harness/run-all.ts';
@@ -94,8 +95,8 @@ describe('a cell in a worker', () => {
       ['encode:does=throw_error', /^TypeError: a table is missing$/],
       ['decode:does=throw_nothing', /^threw undefined$/],
       ['encode:does=throw_unshowable', /nobody asks where I come from/],
-      ['encode:does=exit', /^ended its process with code 7 while it encoded$/],
-      ['decode:does=exit', /^ended its process with code 7 while it decoded$/],
+      ['encode:does=exit', /^ended its process with code 7, while it encoded$/],
+      ['decode:does=exit', /^ended its process with code 7, while it decoded$/],
       ['encode:does=uncloneable', /could not be cloned/],
     ];
     const failures = await failuresOf(reasons.map(([text]) => text));
@@ -106,13 +107,13 @@ describe('a cell in a worker', () => {
 
   it('that hangs is stopped when its time is over', async () => {
     expect(await failureOf('decode:does=hang', { seconds: 1 })).toBe(
-      'took longer than budget.cell_seconds, 1 s while it decoded',
+      'took longer than budget.cell_seconds, 1 s, while it decoded',
     );
   });
 
   it('whose heap outgrows the bound is stopped', async () => {
     expect(await failureOf('encode:does=heap', { memoryBytes: 100e6 })).toBe(
-      'took more memory than budget.cell_memory, 100 MB while it encoded',
+      'took more memory than budget.cell_memory, 100 MB, while it encoded',
     );
   });
 
@@ -132,6 +133,25 @@ describe('a cell in a worker', () => {
     const stray = misbehaving('encode:does=stray_error');
     const { cells } = await runInPool([stray, parseCandidate('fixed')], { lanes: 1 });
     expect(cells[1].rate).toBe(8);
+  });
+});
+
+describe('workers that do not start', () => {
+  it('end the run with what they say, not cell by cell', async () => {
+    const broken = new URL('./broken-worker.mjs', import.meta.url);
+    const pool = new WorkerPool([corpus], { entry: broken, lanes: 1 });
+    try {
+      const run = runAll(requestOf([parseCandidate('fixed')]), {}, pool);
+      await expect(run).rejects.toThrow(EnvironmentError);
+      await expect(run).rejects.toMatchObject({ where: { got: 'Error: no worker today' } });
+    } finally {
+      await pool.close();
+    }
+  });
+
+  it('are missed before any work is done', () => {
+    const missing = new URL('./missing-worker.mjs', import.meta.url);
+    expect(() => new WorkerPool([corpus], { entry: missing })).toThrow(/entry of its workers/);
   });
 });
 
