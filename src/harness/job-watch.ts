@@ -83,6 +83,11 @@ export class JobWatch {
     if (this.#jobs.size === 0) this.close();
   }
 
+  /** Ends the jobs that no worker has begun. */
+  endUnbegun(reason: string): void {
+    for (const job of this.#jobs) if (job.board.step === 0) job.end(reason);
+  }
+
   close(): void {
     clearInterval(this.#timer);
     this.#timer = undefined;

@@ -104,8 +104,9 @@ export class WorkerPool implements Executor {
         maxOldGenerationSizeMb: Math.ceil(this.#budget.memoryBytes / 2 ** 20) + 64,
       },
     });
-    // What ends a worker that has no job, such as a timer that a coder left behind, is nobody's failure: another takes its place.
-    pool.on('error', () => {});
+    // What ends a worker that has no job, such as a timer that a coder left behind, is no cell's failure, and another takes its
+    // place; but a job that waits for a worker which does not come up would wait for ever.
+    pool.on('error', (error: unknown) => this.#watch.endUnbegun(thrownText(error)));
     return pool;
   }
 
