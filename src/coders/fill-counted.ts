@@ -3,8 +3,11 @@ import type { Coded, Encoder, Setup } from './contract.ts';
 import { refuseUnit, SymbolEnds, UnitGatherer } from './fill-units.ts';
 import { symbolCountBits } from './message-frame.ts';
 
-/** Bits of the words of `symbols[from … to − 1]`, by a table of lengths. */
-export type WordCounter = (symbols: SymbolArray, from: number, to: number) => number;
+/** What knows the lengths of words. */
+export interface WordCounter {
+  /** Bits of the words of `symbols[from … to − 1]`. */
+  bitsOf(symbols: SymbolArray, from: number, to: number): number;
+}
 
 /** More than any symbol count takes. */
 const COUNT_BITS = 64;
@@ -18,8 +21,8 @@ const HANDED_SYMBOLS = 2 ** 15;
  * Cost: a plain encode, and one look-up for each symbol.
  * @param encoder  of the same setup without `fill`
  */
-export function countingFiller(setup: Setup, encoder: Encoder, bitsOf: WordCounter): Encoder {
-  const filler = new CountingFiller(setup, encoder, bitsOf);
+export function countingFiller(setup: Setup, encoder: Encoder, words: WordCounter): Encoder {
+  const filler = new CountingFiller(setup, encoder, words);
   return { push: (chunk) => filler.units.push(chunk), finish: () => filler.finish() };
 }
 
@@ -27,17 +30,17 @@ class CountingFiller {
   readonly units: UnitGatherer;
   readonly #setup: Setup;
   readonly #encoder: Encoder;
-  readonly #bitsOf: WordCounter;
+  readonly #words: WordCounter;
   readonly #budgetBits: number;
   readonly #symbolEnds = new SymbolEnds();
   /** Ends of messages that are not handed on yet, from the first symbol of the first. */
   #ends = new Uint32Array(256);
   #endCount = 0;
 
-  constructor(setup: Setup, encoder: Encoder, bitsOf: WordCounter) {
+  constructor(setup: Setup, encoder: Encoder, words: WordCounter) {
     this.#setup = setup;
     this.#encoder = encoder;
-    this.#bitsOf = bitsOf;
+    this.#words = words;
     this.#budgetBits = Math.floor((setup.fill!.bytes * 8) / setup.align) * setup.align;
     this.units = new UnitGatherer((symbols, ends, last) => this.#make(symbols, ends, last));
   }
@@ -48,7 +51,7 @@ class CountingFiller {
   }
 
   #make(symbols: SymbolArray, unitEnds: Uint32Array, last: boolean): number {
-    const bitsOf = this.#bitsOf;
+    const words = this.#words;
     const surelyFits = this.#budgetBits - COUNT_BITS;
     let handed = 0;
     // The message at hand: first unit and symbol, bits of its words; `at` is the first symbol of the next unit.
@@ -58,7 +61,7 @@ class CountingFiller {
     let bits = 0;
     for (let unit = 0; unit < unitEnds.length; unit++) {
       const to = unitEnds[unit];
-      const unitBits = bitsOf(symbols, at, to);
+      const unitBits = words.bitsOf(symbols, at, to);
       bits += unitBits;
       if (bits > surelyFits && !this.#fits(to - from, bits)) {
         if (unit > first) this.#end(at, handed);

@@ -92,7 +92,9 @@ const coder: Coder = {
   filler(setup) {
     const width = symbolWidth(setup.alphabetSize);
     const { fill: _, ...plain } = setup;
-    return countingFiller(setup, coder.encoder(plain), (_, from, to) => (to - from) * width);
+    return countingFiller(setup, coder.encoder(plain), {
+      bitsOf: (_, from, to) => (to - from) * width,
+    });
   },
 
   growsSteadily: () => true,

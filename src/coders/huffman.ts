@@ -138,9 +138,7 @@ function createHuffman(values: ParameterValues): Coder {
       if (setup.policy !== 'shipped') return undefined;
       const { fill: _, ...plain } = setup;
       const words = shippedEncoder(setup);
-      return countingFiller(setup, streamEncoder(plain, words, undefined, 0), (symbols, from, to) =>
-        words.bitsOf(symbols, from, to),
-      );
+      return countingFiller(setup, streamEncoder(plain, words, undefined, 0), words);
     },
 
     growsSteadily: (setup) => setup.policy !== 'sent',

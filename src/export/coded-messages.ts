@@ -46,9 +46,7 @@ export function messageDecoder(
       const { sequence } = decoder.decode({
         bytes,
         messageCount: 1,
-        ...(setup.lengths === 'link'
-          ? { messageEndsBits: Float64Array.of(bytes.length * 8) }
-          : {}),
+        ...(setup.lengths === 'link' ? { messageEndsBits: Float64Array.of(bytes.length * 8) } : {}),
         ...(setup.lengths === 'known' ? { symbolCounts: Uint32Array.of(count) } : {}),
       });
       return sequence.symbols;

@@ -6,7 +6,8 @@ import { type ExportedCoder, messageBuffers } from './exporter.ts';
 import { BITS_IN, BITS_OUT, frameConstants, messageIn, messageOut } from './frame-program.ts';
 import { parseProgram } from './language-parser.ts';
 import { RANGE_ENDING_BITS, rangeIn, rangeOut } from './range-program.ts';
-import { staticIn, staticOut, staticTables } from './static-program.ts';
+import { staticTables } from './static-arrays.ts';
+import { staticIn, staticOut } from './static-program.ts';
 import { checkedSymbols } from './symbol-program.ts';
 
 const SYMBOLS_IN = `

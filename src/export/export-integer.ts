@@ -74,6 +74,8 @@ fn get_word() {
 
 function golombPrograms(divisor: number, alphabetSize: number): FamilyPrograms {
   const width = divisorWidth(divisor);
+  // All remainders are of one length then.
+  if (width > 0 && divisor === 2 ** width) return ricePrograms(width, alphabetSize);
   const constants: [string, number][] = [
     ['DIVISOR', divisor],
     ['WIDTH', width],

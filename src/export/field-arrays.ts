@@ -211,7 +211,8 @@ export function fieldArrays(plan: FieldPlan, frequencies: Uint32Array): Language
 /** Most bits of a record beside the frame: tokens of the least frequency, extra bits, what divisions drop. */
 export function longestRecordBits({ layout }: FieldPlan, totalBits: number): number {
   return Array.from(layout.widths).reduce(
-    (sum, width) => sum + totalBits + 1 + (tokenCount(width) === MOST_TOKENS ? 30 : Math.max(0, width - 2)),
+    (sum, width) =>
+      sum + totalBits + 1 + (tokenCount(width) === MOST_TOKENS ? 30 : Math.max(0, width - 2)),
     0,
   );
 }

@@ -1,4 +1,4 @@
-import { copyBits } from '../bits/copy-bits.ts';
+import { placeBits } from '../bits/place-bits.ts';
 import type { CodedInput, Lengths } from '../coders/contract.ts';
 import { type SymbolSequence, sliceMessages } from '../symbols/sequence.ts';
 import type { CodedUnit } from './run-cell.ts';
@@ -43,7 +43,7 @@ export function messageStretch({ coded, messages }: CodedUnit, index: number): S
   const from = startBitOf(coded, index);
   const to = coded.messageEndsBits[index];
   const bytes = bytesFor(to - from);
-  copyBits(coded.bytes, from, to, bytes, 0);
+  placeBits(coded.bytes, from, to, bytes, 0);
   return {
     bytes,
     messageEndsBits: Float64Array.of(to - from),
@@ -87,11 +87,11 @@ export function withoutBytes(
   const start = startBitOf(stretch, index);
   const end = stretch.messageEndsBits[index];
   const bytes = new Uint8Array(stretch.bytes.length + align / 8 + 1);
-  copyBits(stretch.bytes, 0, start, bytes, 0);
+  placeBits(stretch.bytes, 0, start, bytes, 0);
   let read = start;
   let at = start;
   const keepUpTo = (to: number): void => {
-    copyBits(stretch.bytes, read, to, bytes, at);
+    placeBits(stretch.bytes, read, to, bytes, at);
     at += to - read;
   };
   for (const place of places) {
@@ -103,7 +103,7 @@ export function withoutBytes(
   const moved = at - end;
   const last = stretch.messageEndsBits.length - 1;
   const total = stretch.messageEndsBits[last];
-  copyBits(stretch.bytes, end, total, bytes, at);
+  placeBits(stretch.bytes, end, total, bytes, at);
   return {
     ...unharmed(stretch),
     bytes: bytes.subarray(0, Math.ceil((total + moved) / 8)),
@@ -117,8 +117,8 @@ export function withoutMessages(stretch: Stretch, from: number, to: number): Arr
   const end = startBitOf(stretch, to);
   const total = stretch.messageEndsBits[stretch.messageEndsBits.length - 1];
   const bytes = bytesFor(total - (end - start));
-  copyBits(stretch.bytes, 0, start, bytes, 0);
-  copyBits(stretch.bytes, end, total, bytes, start);
+  placeBits(stretch.bytes, 0, start, bytes, 0);
+  placeBits(stretch.bytes, end, total, bytes, start);
   const left = <T>(_: T, i: number): boolean => i < from || i >= to;
   const { messageEndsBits, symbolCounts } = unharmed(stretch);
   return {

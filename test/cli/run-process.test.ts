@@ -170,3 +170,39 @@ describe('a run', () => {
     expect(cells[1].failure).toMatch(/^took longer than budget.cell_seconds, 1 s/);
   }, 60_000);
 });
+
+describe('try', () => {
+  it('takes workers for large files, and leaves nothing in the cache', async () => {
+    const cache = join(folder, 'try-cache');
+    writeFileSync(
+      join(folder, 'large.bin'),
+      new Uint8Array(320_000).map((_, i) => i % 2 && i & 2),
+    );
+    const { code, out, err } = await new Promise<Ended>((resolve, reject) => {
+      const args = ['try', 'large.bin', '--coder', 'fixed', '--coder', 'huffman', '--json'];
+      const child = spawn(process.execPath, [main, ...args], {
+        cwd: folder,
+        env: { ...process.env, BITASSAY_CACHE: cache },
+      });
+      const text = { out: '', err: '' };
+      child.stdout.on('data', (chunk) => {
+        text.out += String(chunk);
+      });
+      child.stderr.on('data', (chunk) => {
+        text.err += String(chunk);
+      });
+      child.on('error', reject);
+      child.on('close', (code) => resolve({ code, ...text }));
+    });
+    expect(code, err).toBe(0);
+    const { cells } = JSON.parse(out) as RunRecord;
+    expect(cells.map(({ candidate, verified }) => [candidate, verified])).toEqual([
+      ['fixed', true],
+      ['huffman', true],
+    ]);
+    // Two symbols, so one bit each; the table and the count are all there is besides.
+    expect(cells[1].rate).toBeGreaterThanOrEqual(1);
+    expect(cells[1].rate).toBeLessThan(1.01);
+    expect(existsSync(cache)).toBe(false);
+  }, 60_000);
+});

@@ -50,6 +50,5 @@ describe('the demo exported and proven', () => {
       expect(proof.refused).toBeGreaterThan(1000);
       expect(proof.refused).toBeLessThan(10_000);
     }
-    if (process.env.SHOW) console.log(text, JSON.stringify(proofs.map((p) => p)));
   });
 });

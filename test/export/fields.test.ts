@@ -62,7 +62,10 @@ async function proven(
     unitSymbols,
   };
   const train = driftingMessages(unitSymbols, 150, 3);
-  const others = [driftingMessages(unitSymbols, 150, 4), adversarialMessages(256, unitSymbols, 400, 5)];
+  const others = [
+    driftingMessages(unitSymbols, 150, 4),
+    adversarialMessages(256, unitSymbols, 400, 5),
+  ];
   const setup: Setup = { ...untrained, tables: trainOn(candidate, untrained, train)! };
   const coder = exportedCoder(candidate, setup);
   const folder = mkdtempSync(join(tmpdir(), 'bitassay-fields-'));

@@ -4,6 +4,7 @@
  */
 
 const grown = [];
+let calls = 0;
 
 /** @type {Record<string, () => void>} */
 const deeds = {
@@ -42,6 +43,9 @@ const deeds = {
   },
   arrays_between_steps: () => {
     grown.push(new Uint8Array(100e6).fill(1));
+  },
+  throw_later: () => {
+    if (++calls > 1) throw new TypeError('once is enough');
   },
   stray_error: () => {
     setTimeout(() => {

@@ -50,9 +50,13 @@ function requestOf(candidates: readonly Candidate[]): RunRequest {
 
 async function runInPool(
   candidates: readonly Candidate[],
-  options: { budget?: Partial<CellBudget>; lanes?: number } = {},
+  options: { budget?: Partial<CellBudget>; lanes?: number; repeats?: number } = {},
 ): Promise<RunRecord> {
-  const request = requestOf(candidates);
+  const { repeats } = options;
+  const request: RunRequest = {
+    ...requestOf(candidates),
+    ...(repeats === undefined ? {} : { timing: { repeats } }),
+  };
   const pool = new WorkerPool(request.corpora, {
     entry,
     modules: [module],
@@ -127,6 +131,15 @@ describe('a cell in a worker', () => {
     expect(await failureOf('encode:does=arrays_between_steps', { memoryBytes: 80e6 })).toBe(
       'took more memory than budget.cell_memory, 80 MB',
     );
+  });
+
+  it('is timed after all are coded, and fails where it does not work again', async () => {
+    const later = misbehaving('encode:does=throw_later');
+    const candidates = [parseCandidate('fixed'), later, parseCandidate('rice:k=3')];
+    const { cells } = await runInPool(candidates, { lanes: 1, repeats: 1 });
+    expect(cells.map(({ encode }) => encode?.seconds.length)).toEqual([1, undefined, 1]);
+    expect(cells.map(({ verified }) => verified)).toEqual([true, false, true]);
+    expect(cells[1].failure).toBe('when it was timed: TypeError: once is enough');
   });
 
   it('that leaves an error behind takes no other cell with it', async () => {

@@ -1,11 +1,11 @@
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
-import { copyBits } from '../../src/bits/copy-bits.ts';
+import { placeBits } from '../../src/bits/place-bits.ts';
 
 const textOf = (bytes: Uint8Array) =>
   [...bytes].map((byte) => byte.toString(2).padStart(8, '0')).join('');
 
-describe('copying bits', () => {
+describe('placing bits', () => {
   it('moves them as a string of bits would, and touches nothing else', () => {
     fc.assert(
       fc.property(
@@ -17,7 +17,7 @@ describe('copying bits', () => {
           const bits = source.length * 8;
           const [from, to] = [a % (bits + 1), b % (bits + 1)].sort((x, y) => x - y);
           const target = new Uint8Array(20);
-          copyBits(source, from, to, target, at);
+          placeBits(source, from, to, target, at);
           const moved = textOf(source).slice(from, to);
           expect(textOf(target)).toBe(`${'0'.repeat(at)}${moved}`.padEnd(160, '0'));
         },
@@ -28,7 +28,7 @@ describe('copying bits', () => {
 
   it('leaves bits before and after as they are', () => {
     const target = Uint8Array.of(0b1100_0000, 0b0000_0011);
-    copyBits(Uint8Array.of(0b1111_1111), 0, 5, target, 6);
+    placeBits(Uint8Array.of(0b1111_1111), 0, 5, target, 6);
     expect(textOf(target)).toBe('1100001111100011');
   });
 });

@@ -2,7 +2,7 @@
  * Copies the bits `from` (inclusive) to `to` (exclusive) of `source`, most significant first, to the bit `at` of `target`, where
  * bits are still 0. Cost: a step a byte; a block copy where both begin on a byte.
  */
-export function copyBits(
+export function placeBits(
   source: Uint8Array,
   from: number,
   to: number,
