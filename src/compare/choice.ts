@@ -15,7 +15,7 @@ export interface RunChoice {
 }
 
 /** What the plan of a record asks of a choice. */
-export function termsOf({ plan }: RunRecord): ChoiceTerms {
+function termsOf({ plan }: RunRecord): ChoiceTerms {
   const end: DeviceEnd = plan.product?.device ?? 'both';
   return { limits: plan.limits ?? {}, cost: plan.cost ?? {}, end };
 }

@@ -65,13 +65,13 @@ export interface CorpusChoice {
 }
 
 /** Best first: the goal, then what takes less memory, then the faster, then the id. */
-export function goalOf(cells: readonly CellRecord[], cost: CostTerms): Goal {
+function goalOf(cells: readonly CellRecord[], cost: CostTerms): Goal {
   if (cells.some((cell) => yearlyCost(cell, cost) !== undefined)) return 'yearly cost';
   return cells.some((cell) => cell.units_per_message !== undefined) ? 'units per message' : 'rate';
 }
 
 /** What a goal makes small. */
-export function goalValue(cell: CellRecord, goal: Goal, cost: CostTerms): number {
+function goalValue(cell: CellRecord, goal: Goal, cost: CostTerms): number {
   if (goal === 'yearly cost') return yearlyCost(cell, cost)?.cost ?? Number.POSITIVE_INFINITY;
   if (goal === 'units per message') return -(cell.units_per_message?.mean ?? 0);
   return cell.rate ?? Number.POSITIVE_INFINITY;
@@ -134,7 +134,7 @@ function nearMissOf({ cell, verdicts }: Alternative): NearMiss {
 const NEAREST = 3;
 
 /** Cells that a choice may fall on: verified, no references, and what the plan does not vary. */
-export function choosable(record: RunRecord, corpus: string): CellRecord[] {
+function choosable(record: RunRecord, corpus: string): CellRecord[] {
   return record.cells.filter(
     (cell) => cell.corpus === corpus && cell.verified && !cell.reference && cell.vary === undefined,
   );

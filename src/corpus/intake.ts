@@ -153,7 +153,7 @@ async function guardSize(
     expected: `at most ${most} bytes for symbols: ${taker.text}`,
     got: `${bytes} bytes in ${found.length} ${found.length === 1 ? 'file' : 'files'}`,
     advice:
-      'Name fewer files, or cut a part of that size out of the file (head -c on most systems).',
+      'Read them in pieces (--memory 512MB), take a sample (--sample every=12,block=1MB), or name fewer files.',
   });
 }
 

@@ -18,7 +18,7 @@ export interface Export {
 }
 
 /** Refuses what would not be a name in C and TypeScript. */
-export function checkExportName(name: string): void {
+function checkExportName(name: string): void {
   if (/^[a-z][a-z0-9_]{0,40}$/.test(name)) return;
   throw new InputError(`${JSON.stringify(name)} cannot be the name of exported functions`, {
     expected: 'a letter, then letters, digits and underscores, in lower case, at most 41',

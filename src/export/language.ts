@@ -154,7 +154,7 @@ export function walkFunction(
 }
 
 /** Names of functions that a function calls. */
-export function calledBy(called: LanguageFunction): ReadonlySet<string> {
+function calledBy(called: LanguageFunction): ReadonlySet<string> {
   const names = new Set<string>();
   walkFunction(called, { expression: (e) => e.kind === 'call' && names.add(e.name) });
   return names;

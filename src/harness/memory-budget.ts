@@ -2,6 +2,7 @@ import { megabytesText } from '../corpus/byte-size.ts';
 import type { CorpusSpec } from '../corpus/corpus.ts';
 import { countMessages } from '../corpus/count-messages.ts';
 import { findFiles } from '../corpus/find-files.ts';
+import { USUAL_INTAKE_LIMITS } from '../corpus/intake.ts';
 import { inputFileBytes } from '../corpus/read-file.ts';
 import type { SampleRule } from '../corpus/sample-rule.ts';
 import { whyNotStreamed } from '../corpus/stream-source.ts';
@@ -60,7 +61,7 @@ export async function fitsMemory(
         : bytes / SAMPLED_MESSAGE_BYTES;
     needed += messages * WHOLE_BYTES_A_MESSAGE;
   }
-  if (needed <= memoryBytes) return true;
+  if (needed <= memoryBytes && bytes <= USUAL_INTAKE_LIMITS.maxBytes) return true;
   const refusal = spec.sample === undefined ? whyNotStreamed(spec) : 'a sample is taken as a whole';
   if (refusal === undefined) return false;
   throw new InputError(`the corpus ${spec.name} does not fit the memory allowed: ${refusal}`, {

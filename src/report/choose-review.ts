@@ -95,7 +95,7 @@ function floorText(record: RunRecord, pick: Alternative, noun: string): string {
 }
 
 /** What would change the pick between half and twice each limit and cost, in half a line. */
-export function changesText(sensitivities: readonly Sensitivity[], pick: string): string {
+function changesText(sensitivities: readonly Sensitivity[], pick: string): string {
   const moved = sensitivities.filter(({ stretches }) => stretches.some((s) => s.pick !== pick));
   if (sensitivities.length === 0)
     return 'Nothing to change: the plan sets neither limits nor costs.';
