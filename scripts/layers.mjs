@@ -28,7 +28,8 @@ export const rows = [
   ['account'],
   ['harness'],
   ['compare'],
-  ['gate', 'export', 'report'],
+  ['gate', 'export'],
+  ['report'],
   ['cli'],
 ];
 

@@ -62,7 +62,7 @@ function create(values: ParameterValues): Coder {
       const { policy } = setup;
       if (policy === 'shipped') {
         const { table } = tablesFor(setup, policy);
-        return staticCosts(table, settings.rangeBits, longestCodedBytes);
+        return staticCosts(table, settings.rangeBits, setup.lengths, longestCodedBytes);
       }
       return policy === 'sent'
         ? sentStaticCosts(settings, sequence, setup, longestCodedBytes)

@@ -131,7 +131,7 @@ function createBlock(values: ParameterValues): Coder {
 
     costs: (setup, _longestCodedBytes, sequence) =>
       setup.policy === 'shipped'
-        ? blockCosts(fitBlocks(blockTables(setup, n), setup, maxBits), n, setup.alphabetSize)
+        ? blockCosts(fitBlocks(blockTables(setup, n), setup, maxBits), n, setup)
         : sentBlockCosts(sequence, setup, n, maxBits),
 
     operations: (sequence, setup) =>

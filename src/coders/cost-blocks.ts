@@ -1,6 +1,8 @@
 import type { BlockFit } from './block-huffman-tables.ts';
-import { type BothEnds, type CodeEstimate, type EndCost, endCost, integerBytes } from './cost.ts';
-import { PREFIX_CODE, PREFIX_STATE_BYTES, prefixTableBytes } from './cost-prefix.ts';
+import type { Setup } from './contract.ts';
+import { type BothEnds, type CodeEstimate, type EndCost, integerBytes } from './cost.ts';
+import { MEASURED, measuredCosts } from './cost-measured.ts';
+import { PREFIX_CODE, prefixTableBytes } from './cost-prefix.ts';
 
 /** A prefix code's, with a search among the blocks; or with the cutting of a block into its symbols. */
 export const BLOCK_CODE: BothEnds<CodeEstimate> = {
@@ -11,27 +13,23 @@ export const BLOCK_CODE: BothEnds<CodeEstimate> = {
 /**
  * Costs of shipped block tables.
  *
- * Both codes lie as prefixTableBytes says. The blocks themselves are lists of n symbols, rising, so that the encoder finds
- * one by halving; the decoder's list holds their numbers, then it reads the symbols. A block and its number are state.
+ * Both codes lie as prefixTableBytes says. A block is one number, its symbols as digits, where 32 bits hold it, else n symbols.
+ * The encoder's list of blocks rises, so that it finds one by halving; the decoder's has them in the canonical order of their
+ * words, an escape among them, in place of what a code's list would hold.
  */
-export function blockCosts(fit: BlockFit, n: number, alphabetSize: number): BothEnds<EndCost> {
+export function blockCosts(
+  fit: BlockFit,
+  n: number,
+  { alphabetSize, lengths }: Setup,
+): BothEnds<EndCost> {
   const { blocks, tail } = fit;
   const ngrams = fit.escape < 0 ? blocks.count : fit.escape;
-  const symbolBytes = integerBytes(alphabetSize - 1);
-  const blockBytes = prefixTableBytes(blocks, blocks.count - 1);
+  const greatest = ngrams === 0 ? 0 : blocks.symbols[ngrams - 1];
+  const keyBytes = greatest < 2 ** 32 ? integerBytes(greatest) : n * integerBytes(alphabetSize - 1);
+  const blockBytes = prefixTableBytes(blocks, 0);
   const tailBytes = prefixTableBytes(tail.table, alphabetSize - 1);
-  const keyBytes = ngrams * n * symbolBytes;
-  const stateBytes = PREFIX_STATE_BYTES + n * symbolBytes + 4;
-  return {
-    encoder: endCost(
-      keyBytes + blockBytes.encoder + tailBytes.encoder,
-      stateBytes,
-      BLOCK_CODE.encoder,
-    ),
-    decoder: endCost(
-      keyBytes + blockBytes.decoder + tailBytes.decoder,
-      stateBytes,
-      BLOCK_CODE.decoder,
-    ),
-  };
+  return measuredCosts(MEASURED.blockHuffman, lengths, {
+    encoder: ngrams * keyBytes + blockBytes.encoder + tailBytes.encoder,
+    decoder: blocks.count * keyBytes + blockBytes.decoder + tailBytes.decoder,
+  });
 }

@@ -2,6 +2,7 @@ import { OperationTally } from '../models/counting-tally.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
 import type { Setup } from './contract.ts';
 import { type BothEnds, type EndCost, type EndOperations, endCost, integerBytes } from './cost.ts';
+import { MEASURED, measuredCosts } from './cost-measured.ts';
 import { SymbolCounts } from './huffman-counts.ts';
 import { startMean } from './integer-encoder.ts';
 import type { IntegerFamily } from './integer-family.ts';
@@ -19,12 +20,13 @@ const MEAN_BYTES = 8;
 const CHOICE_STATEMENTS = 40;
 
 /**
- * Costs of an integer code. Its parameter is one byte of flash, or under `learned` and `primed` a running mean, whose first
- * values take as many bytes of flash as of RAM. Under `sent` it is one byte of RAM, and the encoder counts symbols: by symbol
+ * Costs of an integer code. Trained or given, its parameter is part of the code. Under `learned` and `primed` there is a running
+ * mean, whose first values take as many bytes of flash as of RAM. Under `sent` it is one byte of RAM, and the encoder counts symbols: by symbol
  * a count as wide as the most symbols that share a parameter need, and the list of those seen.
  */
 export function integerCosts(
-  { policy, reset, alphabetSize }: Setup,
+  name: IntegerFamily['name'],
+  { policy, reset, alphabetSize, lengths }: Setup,
   { messageEnds }: SymbolSequence,
 ): BothEnds<EndCost> {
   if (policy === 'sent') {
@@ -42,14 +44,14 @@ export function integerCosts(
       decoder: endCost(0, STATE_BYTES + 1, { statements: 18, nestedCalls: 2 }),
     };
   }
-  const adapts = policy === 'learned' || policy === 'primed';
-  const flashBytes = adapts ? MEAN_BYTES : 1;
-  const stateBytes = STATE_BYTES + (adapts ? MEAN_BYTES : 0);
-  const more = adapts ? 8 : 0;
-  return {
-    encoder: endCost(flashBytes, stateBytes, { statements: 14 + more, nestedCalls: 2 }),
-    decoder: endCost(flashBytes, stateBytes, { statements: 16 + more, nestedCalls: 2 }),
-  };
+  if (policy === 'learned' || policy === 'primed') {
+    const stateBytes = STATE_BYTES + MEAN_BYTES;
+    return {
+      encoder: endCost(MEAN_BYTES, stateBytes, { statements: 22, nestedCalls: 2 }),
+      decoder: endCost(MEAN_BYTES, stateBytes, { statements: 24, nestedCalls: 2 }),
+    };
+  }
+  return measuredCosts(MEASURED[name], lengths, { encoder: 0, decoder: 0 });
 }
 
 /**

@@ -3,14 +3,15 @@ import { ABSENT } from '../stages/code-lengths.ts';
 import { CountingPrefix } from '../stages/counting-prefix.ts';
 import type { PrefixTable } from '../stages/prefix-table.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
+import type { Lengths } from './contract.ts';
 import {
   type BothEnds,
   type CodeEstimate,
   type EndCost,
   type EndOperations,
-  endCost,
   integerBytes,
 } from './cost.ts';
+import { MEASURED, measuredCosts } from './cost-measured.ts';
 
 /** Look up, shift in, flush whole bytes; look, walk lengths, shift out, refill. */
 export const PREFIX_CODE: BothEnds<CodeEstimate> = {
@@ -55,12 +56,12 @@ export function prefixTableBytes(table: PrefixTable, greatestEntry: number): Bot
 }
 
 /** Costs of a coder that has one word for each of `alphabetSize` symbols, both ends with shipped tables. */
-export function prefixCosts(table: PrefixTable, alphabetSize: number): BothEnds<EndCost> {
-  const bytes = prefixTableBytes(table, alphabetSize - 1);
-  return {
-    encoder: endCost(bytes.encoder, PREFIX_STATE_BYTES, PREFIX_CODE.encoder),
-    decoder: endCost(bytes.decoder, PREFIX_STATE_BYTES, PREFIX_CODE.decoder),
-  };
+export function prefixCosts(
+  table: PrefixTable,
+  alphabetSize: number,
+  lengths: Lengths,
+): BothEnds<EndCost> {
+  return measuredCosts(MEASURED.huffman, lengths, prefixTableBytes(table, alphabetSize - 1));
 }
 
 /** What is counted of a table: words and what they stand for. */

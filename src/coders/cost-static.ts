@@ -6,6 +6,7 @@ import { CountingRange } from '../stages/counting-range.ts';
 import { RangeEncoder } from '../stages/range-encoder.ts';
 import type { RangeBits } from '../stages/range-precision.ts';
 import type { SymbolSequence } from '../symbols/sequence.ts';
+import type { Lengths } from './contract.ts';
 import {
   type BothEnds,
   type CodeEstimate,
@@ -14,8 +15,9 @@ import {
   endCost,
   integerBytes,
 } from './cost.ts';
+import { MEASURED, measuredCosts } from './cost-measured.ts';
 
-/** Search, escape, narrow, carry, shift, end; search, escape, narrow, shift, end. */
+/** With 48 bits: search, escape, narrow, carry, shift, end; search, escape, narrow, shift, end. */
 const STATIC_CODE: BothEnds<CodeEstimate> = {
   encoder: { statements: 44, nestedCalls: 3 },
   decoder: { statements: 48, nestedCalls: 3 },
@@ -28,7 +30,7 @@ export const rangeStateBytes = (bits: RangeBits): number => 2 * (bits === 32 ? 4
  * Bytes of the tables of a static model, the same at both ends.
  *
  * Contexts are all strings of up to k symbols that occurred, or begin a message. For each: where its entries begin (and
- * once where the last ends), the context without its oldest symbol, where the unseen symbols' interval begins; under
+ * once where the last ends), from order 1 on the context without its oldest symbol, where the unseen symbols' interval begins; under
  * `unseen=add:X` also one unseen symbol's frequency. For each entry: symbol, lower end of its interval, next context. A
  * frequency is the distance to the next lower end, so is not stored, nor is the total, which is one for all.
  */
@@ -47,21 +49,27 @@ export function staticTableBytes(table: StaticTable): number {
   const unseenBytes = typeof unseen === 'object' ? 2 * frequencyBytes : frequencyBytes;
   return (
     (contexts + 1) * placeBytes +
-    contexts * (contextBytes + unseenBytes) +
+    contexts * ((order === 0 ? 0 : contextBytes) + unseenBytes) +
     symbols.length * (integerBytes(alphabetSize - 1) + frequencyBytes + contextBytes)
   );
 }
 
 /**
- * Costs of a static model on a range coder. State: the stage's and one context number. A carry may run back to a message's
- * first byte, so the encoder holds its coded message.
+ * Costs of a static model on a range coder. With a range of 32 bits, as exported: the encoder keeps one byte, and how many of
+ * 255 follow it, for a carry. With 48, which has no exported form, estimates: the stage's state and one context number; and
+ * since a carry may run back to a message's first byte, the encoder holds its coded message.
  */
 export function staticCosts(
   table: StaticTable,
   bits: RangeBits,
+  lengths: Lengths,
   longestCodedBytes: number,
 ): BothEnds<EndCost> {
   const flashBytes = staticTableBytes(table);
+  if (bits === 32) {
+    const form = table.unseen === 'escape' ? MEASURED.staticEscape : MEASURED.staticAdded;
+    return measuredCosts(form, lengths, { encoder: flashBytes, decoder: flashBytes });
+  }
   let contexts = 0;
   for (const length of table.length) if (length <= table.order) contexts++;
   const stateBytes = rangeStateBytes(bits) + integerBytes(contexts - 1);

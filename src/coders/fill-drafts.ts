@@ -72,8 +72,6 @@ export class CodeStringDraft implements MessageDraft {
 /** What writes the words of a {@link WordDraft}; both ends know them, or find them from the message's own symbols. */
 export interface DraftWords {
   encode(writer: BitWriter, symbols: SymbolArray, from: number, to: number): unknown;
-  /** Bits of the words, where counting them costs less than writing them. */
-  bitsOf?(symbols: SymbolArray, from: number, to: number): number;
   /** Back to the state of a message's start. */
   restart?(): void;
   /** What is written only where the message ends, and may become shorter by more symbols. */
@@ -99,7 +97,6 @@ export class WordDraft implements MessageDraft {
   readonly ledger: MessageLedger;
   readonly #setup: Setup;
   readonly isSteady: boolean;
-  readonly addedBits?: (symbols: SymbolArray, from: number, to: number) => number;
   readonly #words: DraftWords;
   readonly #start = new WriterMark();
   readonly #mark = new WriterMark();
@@ -112,9 +109,6 @@ export class WordDraft implements MessageDraft {
     this.#setup = setup;
     this.#words = words;
     this.isSteady = words.tail?.isEmptyAtUnits ?? true;
-    if (words.bitsOf !== undefined) {
-      this.addedBits = (symbols, from, to) => words.bitsOf!(symbols, from, to);
-    }
     this.ledger = new MessageLedger(setup.align);
     this.#start.take(this.writer);
   }

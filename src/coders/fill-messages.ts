@@ -24,8 +24,6 @@ export interface MessageDraft {
   restore(): void;
   /** Writes count and content, and books them. */
   end(symbolCount: number): void;
-  /** Bits that these symbols would add, where that can be told without coding them. */
-  addedBits?(symbols: SymbolArray, from: number, to: number): number;
 }
 
 /** Share of the room left, by the size of the units before, that is filled at once when all goes well. */
@@ -81,10 +79,7 @@ class MessageFiller {
       this.#at = from;
       draft.start();
       if (draft.isSteady !== false) this.#takeGuessed(symbols, ends, from);
-      const isFull =
-        draft.addedBits === undefined
-          ? this.#takeUntilOver(symbols, ends, from)
-          : this.#takeCounted(symbols, ends, from);
+      const isFull = this.#takeUntilOver(symbols, ends, from);
       const count = this.#next - unit;
       if (!isFull && !last) break;
       if (count === 0) this.#refuse(symbols, ends, unit, from);
@@ -140,26 +135,6 @@ class MessageFiller {
       this.#at = to;
     }
     return false;
-  }
-
-  /** The same, all at once after their bits were counted. */
-  #takeCounted(symbols: SymbolArray, ends: Uint32Array, from: number): boolean {
-    const draft = this.#draft;
-    let bits = draft.contentBits();
-    let next = this.#next;
-    let at = this.#at;
-    let isFull = false;
-    for (; next < ends.length; next++) {
-      const to = ends[next];
-      bits += draft.addedBits!(symbols, at, to);
-      isFull = !this.#fits(to - from, bits);
-      if (isFull) break;
-      at = to;
-    }
-    if (at > this.#at) draft.take(symbols, this.#at, at);
-    this.#next = next;
-    this.#at = at;
-    return isFull;
   }
 
   #refuse(symbols: SymbolArray, ends: Uint32Array, unit: number, from: number): never {

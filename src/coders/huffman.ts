@@ -1,4 +1,5 @@
 import { InputError } from '../errors/errors.ts';
+import { PrefixBitCounter } from '../stages/prefix-bit-counter.ts';
 import { PrefixDecoder } from '../stages/prefix-decoder.ts';
 import { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import type { Coder, CoderEntry, Declaration, Setup, Tables } from './contract.ts';
@@ -138,7 +139,11 @@ function createHuffman(values: ParameterValues): Coder {
       if (setup.policy !== 'shipped') return undefined;
       const { fill: _, ...plain } = setup;
       const words = shippedEncoder(setup);
-      return countingFiller(setup, streamEncoder(plain, words, undefined, 0), words);
+      return countingFiller(
+        setup,
+        streamEncoder(plain, words, undefined, 0),
+        new PrefixBitCounter(words),
+      );
     },
 
     growsSteadily: (setup) => setup.policy !== 'sent',
@@ -166,6 +171,7 @@ function createHuffman(values: ParameterValues): Coder {
         ? prefixCosts(
             fitTables(huffmanTables(setup), setup, maxBits, added).table,
             setup.alphabetSize,
+            setup.lengths,
           )
         : sentPrefixCosts(sequence, setup, maxBits),
 

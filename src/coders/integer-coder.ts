@@ -107,7 +107,7 @@ export function integerCoder(
 
     decoder: (setup, limits) => integerDecoder(family, setup, limits, given),
 
-    costs: (setup, _longestCodedBytes, sequence) => integerCosts(setup, sequence),
+    costs: (setup, _longestCodedBytes, sequence) => integerCosts(family.name, setup, sequence),
 
     operations: (sequence, setup) => integerOperations(family, sequence, setup, given),
 

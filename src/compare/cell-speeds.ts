@@ -1,10 +1,17 @@
 import type { CellRecord, RunRecord } from '../harness/run-record.ts';
 import { compareSpeeds, type SpeedComparison } from '../statistics/speed-verdict.ts';
 
-/** A cell in its run. */
+type Samples = Pick<NonNullable<CellRecord['encode']>, 'seconds' | 'pacer_seconds' | 'unsteady'>;
+
+/** A cell in its run, or what a baseline keeps of it. */
 export interface TimedCell {
-  readonly environment: RunRecord['environment'];
-  readonly cell: CellRecord;
+  readonly environment: Pick<RunRecord['environment'], 'class'>;
+  readonly cell: {
+    readonly id: string;
+    readonly timed?: Pick<NonNullable<CellRecord['timed']>, 'pacer' | 'symbol_count'> | undefined;
+    readonly encode?: Samples | undefined;
+    readonly decode?: Samples | undefined;
+  };
 }
 
 /**

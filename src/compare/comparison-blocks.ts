@@ -27,13 +27,20 @@ export const LEAST_BLOCKS = 8;
  * @param messageCount    messages of the corpus, units where messages are filled
  * @param filledMessages  where messages are filled: the fewest messages that one of the cells has. The units of a message
  *   share its bits, so that a block holds two messages or more
+ * @param sampleBlocks    of a sample, how many blocks of the files it holds: what was not taken differs from it as they do
+ *   from one another, so that nothing smaller may be resampled
  */
-export function blocksFor(messageCount: number, filledMessages?: number): ComparisonBlocks {
+export function blocksFor(
+  messageCount: number,
+  filledMessages?: number,
+  sampleBlocks = Number.POSITIVE_INFINITY,
+): ComparisonBlocks {
   if (filledMessages !== undefined) {
     return { count: Math.min(MOST_BLOCKS, filledMessages >> 1), unit: 'blocks of units' };
   }
-  if (messageCount <= MOST_BLOCKS) return { count: messageCount, unit: 'messages' };
-  return { count: MOST_BLOCKS, unit: 'blocks of messages' };
+  const most = Math.min(MOST_BLOCKS, sampleBlocks);
+  if (messageCount <= most) return { count: messageCount, unit: 'messages' };
+  return { count: most, unit: 'blocks of messages' };
 }
 
 /** Sums over each of the blocks; `blocks.count` is at least 1. */

@@ -16,7 +16,6 @@ interface Later {
 
 const LATER: readonly Later[] = [
   { path: 'coders' },
-  { path: 'gate' },
   { path: 'check', when: (value) => value === 'crc32', meanwhile: 'Write check: none.' },
 ];
 

@@ -174,6 +174,11 @@ export const damageSchema = object({
   { error: 'at least one of flip, lose_bytes and lose_messages' },
 );
 
+/** By how much carried bits may grow over a baseline, in all and of each file. */
+export const gateSchema = object({
+  allow: object({ total: GROWTH.optional(), each_file: GROWTH.optional() }),
+});
+
 /** The schema of a plan file; keys in snake_case. */
 export const planSchema = object({
   plan: z.literal(1, { error: '1, the version of the plan file' }),
@@ -231,9 +236,7 @@ export const planSchema = object({
     rate: z.number({ error: LOSS }).gt(0, { error: LOSS }).lt(1, { error: LOSS }),
   }).optional(),
   damage: damageSchema.optional(),
-  gate: object({
-    allow: object({ total: GROWTH.optional(), each_file: GROWTH.optional() }),
-  }).optional(),
+  gate: gateSchema.optional(),
 });
 
 /** A plan as it stands in the file, checked against the schema. */

@@ -47,8 +47,8 @@ export interface Plan {
   readonly budget: { readonly cellSeconds?: number; readonly cellMemoryBytes?: number };
   /** The small end of the product, where the plan names it. */
   readonly device?: 'encoder' | 'decoder';
-  /** What a choice is made by; only what the plan says. */
-  readonly decision: Pick<PlanFile, 'limits' | 'cost'> & {
+  /** What a choice is made by, and a gate; only what the plan says. */
+  readonly decision: Pick<PlanFile, 'limits' | 'cost' | 'gate'> & {
     readonly weights?: Record<string, number>;
   };
   readonly align: 1 | 8 | 16 | 32 | 64;
@@ -108,13 +108,14 @@ export function parsePlan(text: string, file: string): Plan {
   return memoryBytes === undefined ? plan : { ...plan, memoryBytes };
 }
 
-function decisionOf({ limits, cost, corpora }: PlanFile): Plan['decision'] {
+function decisionOf({ limits, cost, gate, corpora }: PlanFile): Plan['decision'] {
   const weights = Object.entries(corpora).flatMap(([name, { weight }]) =>
     weight === undefined ? [] : [[name, weight] as const],
   );
   return {
     ...(limits === undefined ? {} : { limits }),
     ...(cost === undefined ? {} : { cost }),
+    ...(gate === undefined ? {} : { gate }),
     ...(weights.length === 0 ? {} : { weights: Object.fromEntries(weights) }),
   };
 }
@@ -140,7 +141,7 @@ function planOf(
   if (written.align === undefined) chosen.push('align: 8');
   if (timing.repeats === undefined) chosen.push('timing.repeats: 20');
   if (written.damage !== undefined && written.damage.seed === undefined)
-    chosen.push('damage.seed: 1');
+    chosen.push(`damage.seed: ${USUAL_SEED}`);
   return {
     file,
     folder: dirname(file),
@@ -165,7 +166,7 @@ function planOf(
     reset: (written.reset ?? ['message']) as Plan['reset'],
     align: written.align ?? 8,
     ...(written.loss === undefined ? {} : { lossRate: written.loss.rate }),
-    ...(written.damage === undefined ? {} : { damage: written.damage }),
+    ...(written.damage === undefined ? {} : { damage: { seed: USUAL_SEED, ...written.damage } }),
     ...(written.cost?.bill_step_bytes === undefined
       ? {}
       : { billStepBytes: written.cost.bill_step_bytes }),

@@ -1,10 +1,16 @@
 import type { Candidate } from '../coders/candidate.ts';
 import type { Setup } from '../coders/contract.ts';
+import {
+  fieldConstants,
+  fieldPlanArrays,
+  fieldShape,
+  longestRecordBits,
+  tokenArray,
+} from '../coders/fields-arrays.ts';
 import { countedInRecords, tablesFor } from '../coders/fields-tables.ts';
 import { PIECE_BITS } from '../models/field-records.ts';
 import { TABLE_BITS, TABLE_TOTAL } from '../models/field-weights.ts';
 import { type ExportedCoder, messageBuffers } from './exporter.ts';
-import { fieldArrays, fieldConstants, fieldShape, longestRecordBits } from './field-arrays.ts';
 import { recordIn, recordOut, sharedFields } from './field-program.ts';
 import { FIELDS_OUT, fieldsIn } from './field-steps.ts';
 import { BITS_IN, BITS_OUT, frameConstants, messageIn, messageOut } from './frame-program.ts';
@@ -16,7 +22,7 @@ export function exportFields(_candidate: Candidate, setup: Setup): ExportedCoder
   const { plan, frequencies } = tablesFor(setup, 'shipped');
   const { layout } = plan;
   const shape = fieldShape(plan);
-  const tables = fieldArrays(plan, frequencies);
+  const tables = [...fieldPlanArrays(plan), tokenArray(plan, frequencies)];
   const constants = new Map<string, number>([
     ...frameConstants(countedInRecords(setup, layout)),
     ...fieldConstants(plan),

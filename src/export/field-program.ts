@@ -1,4 +1,4 @@
-import type { FieldShape } from './field-arrays.ts';
+import type { FieldShape } from '../coders/fields-arrays.ts';
 
 /**
  * Records by their fields, decision for decision those of `src/models/field-predictor.ts` and `field-records.ts`. What a plan does not

@@ -172,19 +172,19 @@ export function prefixPlaceTables(table: PrefixTable, prefix = ''): LanguageArra
     [
       {
         name: 'first_word',
-        elementBytes: elementBytesFor(Math.max(...firstWords)),
+        elementBytes: elementBytesFor(2 ** longest - 1),
         values: firstWords,
         comment: 'For each length from the shortest on: its first word,',
       },
       {
         name: 'words',
-        elementBytes: elementBytesFor(Math.max(...words)),
+        elementBytes: elementBytesFor(count),
         values: words,
         comment: 'how many words it has,',
       },
       {
         name: 'first_entry',
-        elementBytes: elementBytesFor(count),
+        elementBytes: elementBytesFor(count - 1),
         values: places,
         comment: 'and the place of the first of them.',
       },

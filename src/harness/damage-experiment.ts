@@ -10,10 +10,10 @@ export type DamageExperiment = { readonly seed: number } & (
   | { readonly kind: 'lose_messages'; readonly law: LossLaw; readonly isIndependent: boolean }
 );
 
-export const USUAL_DAMAGE_SEED = 1;
+const USUAL_SEED = 1;
 
 /** The losses that a plan means: in the good state none, in the bad all, unless it says so. */
-export function lossLawOf(written: NonNullable<DamagePlan['lose_messages']>): LossLaw {
+function lossLawOf(written: NonNullable<DamagePlan['lose_messages']>): LossLaw {
   if (typeof written === 'number') return independentLosses(written);
   const { good_to_bad, bad_to_good, lost_in_bad = 1, lost_in_good = 0 } = written;
   return {
@@ -26,7 +26,7 @@ export function lossLawOf(written: NonNullable<DamagePlan['lose_messages']>): Lo
 
 /** Each kind of damage that a plan asks for, an experiment of its own. */
 export function damageExperiments(plan: DamagePlan): DamageExperiment[] {
-  const { flip, lose_bytes, lose_messages, seed = USUAL_DAMAGE_SEED } = plan;
+  const { flip, lose_bytes, lose_messages, seed = USUAL_SEED } = plan;
   return [
     ...(flip === undefined ? [] : [{ kind: 'flip', chance: flip, seed } as const]),
     ...(lose_bytes === undefined

@@ -39,7 +39,7 @@ export interface RunRequest {
   readonly billStepBytes?: number;
   /** The small end of the product, where the plan names it. */
   readonly device?: 'encoder' | 'decoder';
-  /** What a choice from the run is to be made by: kept in its record. */
+  /** What a choice from the run is to be made by, and a gate: kept in its record. */
   readonly decision?: Plan['decision'];
   /** What a cell may take, where cells are run in workers; the usual when absent. */
   readonly budget?: CellBudget;

@@ -1,6 +1,6 @@
 import { z } from 'zod';
 import { ACCOUNT_LINES } from '../account/bit-account.ts';
-import { costSchema, damageSchema, limitsSchema } from '../corpus/plan-schema.ts';
+import { costSchema, damageSchema, gateSchema, limitsSchema } from '../corpus/plan-schema.ts';
 import { cellDamageSchema } from './damage-schema.ts';
 import { entropySchema } from './entropy-schema.ts';
 
@@ -307,6 +307,7 @@ export const runRecordSchema = z.strictObject({
     memory_bytes: z.number().optional().describe('what the process was allowed to hold'),
     limits: limitsSchema.optional(),
     cost: costSchema.optional(),
+    gate: gateSchema.optional(),
     weights: z
       .record(z.string(), z.number())
       .optional()

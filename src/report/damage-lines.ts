@@ -50,8 +50,11 @@ function columnsFor(kind: Kind, rows: readonly DamageRow[], withReset: boolean):
     spare,
     text,
   });
-  const seen = (title: string, key: 'detected' | 'by_check' | 'undetected' | 'harmless') =>
-    right(title, 0, ({ damage }) => percentText(damage[key], damage.events));
+  const seen = (
+    title: string,
+    key: 'detected' | 'by_check' | 'undetected' | 'harmless',
+    spare = 0,
+  ): DamageColumn => right(title, spare, ({ damage }) => percentText(damage[key], damage.events));
   const spreads = rows.some(({ damage }) => damage.messages_after.max > 0);
   return [
     left(' candidate', ({ cell }) => ` ${cell.candidate}`),
@@ -63,7 +66,7 @@ function columnsFor(kind: Kind, rows: readonly DamageRow[], withReset: boolean):
     seen('decoder', 'detected'),
     seen('CRC-32', 'by_check'),
     seen('neither', 'undetected'),
-    ...(rows.some(({ damage }) => damage.harmless > 0) ? [seen('harmless', 'harmless')] : []),
+    ...(rows.some(({ damage }) => damage.harmless > 0) ? [seen('harmless', 'harmless', 4)] : []),
     right('lost', 0, ({ damage }) => meanText(damage.symbols_lost.mean)),
     right('most', 3, ({ damage }) => countText(damage.symbols_lost.max)),
     right('distance', 1, ({ damage }) =>

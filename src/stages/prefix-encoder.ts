@@ -39,11 +39,6 @@ export class PrefixEncoder {
   #pairs: Uint32Array | undefined;
   #pairsAreSet = false;
   #codedSinceSet = 0;
-  /** What {@link bitsOf} counts: its pairs of symbols, and the index of the first that begins one. */
-  #counted: SymbolArray | undefined;
-  #halves: Uint16Array | undefined;
-  #halvesFrom = 0;
-  #pairBits = new Uint8Array(0);
   #viewed: Uint8Array | undefined;
   #view: DataView = new DataView(new ArrayBuffer(8));
 
@@ -75,8 +70,6 @@ export class PrefixEncoder {
     this.#presentCount = count;
     this.#pairsAreSet = false;
     this.#codedSinceSet = 0;
-    this.#counted = undefined;
-    this.#pairBits = new Uint8Array(0);
   }
 
   /** Word length of a symbol in bits, or {@link ABSENT}. */
@@ -86,45 +79,10 @@ export class PrefixEncoder {
 
   /** Bits that {@link encode} would write; a symbol without a word counts as {@link ABSENT}. */
   bitsOf(symbols: SymbolArray, from: number, to: number): number {
-    if (symbols !== this.#counted) this.#prepareCounting(symbols);
     const { lengths } = this;
-    const halves = this.#halves;
     let bits = 0;
-    if (halves === undefined || from === to) {
-      for (let i = from; i < to; i++) bits += lengths[symbols[i]];
-      return bits;
-    }
-    const pairBits = this.#pairBits;
-    const odd = this.#halvesFrom;
-    if (((from ^ odd) & 1) !== 0) bits += lengths[symbols[from]];
-    if (((to ^ odd) & 1) !== 0) bits += lengths[symbols[to - 1]];
-    const last = (to - odd) >> 1;
-    for (let i = (from + 1 - odd) >> 1; i < last; i++) bits += pairBits[halves[i]];
+    for (let i = from; i < to; i++) bits += lengths[symbols[i]];
     return bits;
-  }
-
-  /** Long messages of bytes are counted two symbols at a time, where each has a word. */
-  #prepareCounting(symbols: SymbolArray): void {
-    this.#counted = symbols;
-    this.#halves = undefined;
-    if (
-      !(symbols instanceof Uint8Array) ||
-      symbols.length < PAIRS_PAY_FROM ||
-      this.#presentCount < this.#alphabetSize
-    )
-      return;
-    const { buffer, byteOffset, length } = symbols;
-    this.#halvesFrom = byteOffset & 1;
-    this.#halves = new Uint16Array(
-      buffer,
-      byteOffset + this.#halvesFrom,
-      (length - this.#halvesFrom) >> 1,
-    );
-    if (this.#pairBits.length > 0) return;
-    // The sum is the same for either order of bytes.
-    this.#pairBits = new Uint8Array(65536);
-    for (let i = 0; i < 65536; i++)
-      this.#pairBits[i] = this.lengths[i & 255] + this.lengths[i >>> 8];
   }
 
   /**

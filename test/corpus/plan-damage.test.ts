@@ -38,7 +38,7 @@ describe('damage of a plan', () => {
       },
     ],
   ])('%s', (text, read) => {
-    expect(damageOf(text)).toEqual(read);
+    expect(damageOf(text)).toEqual({ seed: 1, ...read });
   });
 
   test('says which seed was taken where none is given', () => {

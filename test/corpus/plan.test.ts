@@ -391,7 +391,6 @@ describe('a broken plan', () => {
 describe('what is not yet built', () => {
   test.each([
     ['coders: {ours: {encode: ./codec -e, decode: ./codec -d, protocol: batch}}', 'coders'],
-    ['gate: {allow: {total: 0, each_file: 0.5%}}', 'gate'],
     ['check: crc32', 'check'],
   ])('%s', (line, key) => {
     const error = refusal(`${SHORT}${line}\n`);

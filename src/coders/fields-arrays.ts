@@ -10,8 +10,16 @@ import {
 } from '../models/field-plan.ts';
 import { TRANSFORM_CODES } from '../models/field-residual.ts';
 import { MOST_TOKENS, tokenCount } from '../models/field-token.ts';
-import { elementBytesFor } from './exporter.ts';
-import type { LanguageArray } from './language.ts';
+import { integerBytes } from './cost.ts';
+
+/** A table as it lies in flash. */
+export interface FlashArray {
+  readonly name: string;
+  readonly elementBytes: 1 | 2 | 4;
+  readonly values: ArrayLike<number>;
+  /** What it holds, in words. */
+  readonly comment: string;
+}
 
 /** What of the programs a plan needs. */
 export interface FieldShape {
@@ -108,104 +116,119 @@ export function fieldConstants({ partCount, layout }: FieldPlan): ReadonlyMap<st
   ]);
 }
 
-const array = (name: string, values: ArrayLike<number>, comment: string): LanguageArray => {
-  let greatest = 0;
+const array = (name: string, values: ArrayLike<number>, comment: string): FlashArray => {
+  let greatest = 1;
   for (let i = 0; i < values.length; i++) greatest = Math.max(greatest, values[i]);
-  return { name, elementBytes: elementBytesFor(greatest), values, comment };
+  return { name, elementBytes: integerBytes(greatest) as 1 | 2 | 4, values, comment };
 };
 
-/** The tables of a plan; `frequencies` are those of all slots, at one total. */
-export function fieldArrays(plan: FieldPlan, frequencies: Uint32Array): LanguageArray[] {
+/** Tables that say how the parts of a record are coded; those that none of its parts asks are left out. */
+export function fieldPlanArrays(plan: FieldPlan): FlashArray[] {
   const { layout, contexts, contextParts, firstParts, slotStart, tableStart } = plan;
   const { widths, signed, places } = layout;
   const parts = partsOf(plan);
   const classed = classedParts(plan);
-  const lows = new Uint32Array(plan.slotCount);
-  for (let table = 0; table < plan.tableCount; table++) {
-    let low = 0;
-    for (let slot = slotStart[table]; slot < slotStart[table + 1]; slot++) {
-      lows[slot] = low;
-      low += frequencies[slot];
-    }
-  }
+  const { reversed, classes, beside, linear } = fieldShape(plan);
+  const given = (condition: boolean, arrays: () => FlashArray[]): FlashArray[] =>
+    condition ? arrays() : [];
+  const each = <T>(list: readonly T[], of: (item: T) => number): number[] => list.map(of);
   return [
     array(
       'part_low_at',
-      places.map(({ lowAt }) => lowAt),
-      'For each part of a record: where its lowest byte lies,',
+      each(places, (p) => p.lowAt),
+      'For each part: where its lowest byte lies,',
     ),
     array(
       'part_bytes',
-      places.map(({ count }) => count),
+      each(places, (p) => p.count),
       'in how many bytes it lies,',
     ),
-    array(
-      'part_reversed',
-      places.map(({ reversed }) => Number(reversed)),
-      'whether its lowest byte comes last,',
-    ),
+    ...given(reversed, () => [
+      array(
+        'part_reversed',
+        each(places, (p) => Number(p.reversed)),
+        'whether that comes last,',
+      ),
+    ]),
     array(
       'part_shift',
-      places.map(({ shift }) => shift),
+      each(places, (p) => p.shift),
       'its lowest bit,',
     ),
     array('part_width', widths, 'how many bits it has,'),
-    array('part_signed', signed, "whether they are two's complement,"),
+    ...given(classes || beside || linear !== 'none', () => [
+      array('part_signed', signed, "whether they are two's complement,"),
+    ]),
     array(
       'part_transform',
-      parts.map((part) => heldAgainst(plan.transforms[part], signed[part])),
+      each(parts, (part) => heldAgainst(plan.transforms[part], signed[part])),
       'what its value is held against,',
     ),
     array(
       'part_context',
-      parts.map((part) => ASKED_BY_KIND.get(contexts[part])!),
-      'what its context asks,',
+      each(parts, (p) => ASKED_BY_KIND.get(contexts[p])!),
+      'what is asked,',
     ),
     array('part_asked', contextParts, 'of which part,'),
-    array(
-      'part_bounds',
-      parts.map((part) => Math.max(0, classed.indexOf(part))),
-      'which bounds part its values into classes,',
-    ),
-    array(
-      'part_tokens',
-      Array.from(widths, (width) => tokenCount(width)),
-      'how many tokens it has,',
-    ),
+    array('part_tokens', Array.from(widths, tokenCount), 'how many tokens it has,'),
     array(
       'table_start',
-      parts.map((part) => slotStart[tableStart[part]]),
+      each(parts, (part) => slotStart[tableStart[part]]),
       'and where its first table begins.',
     ),
     array('references', plan.references, 'What the first value of a message is held against,'),
-    array(
-      'part_first',
-      parts.map((part) => (firstParts[part] < 0 ? part : firstParts[part])),
-      'added to that of this part, where it is another.',
-    ),
-    array(
-      'bounds',
-      classed.flatMap((part) =>
-        Array.from(plan.bounds.subarray(part * BOUNDS, (part + 1) * BOUNDS), (b) => b - 1),
+    ...given(beside, () => [
+      array(
+        'part_first',
+        each(parts, (part) => (firstParts[part] < 0 ? part : firstParts[part])),
+        'added to that of this part, where it is another.',
       ),
-      'A value above is of a higher class; signs turned.',
-    ),
-    array('input_start', plan.inputStart, 'Parts that a linear prediction asks,'),
-    array('inputs', plan.inputs.length === 0 ? [0] : plan.inputs, 'one after another.'),
-    array('weight_start', plan.weightStart.slice(0, -1), 'Where weights of a part begin.'),
-    {
-      name: 'weights',
-      elementBytes: 2,
-      values: Array.from(plan.weights, (weight) => weight & 0xffff),
-      comment: "Weights, in 1/4096, two's complement.",
-    },
-    {
-      name: 'token_low',
-      elementBytes: 2,
-      values: lows,
-      comment: 'For each token of each table where its interval begins.',
-    },
+    ]),
+    ...given(classes, () => [
+      array(
+        'part_bounds',
+        each(parts, (part) => Math.max(0, classed.indexOf(part))),
+        'Which bounds part its values into classes:',
+      ),
+      array(
+        'bounds',
+        classed.flatMap((part) =>
+          Array.from(plan.bounds.subarray(part * BOUNDS, (part + 1) * BOUNDS), (b) => b - 1),
+        ),
+        'a value above is of a higher class; signs turned.',
+      ),
+    ]),
+    ...given(linear !== 'none', () => [
+      array('input_start', plan.inputStart, 'Where the parts begin that a prediction asks,'),
+      // An array needs an element, and no part need ask another.
+      array('inputs', plan.inputs.length === 0 ? [0] : plan.inputs, 'these parts,'),
+      array('weight_start', plan.weightStart.slice(0, -1), 'where its weights begin,'),
+      {
+        name: 'weights',
+        elementBytes: 2,
+        values: Array.from(plan.weights, (weight) => weight & 0xffff),
+        comment: "and these, in 1/4096, two's complement.",
+      },
+    ]),
   ];
+}
+
+/** For each token of each table where its interval begins; `frequencies` are those of all slots, at one total. */
+export function tokenArray(plan: FieldPlan, frequencies: Uint32Array): FlashArray {
+  const lows = new Uint32Array(plan.slotCount);
+  for (let table = 0; table < plan.tableCount; table++) {
+    let low = 0;
+    for (let slot = plan.slotStart[table]; slot < plan.slotStart[table + 1]; slot++) {
+      lows[slot] = low;
+      low += frequencies[slot];
+    }
+  }
+  return {
+    name: 'token_low',
+    elementBytes: 2,
+    values: lows,
+    comment: 'For each token of each table: where its interval begins.',
+  };
 }
 
 /** Most bits of a record beside the frame: tokens of the least frequency, extra bits, what divisions drop. */
