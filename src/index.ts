@@ -51,8 +51,10 @@ export {
 } from './compare/curve-findings.ts';
 export type { CurveLine, CurvePoint } from './compare/curve-points.ts';
 export { type Curve, type CurveEntropy, curvesOf } from './compare/curves.ts';
+export { type MeasuredCell, readMeasured, withMeasured } from './compare/measured.ts';
 export { type PooledRun, plainRun, pooledRun } from './compare/pooled-record.ts';
 export { type LoadedRun, loadRun } from './compare/read-messages.ts';
+export { cellNamed, type Why, whyOf } from './compare/why.ts';
 export { type Plan, parsePlan, readPlan } from './corpus/plan.ts';
 export {
   type EntropyByOrder,
@@ -64,8 +66,12 @@ export * from './errors/errors.ts';
 export { type Export, type ExportFormat, exportFiles } from './export/export-files.ts';
 export { type ExportSubject, exportSubject } from './export/export-subject.ts';
 export { proveExport } from './export/prove-export.ts';
+export { cacheFolder } from './harness/cache-folder.ts';
+export { CacheStore } from './harness/cache-store.ts';
+export { type CalibrationPlan, calibrationSources, runCalibration } from './harness/calibrate.ts';
 export { packContainer, unpackContainer } from './harness/container.ts';
 export { type EntropyReport, entropyReport } from './harness/entropy-report.ts';
+export { estimateSeconds } from './harness/estimate.ts';
 export { loadCorpusData } from './harness/load-corpus-data.ts';
 export {
   type MemoryCorpusOptions,
@@ -81,9 +87,12 @@ export { readRunRecord, writeRunFolder } from './harness/run-folder.ts';
 export { type RunPlanOptions, runPlan } from './harness/run-plan.ts';
 export { type RunRecord, runRecordJsonSchema } from './harness/run-record.ts';
 export { type MannerResult, type RunManner, runWith } from './harness/run-with.ts';
+export { calibrateScreen } from './report/calibrate-screen.ts';
 export { chooseScreen } from './report/choose-screen.ts';
+export { entropyScreen } from './report/entropy-screen.ts';
 export { runScreen } from './report/run-screen.ts';
 export { tryScreen } from './report/try-screen.ts';
+export { whyScreen } from './report/why-screen.ts';
 export type { SpeedComparison, SpeedVerdict } from './statistics/speed-verdict.ts';
 export {
   oneMessage,
