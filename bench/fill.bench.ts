@@ -30,7 +30,7 @@ function encode(coder: Coder, setup: Setup, sequence: SymbolSequence): Coded {
   return encoder.finish();
 }
 
-const ROUNDS = 7;
+const ROUNDS = 9;
 let kept = 0;
 
 /** Milliseconds of processor time: other work on the machine disturbs it less than the clock's. */

@@ -2,6 +2,7 @@ import { coderEntries } from '../coders/registry.ts';
 import { choiceJsonSchema } from '../compare/choice.ts';
 import { planJsonSchema } from '../corpus/plan-schema.ts';
 import { exportJsonSchema } from '../export/json-file.ts';
+import { baselineJsonSchema } from '../gate/baseline.ts';
 import { runRecordJsonSchema } from '../harness/run-record.ts';
 import { coderDocument } from '../report/coder-document.ts';
 
@@ -12,6 +13,7 @@ export function documents(): ReadonlyMap<string, string> {
     ['coders.md', coderDocument(coderEntries.map((entry) => entry.declaration))],
     ['plan.schema.json', json(planJsonSchema())],
     ['run-record.schema.json', json(runRecordJsonSchema())],
+    ['baseline.schema.json', json(baselineJsonSchema())],
     ['choice.schema.json', json(choiceJsonSchema())],
     ['export.schema.json', json(exportJsonSchema())],
   ]);

@@ -1,5 +1,6 @@
 import { Command } from 'commander';
 import { toolVersion } from '../harness/environment.ts';
+import { registerAdopt } from './commands/adopt.ts';
 import { registerCache } from './commands/cache.ts';
 import { registerCalibrate } from './commands/calibrate.ts';
 import { registerChoose } from './commands/choose.ts';
@@ -8,6 +9,8 @@ import { registerDecode } from './commands/decode.ts';
 import { registerEncode } from './commands/encode.ts';
 import { registerEntropy } from './commands/entropy.ts';
 import { registerExport } from './commands/export.ts';
+import { registerGate } from './commands/gate.ts';
+import { registerHistory } from './commands/history.ts';
 import { registerRun } from './commands/run.ts';
 import { registerTry } from './commands/try.ts';
 
@@ -32,6 +35,9 @@ export function buildProgram(): Command {
     registerDecode,
     registerChoose,
     registerExport,
+    registerAdopt,
+    registerGate,
+    registerHistory,
     registerCache,
   ];
   for (const add of register) add(program);

@@ -28,7 +28,7 @@ export function blockCosts(
   const keyBytes = greatest < 2 ** 32 ? integerBytes(greatest) : n * integerBytes(alphabetSize - 1);
   const blockBytes = prefixTableBytes(blocks, 0);
   const tailBytes = prefixTableBytes(tail.table, alphabetSize - 1);
-  return measuredCosts(MEASURED.blockHuffman, lengths, {
+  return measuredCosts(n === 1 ? MEASURED.blocksOfOne : MEASURED.blocks, lengths, {
     encoder: ngrams * keyBytes + blockBytes.encoder + tailBytes.encoder,
     decoder: blocks.count * keyBytes + blockBytes.decoder + tailBytes.decoder,
   });

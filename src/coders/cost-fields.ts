@@ -1,15 +1,18 @@
-import {
-  BOUNDS,
-  EARLIER_VALUE,
-  type FieldPlan,
-  LAST_VALUE,
-  VALUE_BEFORE,
-} from '../models/field-plan.ts';
+import type { FieldPlan } from '../models/field-plan.ts';
 import { LINEAR } from '../models/field-residual.ts';
 import type { RangeBits } from '../stages/range-precision.ts';
-import type { TablePolicy } from './contract.ts';
-import { type BothEnds, type CodeEstimate, type EndCost, endCost, integerBytes } from './cost.ts';
+import type { Setup } from './contract.ts';
+import {
+  atBothEnds,
+  type BothEnds,
+  type CodeEstimate,
+  type EndCost,
+  endCost,
+  sumOf,
+} from './cost.ts';
+import { FIELDS_EXTRAS, MEASURED, measuredCosts } from './cost-measured.ts';
 import { rangeStateBytes } from './cost-static.ts';
+import { fieldPlanArrays, fieldShape, flashBytesOf } from './fields-arrays.ts';
 
 /** Take apart or put together, transform, context, token and extra bits, counts where they adapt; a range coder's. */
 const FIELDS_CODE: BothEnds<CodeEstimate> = {
@@ -21,64 +24,57 @@ const ADAPTING_STATEMENTS = 16;
 /** A sum over inputs, and its place among the weights. */
 const LINEAR_STATEMENTS = 14;
 
-/** An integer a part each: value, residual, value before, the one before that, residual before. */
-const PART_STATE_BYTES = 5 * 4;
-
-/** Parts whose values are put in size classes: their bounds are kept. */
-function classedParts({ contexts, contextParts }: FieldPlan): Set<number> {
-  const kinds = [LAST_VALUE, EARLIER_VALUE, VALUE_BEFORE];
-  return new Set([...contextParts].filter((_, part) => kinds.includes(contexts[part])));
+/** An integer a part each: value, value before, the one before that where it is asked, size of the residual. */
+function partStateBytes(plan: FieldPlan): number {
+  const { delta2, linear } = fieldShape(plan);
+  return 4 * plan.partCount * (delta2 || linear !== 'none' ? 4 : 3);
 }
 
-/**
- * Bytes that describe the parts of a record, the same at both ends. For each part: width and sign (1 byte), place in the record
- * in bits, transform and context (1), the part asked, its first table, the value before the first in as many bytes as the
- * width needs, where any is coded so the part beside which a first value is; where a context asks for its class, the bounds.
- * Once a table, and once more: its first slot. Under `linear` besides the number of inputs (1), which they are, and 2 bytes a
- * weight.
- */
-function fieldPlanBytes(plan: FieldPlan): number {
-  const { layout, partCount, tableCount, slotCount, transforms, inputStart, weightStart } = plan;
-  const nameBytes = integerBytes(partCount - 1);
-  const partBytes =
-    2 +
-    integerBytes(8 * layout.bytes - 1) +
-    nameBytes +
-    (plan.firstParts.some((beside) => beside >= 0) ? integerBytes(partCount) : 0) +
-    integerBytes(tableCount - 1);
-  let bytes = (tableCount + 1) * integerBytes(slotCount) + partCount * partBytes;
-  for (const part of classedParts(plan)) bytes += BOUNDS * integerBytes(2 ** layout.widths[part]);
-  for (let part = 0; part < partCount; part++) {
-    bytes += integerBytes(2 ** layout.widths[part] - 1);
-    if (transforms[part] === LINEAR)
-      bytes +=
-        1 +
-        nameBytes * (inputStart[part + 1] - inputStart[part]) +
-        2 * (weightStart[part + 1] - weightStart[part]);
-  }
-  return bytes;
+/** As exported; see `cost-measured.ts`. */
+function exportedCosts(plan: FieldPlan, { lengths }: Setup, flashBytes: number): BothEnds<EndCost> {
+  const { classes, beside, reversed, delta2, linear } = fieldShape(plan);
+  const extras = [
+    ...(classes ? [FIELDS_EXTRAS.classes] : []),
+    ...(beside ? [FIELDS_EXTRAS.beside] : []),
+    ...(reversed ? [FIELDS_EXTRAS.reversed] : []),
+    ...(delta2 ? [FIELDS_EXTRAS.delta2] : []),
+    ...(linear === 'none' ? [] : [FIELDS_EXTRAS.linear]),
+    ...(linear === 'wide' ? [FIELDS_EXTRAS.wide] : []),
+  ];
+  const parts: EndCost = { flashBytes: 0, codeBytes: 0, ramBytes: partStateBytes(plan) };
+  const form = measuredCosts(MEASURED.fields, lengths, {
+    encoder: flashBytes,
+    decoder: flashBytes,
+  });
+  return [{ encoder: parts, decoder: parts }, ...extras].reduce<BothEnds<EndCost>>(
+    (cost, extra) => atBothEnds(cost, extra, sumOf),
+    form,
+  );
 }
 
 /**
  * Costs of `fields`.
  *
- * `shipped`: one lower end of 2 bytes a slot; a frequency is the distance to the next. `learned`, `primed`: a count of 2 bytes
- * a slot and a total of 2 bytes a table in RAM, and under `primed` the same in flash, to start from. A carry may run back to a
- * message's first byte, so the encoder holds its coded message. The record itself is the caller's.
+ * `shipped`: how each part is coded (fields-arrays.ts), and one lower end of 2 bytes a token of a table; a frequency is the
+ * distance to the next. With a range of 32 bits code and RAM are those of the exported form. `learned`, `primed`: a count of 2
+ * bytes a token and a total of 2 bytes a table in RAM, and under `primed` the same in flash, to start from. Where nothing is
+ * exported, a carry may run back to a message's first byte, so the encoder holds its coded message. The record itself is the
+ * caller's.
  */
 export function fieldsCosts(
   plan: FieldPlan,
-  policy: TablePolicy,
+  setup: Setup,
   bits: RangeBits,
   longestCodedBytes: number,
 ): BothEnds<EndCost> {
+  const { policy } = setup;
   const adapts = policy !== 'shipped';
   const countBytes = 2 * (plan.slotCount + plan.tableCount);
   const tableBytes = policy === 'learned' ? 0 : adapts ? countBytes : 2 * plan.slotCount;
-  const flashBytes = fieldPlanBytes(plan) + tableBytes;
+  const flashBytes = flashBytesOf(fieldPlanArrays(plan)) + tableBytes;
+  if (!adapts && bits === 32) return exportedCosts(plan, setup, flashBytes);
   // The last byte tells how many records lie before.
-  const stateBytes =
-    rangeStateBytes(bits) + plan.partCount * PART_STATE_BYTES + 1 + (adapts ? countBytes : 0);
+  const stateBytes = rangeStateBytes(bits) + partStateBytes(plan) + 1 + (adapts ? countBytes : 0);
   const code = ({ statements, nestedCalls }: CodeEstimate): CodeEstimate => ({
     statements:
       statements +

@@ -9,9 +9,9 @@ import type { Setup } from './contract.ts';
 export interface EndCost {
   /** Tables; exact for the layout that the coder states. */
   readonly flashBytes: number;
-  /** State, the coder's own buffers, and a bound on its stack; the stack is an estimate. */
+  /** State, the coder's own buffers, and a bound on its stack; measured or estimated as the code is. */
   readonly ramBytes: number;
-  /** Machine code: an estimate, see {@link CodeEstimate}. */
+  /** Machine code: measured where a coder can be exported (cost-measured.ts), else an estimate, see {@link CodeEstimate}. */
   readonly codeBytes: number;
 }
 

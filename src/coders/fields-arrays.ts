@@ -213,6 +213,9 @@ export function fieldPlanArrays(plan: FieldPlan): FlashArray[] {
   ];
 }
 
+export const flashBytesOf = (arrays: readonly FlashArray[]): number =>
+  arrays.reduce((sum, { values, elementBytes }) => sum + values.length * elementBytes, 0);
+
 /** For each token of each table where its interval begins; `frequencies` are those of all slots, at one total. */
 export function tokenArray(plan: FieldPlan, frequencies: Uint32Array): FlashArray {
   const lows = new Uint32Array(plan.slotCount);

@@ -51,7 +51,7 @@ function create(values: ParameterValues): Coder {
         setup.policy === 'shipped'
           ? tablesFor(setup, 'shipped')
           : adaptiveTablesFor(settings, setup);
-      return fieldsCosts(plan, setup.policy, settings.rangeBits, longestCodedBytes);
+      return fieldsCosts(plan, setup, settings.rangeBits, longestCodedBytes);
     },
     operations: (sequence, setup) => fieldsOperations(settings, sequence, setup),
     decoderHolds: () => settings.rangeBits / 8,

@@ -11,14 +11,14 @@ export interface WordCounter {
 
 /** More than any symbol count takes. */
 const COUNT_BITS = 64;
-/** Symbols after which decided messages go to the encoder, while they are still near. */
-const HANDED_SYMBOLS = 2 ** 15;
+/** Symbols after which decided messages go to the encoder; with fewer, counting and coding push out each other's tables. */
+const HANDED_SYMBOLS = 2 ** 18;
 
 /**
- * Fills messages of words whose lengths do not depend on their neighbours: bits are counted unit by unit, each once, and
- * whole messages handed to a plain encoder. Exact because sizes never fall.
+ * Fills messages of words whose lengths do not depend on their neighbours: bits are counted unit by unit, each once,
+ * and whole messages handed to a plain encoder. Exact because sizes never fall.
  *
- * Cost: a plain encode, and one look-up for each symbol.
+ * Cost: a plain encode, and one look-up for each symbol, or two.
  * @param encoder  of the same setup without `fill`
  */
 export function countingFiller(setup: Setup, encoder: Encoder, words: WordCounter): Encoder {

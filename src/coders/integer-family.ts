@@ -26,7 +26,7 @@ export interface ParameterChooser {
  */
 export interface IntegerFamily {
   /** Name of the coder. */
-  readonly name: string;
+  readonly name: 'rice' | 'golomb' | 'exp-golomb';
   /** Key and range of the parameter. */
   readonly key: string;
   readonly least: number;

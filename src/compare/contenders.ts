@@ -95,9 +95,14 @@ function cellsByGroup(record: RunRecord): Map<string, CellsByBase> {
   return groups;
 }
 
+function blocksWithSymbols({ files = [] }: CellRecord): number {
+  return files.filter((file) => file.symbol_count > 0).length;
+}
+
 function groupOf(
   cells: CellsByBase,
   messages: ReadonlyMap<string, MessagePairs>,
+  sampled: ReadonlySet<string>,
 ): ContenderGroup | undefined {
   const folds = [...new Set([...cells.values()].flatMap((own) => [...own.keys()]))].sort(
     (a, b) => a - b,
@@ -116,7 +121,11 @@ function groupOf(
   const fewest = Math.min(
     ...whole.map((one) => one.cells.reduce((sum, cell) => sum + cell.message_count!, 0)),
   );
-  const blocks = blocksFor(symbols.length, filled ? fewest : undefined);
+  // Of a sample each block stands as a file; those of the train part have no symbols.
+  const sampleBlocks = sampled.has(whole[0].cells[0].corpus)
+    ? whole[0].cells.reduce((sum, cell) => sum + blocksWithSymbols(cell), 0)
+    : undefined;
+  const blocks = blocksFor(symbols.length, filled ? fewest : undefined, sampleBlocks);
   const atLeastOne = { ...blocks, count: Math.max(1, blocks.count) };
   const contenders = whole.map((one): Contender => {
     const bits = one.cells.map((cell) => comparedBits(cell, messages.get(cell.id)!));
@@ -149,5 +158,10 @@ export function contenderGroups(
   record: RunRecord,
   messages: ReadonlyMap<string, MessagePairs>,
 ): ContenderGroup[] {
-  return [...cellsByGroup(record).values()].flatMap((cells) => groupOf(cells, messages) ?? []);
+  const sampled = new Set(
+    record.corpora.filter(({ sample }) => sample !== undefined).map(({ name }) => name),
+  );
+  return [...cellsByGroup(record).values()].flatMap(
+    (cells) => groupOf(cells, messages, sampled) ?? [],
+  );
 }

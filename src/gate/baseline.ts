@@ -205,9 +205,7 @@ export function baselineOf(record: RunRecord): Baseline {
       node: environment.node,
       zlib: environment.zlib,
     },
-    corpora: Object.fromEntries(
-      sorted(record.corpora.map((c) => [c.name, corpusOf(c)] as const)),
-    ),
+    corpora: Object.fromEntries(sorted(record.corpora.map((c) => [c.name, corpusOf(c)] as const))),
     cells: Object.fromEntries(
       sorted(record.cells.map((c) => [c.id, cellOf(c, plan.align)] as const)),
     ),

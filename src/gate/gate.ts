@@ -51,6 +51,8 @@ export interface CellGate {
   readonly filesOnly: boolean;
   /** Lines of the account that changed; none where files are compared. */
   readonly lines: readonly LineGrowth[];
+  /** Bits by which the estimate of the floor moved: lines above it move against it. */
+  readonly floorMoved: number;
   /** Files that grew by most of their own size first; those that kept theirs are left out. */
   readonly files: readonly FileGrowth[];
   /** Files that only one side has. */
@@ -129,9 +131,7 @@ function endChecks({ was, now }: PairedCell): GateCheck[] {
         return [{ figure, verdict: 'not compared', was: before, reason }];
       }
       const grown: GateVerdict = after > before ? 'lost' : 'better';
-      return [
-        { figure, verdict: after === before ? 'held' : grown, was: before, now: after },
-      ];
+      return [{ figure, verdict: after === before ? 'held' : grown, was: before, now: after }];
     }),
   );
 }
@@ -169,9 +169,10 @@ function speedCheck(
   if (typeof found === 'string') return [{ ...speeds, verdict: 'not compared', reason: found }];
   const [low, high] = [found.low, found.high].map((ratio) => ratio.toPrecision(3));
   const interval = `takes ${low} to ${high} times as long`;
+  const uneven = found.unsteady && found.verdict === 'slower';
   // An uneven machine may have been slow all through one of two runs: time again before a build fails by it.
-  if (found.unsteady && found.verdict !== 'alike') {
-    const reason = `${interval}, timed on an uneven machine: time it again`;
+  if (uneven) {
+    const reason = `${interval}, on an uneven machine: time it again`;
     return [{ ...speeds, verdict: 'open', reason }];
   }
   const verdicts = { slower: 'lost', faster: 'better', alike: 'held', undecided: 'open' } as const;
@@ -197,6 +198,33 @@ function unpairedFilesOf({ was, now }: PairedCell): CellGate['unpairedFiles'] {
   return [...others(was, 'baseline'), ...others(now, 'run')];
 }
 
+/** Verification, which nothing excuses; a cell that failed before has nothing to lose. */
+function verifiedCheck({ was, now }: PairedCell, failure: string | undefined): GateCheck {
+  const values = { figure: 'verified', was: was.verified, now: now.verified };
+  if (!was.verified && !now.verified) {
+    const reason = `failed in the baseline already${failure === undefined ? '' : `: ${failure}`}`;
+    return { ...values, verdict: 'not compared', reason };
+  }
+  if (now.verified) return { ...values, verdict: was.verified ? 'held' : 'better' };
+  return { ...values, verdict: 'lost', ...(failure === undefined ? {} : { reason: failure }) };
+}
+
+/** What a cell takes on a device, and how fast it is: only over the same data. */
+function deviceChecks(pair: PairedCell, classes: readonly [string, string]): GateCheck[] {
+  if (pair.filesOnly) {
+    const reason = `${pair.now.corpus} has other files`;
+    return [{ figure: 'sizes, operations and speeds', verdict: 'not compared', reason }];
+  }
+  const ends = ['encode', 'decode'] as const;
+  return [...endChecks(pair), ...ends.flatMap((end) => speedCheck(pair, end, classes))];
+}
+
+/** A speed that is better asks for no new baseline: it may be the machine. */
+function worstOf(parts: readonly { readonly verdict: GateVerdict }[]): CellGate['verdict'] {
+  if (parts.some(({ verdict }) => verdict === 'lost')) return 'lost';
+  return parts.some(({ verdict }) => verdict === 'better') ? 'better' : 'held';
+}
+
 function gateCell(
   pair: PairedCell,
   allow: Allow,
@@ -207,26 +235,15 @@ function gateCell(
   const reference = now.reference === true;
   const both = was.verified && now.verified;
   const files = both ? filesOf(pair, allow) : [];
-  const verified: GateCheck = {
-    figure: 'verified',
-    verdict: now.verified === was.verified ? 'held' : now.verified ? 'better' : 'lost',
-    was: was.verified,
-    now: now.verified,
-    ...(failure === undefined ? {} : { reason: failure }),
-  };
+  const verified = verifiedCheck(pair, failure);
   const checks = [
     verified,
     ...bitsChecks(pair, files, allow),
-    ...(!both || reference || filesOnly ? [] : endChecks(pair)),
-    ...(!both || reference
-      ? []
-      : (['encode', 'decode'] as const).flatMap((end) => speedCheck(pair, end, classes))),
+    ...(both && !reference ? deviceChecks(pair, classes) : []),
   ];
-  const verdict = checks.some((check) => check.verdict === 'lost')
-    ? 'lost'
-    : checks.some((check) => check.verdict === 'better')
-      ? 'better'
-      : 'held';
+  const verdict = worstOf(
+    checks.filter((c) => c.verdict === 'lost' || !c.figure.endsWith('.speed')),
+  );
   return {
     id,
     corpus: now.corpus,
@@ -236,6 +253,7 @@ function gateCell(
     ...totals(pair),
     filesOnly,
     lines: both && !filesOnly ? accountGrowth(was, now) : [],
+    floorMoved: both && !filesOnly ? (now.account?.floor ?? 0) - (was.account?.floor ?? 0) : 0,
     files,
     unpairedFiles: both ? unpairedFilesOf(pair) : [],
   };
@@ -257,13 +275,8 @@ export function gateRun(
   const failures: Record<string, string> = {};
   for (const { id, failure } of record.cells) if (failure !== undefined) failures[id] = failure;
   const cells = pairs.map((pair) => gateCell(pair, allow, classes, own(failures, pair.id)));
-  const verdict = cells.some((cell) => cell.verdict === 'lost')
-    ? 'lost'
-    : cells.some((cell) => cell.verdict === 'better')
-      ? 'better'
-      : 'held';
   return {
-    verdict,
+    verdict: worstOf(cells),
     title: record.plan.title,
     allow,
     tool: { was: baseline.tool.version, now: run.tool.version },
@@ -280,9 +293,10 @@ export function gateJson(gate: Gate): unknown {
     title: gate.title,
     allow: gate.allow,
     tool: gate.tool,
-    cells: gate.cells.map(({ filesOnly, unpairedFiles, ...cell }) => ({
+    cells: gate.cells.map(({ filesOnly, unpairedFiles, floorMoved, ...cell }) => ({
       ...cell,
       files_only: filesOnly,
+      floor_moved: floorMoved,
       unpaired_files: unpairedFiles,
     })),
     unpaired: gate.unpaired,

@@ -47,14 +47,20 @@ export function figuresOf(outcomes: readonly DamageOutcome[], errors: number): F
   };
 }
 
-/** The mean to a thousandth, so that it is the same whatever order it was summed in. */
+/** To a thousandth. */
+const rounded = (value: number): number => Math.round(value * 1000) / 1000;
+
 function spreadOf(counts: readonly number[]): CellDamage['messages_after'] {
-  if (counts.length === 0) return { mean: 0, p95: 0, max: 0 };
+  const n = counts.length;
+  if (n === 0) return { mean: 0, mean_error: 0, p95: 0, max: 0 };
   const sorted = Float64Array.from(counts).sort();
-  const mean = counts.reduce((sum, count) => sum + count, 0) / counts.length;
+  const mean = counts.reduce((sum, count) => sum + count, 0) / n;
+  const squares = counts.reduce((sum, count) => sum + (count - mean) ** 2, 0);
+  const error = n === 1 ? 0 : 1.96 * Math.sqrt(squares / (n - 1) / n);
   return {
-    mean: Math.round(mean * 1000) / 1000,
-    p95: sorted[Math.ceil(0.95 * sorted.length) - 1],
-    max: sorted[sorted.length - 1],
+    mean: rounded(mean),
+    mean_error: rounded(error),
+    p95: sorted[Math.ceil(0.95 * n) - 1],
+    max: sorted[n - 1],
   };
 }

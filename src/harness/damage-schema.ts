@@ -1,6 +1,13 @@
 import { z } from 'zod';
 
-const spread = z.strictObject({ mean: z.number(), p95: z.number(), max: z.number() });
+const spread = z.strictObject({
+  mean: z.number(),
+  mean_error: z
+    .number()
+    .describe('half of the 95 % interval of the mean, by the normal law over independent events'),
+  p95: z.number(),
+  max: z.number(),
+});
 
 /** What damage does to a cell: one entry a kind. */
 export const cellDamageSchema = z

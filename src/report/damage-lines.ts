@@ -24,17 +24,26 @@ interface DamageColumn extends Column {
 /** Three significant digits, without an exponent. */
 const digits = (value: number): string => String(Number(value.toPrecision(3)));
 
-/** Percent of a whole; what is not nothing or all never looks so. */
+/** The same in a column: its zeros stand. */
+function shareText(percent: number): string {
+  return percent >= 1e-6 ? percent.toPrecision(3) : digits(percent);
+}
+
+/** Percent of the damages, in whole points: no more is known of them. What is not none or all never looks so. */
 function percentText(part: number, whole: number): string {
   if (whole === 0) return '–';
   const percent = (100 * part) / whole;
-  if (percent > 0 && percent < 0.1) return '<0.1';
-  if (percent < 100 && percent > 99.9) return '>99.9';
-  return percent.toFixed(1);
+  if (percent > 0 && percent < 1) return '<1';
+  if (percent < 100 && percent > 99) return '>99';
+  return percent.toFixed(0);
 }
 
-function meanText(mean: number): string {
-  return mean >= 100 ? countText(mean) : digits(mean);
+/** A mean without digits that its interval does not carry. */
+function meanText({ mean, mean_error: error }: Damage['symbols_lost']): string {
+  if (error === 0) return mean >= 100 ? countText(mean) : digits(mean);
+  const place = Math.floor(Math.log10(error));
+  if (place >= 0) return countText(Math.round(mean / 10 ** place) * 10 ** place);
+  return mean.toFixed(Math.min(3, -place));
 }
 
 function columnsFor(kind: Kind, rows: readonly DamageRow[], withReset: boolean): DamageColumn[] {
@@ -62,17 +71,17 @@ function columnsFor(kind: Kind, rows: readonly DamageRow[], withReset: boolean):
     ...(withReset ? [left('reset', ({ cell }) => cell.reset)] : []),
     ...(kind === 'lose_messages'
       ? []
-      : [right('% hit', 2, ({ damage }) => digits(100 * damage.share))]),
+      : [right('% hit', 2, ({ damage }) => shareText(100 * damage.share))]),
     seen('decoder', 'detected'),
     seen('CRC-32', 'by_check'),
     seen('neither', 'undetected'),
     ...(rows.some(({ damage }) => damage.harmless > 0) ? [seen('harmless', 'harmless', 4)] : []),
-    right('lost', 0, ({ damage }) => meanText(damage.symbols_lost.mean)),
+    right('lost', 0, ({ damage }) => meanText(damage.symbols_lost)),
     right('most', 3, ({ damage }) => countText(damage.symbols_lost.max)),
     right('distance', 1, ({ damage }) =>
       damage.recovery === undefined ? '–' : countText(damage.recovery.p95),
     ),
-    ...(spreads ? [right('after', 0, ({ damage }) => meanText(damage.messages_after.mean))] : []),
+    ...(spreads ? [right('after', 0, ({ damage }) => meanText(damage.messages_after))] : []),
   ];
 }
 
@@ -93,18 +102,26 @@ function tableWithin(
   );
 }
 
+/** Half of the 95 % interval of a share of so many events, at its widest. */
+function pointsText(events: number): string {
+  return events === 0 ? '100' : String(Math.ceil((1.96 * 50) / Math.sqrt(events)));
+}
+
 /** What happens to the messages, and how many damages stand behind the figures. */
 function titleOf(rows: readonly DamageRow[]): string {
   const [{ damage }] = rows;
   const counts = rows.map((row) => row.damage.events);
-  const [least, most] = [Math.min(...counts), Math.max(...counts)].map(countInText);
-  const events = least === most ? most : `${least} to ${most}`;
+  const least = Math.min(...counts);
+  const most = Math.max(...counts);
+  const range = (from: string, to: string): string => (from === to ? to : `${from} to ${to}`);
+  const noun = damage.kind === 'lose_messages' ? 'runs of them' : 'damaged messages';
+  const events = `${range(countInText(least), countInText(most))} ${noun}, so that % are right within ${range(pointsText(most), pointsText(least))} points:`;
   if (damage.kind === 'flip')
-    return `Flipped bits, each with probability ${damage.probability}; ${events} damaged messages:`;
+    return `Flipped bits, each with probability ${damage.probability}; ${events}`;
   if (damage.kind === 'lose_bytes')
-    return `Lost bytes, each with probability ${damage.probability}; ${events} damaged messages:`;
+    return `Lost bytes, each with probability ${damage.probability}; ${events}`;
   if (damage.probability !== undefined)
-    return `Lost messages, each with probability ${damage.probability}; ${events} runs of them:`;
+    return `Lost messages, each with probability ${damage.probability}; ${events}`;
   const [toBad, toGood, inBad, inGood] = [
     damage.good_to_bad!,
     damage.bad_to_good!,
@@ -117,7 +134,7 @@ function titleOf(rows: readonly DamageRow[]): string {
     lostInBad: inBad,
     lostInGood: inGood,
   });
-  return `Lost messages, Gilbert–Elliott: good to bad ${toBad}, bad to good ${toGood}, lost in bad ${inBad}, in good ${inGood}; that is ${digits(100 * damage.share)} % of all, ${digits(run)} in a row on average; ${events} runs of them:`;
+  return `Lost messages, Gilbert–Elliott: good to bad ${toBad}, bad to good ${toGood}, lost in bad ${inBad}, in good ${inGood}; that is ${digits(100 * damage.share)} % of all, ${digits(run)} in a row on average; ${events}`;
 }
 
 /** The best of each reset, then the best of all, in the order of their rates. */
@@ -147,9 +164,9 @@ export function damageLines(cells: readonly CellRecord[], noun: string, columns:
       cell.damage!.filter((d) => d.kind === kind).map((damage) => ({ cell, damage })),
     );
     const table = tableWithin(columnsFor(kind, rows, withReset), rows, columns);
-    return [...paragraph(titleOf(rows), columns), '', ...table, ''];
+    return { lines: [...paragraph(titleOf(rows), columns), '', ...table, ''], head: table[0] };
   });
-  const heads = tables.flat().join('\n');
+  const heads = tables.map(({ head }) => head).join('\n');
   const rest = all.length - shown.length;
   const note = [
     'Damage, simulated, one at a time. In % of damages, who sees it: the decoder, by an error; only a CRC-32 of the symbols of each message, if there were one; neither, though symbols are lost.',
@@ -171,9 +188,10 @@ export function damageLines(cells: readonly CellRecord[], noun: string, columns:
     "Figures of a model and a sample: they replace neither your link's own protection nor its certification.",
   ].filter((text) => text !== '');
   return [
+    '',
     ...paragraph(note.join(' '), columns),
     '',
-    ...tables.flat(),
+    ...tables.flatMap(({ lines }) => lines),
     ...paragraph(caution.join(' '), columns),
     ...failures,
   ];

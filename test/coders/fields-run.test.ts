@@ -22,7 +22,11 @@ reset: [message, never]
 
 /** What the plan asks for, on the first messages of each part: enough to see what goes where. */
 async function requestFor(text: string): Promise<RunRequest> {
-  const { timing: _, ageing: __, ...request } = await requestOf(parsePlan(text, 'corpora-demo/plan.yaml'));
+  const {
+    timing: _,
+    ageing: __,
+    ...request
+  } = await requestOf(parsePlan(text, 'corpora-demo/plan.yaml'));
   const corpora = request.corpora.map((corpus) => ({
     ...corpus,
     train: sliceMessages(corpus.train!, 0, 40),

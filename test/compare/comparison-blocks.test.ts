@@ -13,6 +13,12 @@ describe('blocksFor', () => {
     expect(blocksFor(1e6)).toEqual({ count: 24, unit: 'blocks of messages' });
   });
 
+  it('takes no more blocks than a sample has', () => {
+    expect(blocksFor(5000, undefined, 10)).toEqual({ count: 10, unit: 'blocks of messages' });
+    expect(blocksFor(5000, undefined, 60)).toEqual({ count: 24, unit: 'blocks of messages' });
+    expect(blocksFor(9, undefined, 10)).toEqual({ count: 9, unit: 'messages' });
+  });
+
   it('puts two filled messages or more into a block', () => {
     expect(blocksFor(5000, 155)).toEqual({ count: 24, unit: 'blocks of units' });
     expect(blocksFor(5000, 47)).toEqual({ count: 23, unit: 'blocks of units' });

@@ -58,7 +58,7 @@ function endless(text: string): Candidate {
 
 /** So rare that a damaged message has one hit. */
 const RARE = 1e-12;
-const all = (x: number) => ({ mean: x, p95: x, max: x });
+const all = (x: number) => ({ mean: x, mean_error: 0, p95: x, max: x });
 
 describe('a code of fixed width, in bytes', () => {
   const corpus = memoryCorpus('a', noise(50, 20), { lengths: 'known' });
@@ -90,6 +90,9 @@ describe('a code of fixed width, in bytes', () => {
     expect(Math.abs(two.symbols_lost.mean - 20 * wrong)).toBeLessThan(
       error * Math.sqrt(20 * wrong * (1 - wrong)),
     );
+    // Half of the 95 % interval by the binomial law; a deviation that 2000 draws estimate is right to 1 ÷ √4000 of it.
+    const half = 1.96 * Math.sqrt((20 * wrong * (1 - wrong)) / 2000);
+    expect(Math.abs(two.symbols_lost.mean_error / half - 1)).toBeLessThan(5 / Math.sqrt(4000));
   });
 
   it('lacks a symbol for each lost byte, which its decoder sees', async () => {

@@ -4,11 +4,13 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { type Candidate, parseCandidate } from '../../src/coders/candidate.ts';
+import { parsePlan } from '../../src/corpus/plan.ts';
 import type { DamagePlan } from '../../src/harness/damage-experiment.ts';
 import { memoryCorpus } from '../../src/harness/memory-corpus.ts';
 import { type RunRequest, runAll } from '../../src/harness/run-all.ts';
 import { runRecordSchema } from '../../src/harness/run-record.ts';
 import { runWith } from '../../src/harness/run-with.ts';
+import { streamedRequestOf } from '../../src/harness/stream-request.ts';
 import { WorkerPool } from '../../src/harness/worker-pool.ts';
 import { builtFile } from './built.ts';
 
@@ -150,5 +152,22 @@ describe('damage in a run', () => {
       [true, undefined],
       [true, undefined],
     ]);
+  });
+
+  it('is refused for data that are read in pieces, with the line of the plan', async () => {
+    const plan = parsePlan(
+      `plan: 1
+corpora:
+  a: {files: a.bin, symbols: bytes, messages: lines}
+candidates: [huffman]
+memory: 512MB
+damage: {flip: 0.001}
+`,
+      'p.yaml',
+    );
+    await expect(streamedRequestOf(plan, plan.corpora)).rejects.toMatchObject({
+      message: 'no damage is simulated on data that are read in pieces',
+      where: { file: 'p.yaml', line: 6, key: 'damage', got: 'a' },
+    });
   });
 });

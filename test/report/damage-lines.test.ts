@@ -6,7 +6,7 @@ import { wholeRecord } from './sample-record.ts';
 
 type Damage = NonNullable<CellRecord['damage']>[number];
 
-const all = (x: number) => ({ mean: x, p95: x, max: x });
+const all = (x: number) => ({ mean: x, mean_error: 0, p95: x, max: x });
 
 /** Figures made up by hand; no coder was run for them. */
 function flips(more: Partial<Damage> = {}): Damage {
@@ -21,8 +21,8 @@ function flips(more: Partial<Damage> = {}): Damage {
     by_check: 499,
     undetected: 1,
     harmless: 0,
-    symbols_lost: { mean: 71.25, p95: 216, max: 1240 },
-    recovery: { mean: 80, p95: 217, max: 1240 },
+    symbols_lost: { mean: 71.25, mean_error: 3.2, p95: 216, max: 1240 },
+    recovery: { mean: 80, mean_error: 3, p95: 217, max: 1240 },
     messages_after: all(0),
     ...more,
   });
@@ -79,13 +79,16 @@ describe('damage on the screen', () => {
     expect(rowOf(lines, 'candidate')[0]).toEqual(
       'candidate,tables,% hit,decoder,CRC-32,neither,lost,most,distance'.split(','),
     );
-    // 1500, 499 and 1 of 2000; one in 2000 is not nothing.
+    // 1500, 499 and 1 of 2000; one in 2000 is not nothing. The mean 71.25 is known to ± 3.2.
     expect(rowOf(lines, 'huffman')).toEqual([
-      ['huffman', 'shipped', '12.3', '75.0', '24.9', '<0.1', '71.3', '1 240', '217'],
-      ['huffman', 'shipped', '0.0', '0.0', '100.0', '71.3', '1 240', '217'],
+      ['huffman', 'shipped', '12.3', '75', '25', '<1', '71', '1 240', '217'],
+      ['huffman', 'shipped', '0', '0', '100', '71', '1 240', '217'],
     ]);
     const text = lines.join(' ').replaceAll(/\s+/g, ' ');
-    expect(text).toContain('Flipped bits, each with probability 0.0001; 2 000 damaged messages:');
+    // 1.96 · ½ ÷ √2000 is 2.2 %.
+    expect(text).toContain(
+      'Flipped bits, each with probability 0.0001; 2 000 damaged messages, so that % are right within 3 points:',
+    );
     // Runs under these four: lost 1/62 of all, and a run begins with 0.01·30/31·0.5 + 0.7·1/31·0.5·0.5 of them.
     const begins = 0.01 * (30 / 31) * 0.5 + 0.7 * (1 / 31) * 0.5 * 0.5;
     const run = Number((1 / 62 / begins).toPrecision(3));
@@ -97,10 +100,15 @@ describe('damage on the screen', () => {
   it.each([100, 80])('keeps within %i columns, and explains what it shows', (columns) => {
     const cells = [
       cell('block-huffman:n=2', 3, [flips({ harmless: 2, by_check: 497 }), losses()]),
-      cell('arith:order=2', 2, [flips({ messages_after: { mean: 7.5, p95: 15, max: 15 } })], {
-        reset: 'message*16',
-        tables: 'learned',
-      }),
+      cell(
+        'arith:order=2',
+        2,
+        [flips({ messages_after: { mean: 7.46, mean_error: 0.2, p95: 15, max: 15 } })],
+        {
+          reset: 'message*16',
+          tables: 'learned',
+        },
+      ),
     ];
     const lines = damageLines(cells, 'byte', columns);
     for (const line of lines) expect([...line].length).toBeLessThanOrEqual(columns);
@@ -135,9 +143,23 @@ describe('damage on the screen', () => {
     const near = flips({ detected: 1999, by_check: 1, undetected: 0 });
     const none = flips({ events: 0, detected: 0, by_check: 0, undetected: 0 });
     const lines = damageLines([cell('rice', 1, [near]), cell('huffman', 2, [none])], 'byte', 100);
-    expect(rowOf(lines, 'rice')[0].slice(3, 6)).toEqual(['>99.9', '<0.1', '0.0']);
+    expect(rowOf(lines, 'rice')[0].slice(3, 6)).toEqual(['>99', '<1', '0']);
     expect(rowOf(lines, 'huffman')[0].slice(3, 6)).toEqual(['–', '–', '–']);
-    expect(lines.join(' ').replaceAll(/\s+/g, ' ')).toContain('0 to 2 000 damaged messages');
+    expect(lines.join(' ').replaceAll(/\s+/g, ' ')).toContain(
+      '0 to 2 000 damaged messages, so that % are right within 3 to 100 points',
+    );
+  });
+
+  it('gives a mean no more digits than its interval carries', () => {
+    const lost = (mean: number, error: number) => {
+      const damage = flips({ symbols_lost: { mean, mean_error: error, p95: mean, max: mean } });
+      return rowOf(damageLines([cell('rice', 1, [damage])], 'byte', 100), 'rice')[0][6];
+    };
+    expect(lost(51848.765, 12345)).toBe('50 000');
+    expect(lost(817.4, 6.1)).toBe('817');
+    expect(lost(2.159, 0.04)).toBe('2.16');
+    expect(lost(1.0005, 0.0004)).toBe('1.000');
+    expect(lost(168, 0)).toBe('168');
   });
 
   it('names a cell whose damage could not be found out', () => {

@@ -4,6 +4,7 @@ import { BitReader } from '../../src/bits/bit-reader.ts';
 import { BitWriter } from '../../src/bits/bit-writer.ts';
 import { CorruptStreamError, PromiseError } from '../../src/errors/errors.ts';
 import { ABSENT, codeLengths } from '../../src/stages/code-lengths.ts';
+import { PrefixBitCounter } from '../../src/stages/prefix-bit-counter.ts';
 import { canonicalCodes, LengthTally } from '../../src/stages/prefix-code.ts';
 import { PrefixDecoder } from '../../src/stages/prefix-decoder.ts';
 import { PrefixEncoder } from '../../src/stages/prefix-encoder.ts';
@@ -289,5 +290,30 @@ describe('the prefix kernels', () => {
         },
       ),
     );
+  });
+});
+
+describe('the bit counter', () => {
+  it.each([
+    [256, 0],
+    [256, 1],
+    [40, 1],
+    [257, 0],
+  ])('adds up word lengths, of %i symbols, from offset %i', (alphabetSize, offset) => {
+    const lengths = codeLengths(
+      Array.from({ length: alphabetSize }, (_, i) => 1 + ((i * 7919) % 1000)),
+      24,
+    );
+    const words = wordsOf(alphabetSize, lengths);
+    const symbols = message(words, 5, 40_001).subarray(offset);
+    const counter = new PrefixBitCounter(encoderOf(words));
+    const next = integers(offset + alphabetSize);
+    for (let i = 0; i < 400; i++) {
+      const from = next() % symbols.length;
+      const to = Math.min(symbols.length, from + (next() % (i % 4 === 0 ? 5000 : 12)));
+      let bits = 0;
+      for (let j = from; j < to; j++) bits += lengths[symbols[j]];
+      expect(counter.bitsOf(symbols, from, to)).toBe(bits);
+    }
   });
 });

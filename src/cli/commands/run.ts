@@ -6,7 +6,7 @@ import { type Plan, readPlan } from '../../corpus/plan.ts';
 import { InputError } from '../../errors/errors.ts';
 import type { Cell } from '../../harness/cells.ts';
 import { estimateSeconds } from '../../harness/estimate.ts';
-import { cellsOf, type RunRequest } from '../../harness/run-all.ts';
+import { cellsOf, type RunRequest, type RunResult } from '../../harness/run-all.ts';
 import { writeRunFolder } from '../../harness/run-folder.ts';
 import { plannedRunOf, runPlanned } from '../../harness/run-within.ts';
 import { streamedCellsOf } from '../../harness/stream-run.ts';
@@ -106,13 +106,23 @@ async function listCellsOf(
   await writeStandardOutput(`${lines.join('\n')}\n`);
 }
 
-async function runPlanFile(planFile: string, options: RunOptions): Promise<void> {
+/**
+ * Runs a plan and writes its folder, with progress and notes on standard error; lists its cells instead where that is asked for.
+ * @returns the folder, and what the run came to; undefined where cells were listed
+ */
+export async function runIntoFolder(
+  planFile: string,
+  options: RunOptions,
+): Promise<{ folder: string; result: RunResult } | undefined> {
   const plan = withMemoryOptions(await readPlan(planFile), options);
   guardCandidates(plan);
   const planned = await plannedRunOf(plan, options.only);
   const { request, inPieces } = planned;
   const others = inPieces === undefined ? [] : streamedCellsOf(inPieces).cells;
-  if (options.cells) return listCellsOf(request, others, options.json === true);
+  if (options.cells) {
+    await listCellsOf(request, others, options.json === true);
+    return undefined;
+  }
   if (others.length === 0) await guardCells(request, options);
   // A split that nothing uses needs no word.
   const open = plan.chosen.filter(
@@ -136,8 +146,15 @@ async function runPlanFile(planFile: string, options: RunOptions): Promise<void>
   for (const note of cacheNotes(result)) process.stderr.write(`bitassay: ${note}\n`);
   const folder = options.output ?? defaultFolder(planFile);
   await writeRunFolder(folder, result);
-  const { record } = result;
   process.stderr.write(`bitassay: record in ${join(folder, 'run.json')}\n`);
+  return { folder, result };
+}
+
+async function runPlanFile(planFile: string, options: RunOptions): Promise<void> {
+  const run = await runIntoFolder(planFile, options);
+  if (run === undefined) return;
+  const { result } = run;
+  const { record } = result;
   if (options.json) {
     await writeStandardOutput(`${JSON.stringify(record, null, 1)}\n`);
   } else {
