@@ -176,22 +176,22 @@ describe('sent as filled packets', () => {
     ['nothing is asked', {}, 'fields:auto@shipped'],
     [
       'the tables of all fields are too large',
-      { max: { flash_bytes: 8000 } },
+      { max: { flash_bytes: 7000 } },
       'arith:order=0,position=24@learned',
     ],
     [
       'counts for each place in the record are too large; of the orders that cannot be told apart the smallest remains',
-      { max: { flash_bytes: 8000, ram_bytes: 16_384 } },
+      { max: { flash_bytes: 7000, ram_bytes: 16_384 } },
       'arith:order=1@learned',
     ],
     [
       'and so are counts for each byte before',
-      { max: { flash_bytes: 8000, ram_bytes: 4096 } },
+      { max: { flash_bytes: 7000, ram_bytes: 4096 } },
       'arith:order=0@learned',
     ],
     [
       'no counts at all: two static coders cannot be told apart, and Huffman takes less',
-      { max: { flash_bytes: 8000, ram_bytes: 1024 } },
+      { max: { flash_bytes: 7000, ram_bytes: 1024 } },
       'huffman@shipped',
     ],
     ['no table fits', { max: { flash_bytes: 500, ram_bytes: 1024 } }, 'fixed@none'],

@@ -37,9 +37,7 @@ export function lossFigures(
 }
 
 function lostShare(cell: Cell, corpus: CorpusShape, rate: number): number {
-  const groups = decodesAlone(cell)
-    ? undefined
-    : messagesOfUnits(corpus, cell.reset);
+  const groups = decodesAlone(cell) ? undefined : messagesOfUnits(corpus, cell.reset);
   if (groups === undefined) return rate;
   // Σ over i = 1 … g of 1 − (1 − rate)^i, in a form that stays exact for rare losses.
   const lostBySize = new Map<number, number>();

@@ -111,9 +111,12 @@ describe('a run with a cache', () => {
     };
     const broken = await runWith(requestOf(texts), hooks, { cache });
     expect(broken.record.partial).toBe(true);
-    expect(broken.record.cells.length).toBe(3);
+    // Cells in hand when the third was done still end, and are kept.
+    const kept = broken.record.cells.length;
+    expect(kept).toBeGreaterThanOrEqual(3);
     const resumed = await runWith(requestOf(texts), {}, { cache });
-    expect(resumed.cellsTaken).toBe(3);
+    expect(resumed.cellsTaken).toBe(kept);
+    expect(resumed.record.cells.length).toBeGreaterThan(kept);
     expect(resumed.record).toEqual((await runWith(requestOf(texts), {}, { cache: false })).record);
   });
 });
