@@ -153,7 +153,7 @@ export async function runIntoFolder(
 async function runPlanFile(planFile: string, options: RunOptions): Promise<void> {
   const run = await runIntoFolder(planFile, options);
   if (run === undefined) return;
-  const { result } = run;
+  const { folder, result } = run;
   const { record } = result;
   if (options.json) {
     await writeStandardOutput(`${JSON.stringify(record, null, 1)}\n`);
@@ -163,7 +163,7 @@ async function runPlanFile(planFile: string, options: RunOptions): Promise<void>
         columns: terminalColumns(),
         ascii: !terminalShowsUnicode(),
         compared: compareRun(record, result.messages),
-        next: `bitassay entropy ${planFile}`,
+        next: `bitassay choose ${folder}`,
       }),
     );
   }
