@@ -84,12 +84,12 @@ describe('the checker', () => {
 
   it('reports siblings that import one another', () => {
     const { faults } = check({
-      'gate/gate.ts': `import '../compare/compare.ts';\nimport '../report/report.ts';\n`,
-      'report/report.ts': `import '../export/export.ts';\n`,
+      'gate/gate.ts': `import '../compare/compare.ts';\nimport '../export/export.ts';\n`,
+      'export/export.ts': `import '../gate/gate.ts';\n`,
     });
     expect(faults).toEqual([
-      'gate/gate.ts:2 gate and report share a row and do not import one another',
-      'report/report.ts:1 report and export share a row and do not import one another',
+      'export/export.ts:1 export and gate share a row and do not import one another',
+      'gate/gate.ts:2 gate and export share a row and do not import one another',
     ]);
   });
 

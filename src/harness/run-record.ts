@@ -71,8 +71,13 @@ const operation = z.strictObject({
 const deviceEnd = z
   .strictObject({
     flash_bytes: z.number().optional().describe('tables'),
-    ram_bytes: z.number().optional().describe('state, own buffers, stack (an estimate)'),
-    code_bytes: z.number().optional().describe('an estimate'),
+    ram_bytes: z
+      .number()
+      .optional()
+      .describe(
+        'state, own buffers, stack; measured on x86-64 where the coder has an exported form, else estimated',
+      ),
+    code_bytes: z.number().optional().describe('machine code; measured and estimated alike'),
     cycles_per_symbol: z
       .number()
       .optional()

@@ -10,7 +10,7 @@ export function deviceNote(device: 'encoder' | 'decoder', grows: boolean): strin
   const growth = grows
     ? ' Under learned and primed, arith grows: its RAM is the most that these data made of it, and others can need more.'
     : '';
-  return `Flash is the ${device}'s tables in bytes, without code; RAM its state, buffers and an estimate of its stack.${growth} Where there is –, the coder does not tell. Code, operations and the other end are in the run record; measure on your device before you rely on them.`;
+  return `Flash is the ${device}'s tables in bytes, without code; RAM its state, buffers and stack, measured on x86-64 for what can be exported and estimated for the rest.${growth} Where there is –, the coder does not tell. Code, operations and the other end are in the run record; measure on your device before you rely on them.`;
 }
 
 /** Whether RAM is told of a model that grows. */

@@ -1,8 +1,9 @@
-import type { CellGate, Gate, GateCheck } from '../gate/gate.ts';
+import type { CellGate, Gate } from '../gate/gate.ts';
+import type { GateCheck } from '../gate/gate-check.ts';
 import { figureWords, fileText, lineText, valuesText, WORST_FILES } from './gate-words.ts';
 
 /** Text as XML 1.0 takes it, in an attribute or between tags: what it cannot hold is replaced. */
-export function xmlText(text: string): string {
+function xmlText(text: string): string {
   return text
     .replaceAll('\u00a0', ' ')
     .replace(/[^\t\n\r\u0020-\ud7ff\ue000-\ufffd\u{10000}-\u{10ffff}]/gu, '\ufffd')

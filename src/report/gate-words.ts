@@ -1,7 +1,8 @@
 import { LINE_LETTERS } from '../account/bit-account.ts';
 import type { LineGrowth } from '../gate/account-growth.ts';
 import { growthText } from '../gate/allow.ts';
-import type { CellGate, FileGrowth, Gate, GateCheck } from '../gate/gate.ts';
+import type { CellGate, FileGrowth, Gate } from '../gate/gate.ts';
+import type { GateCheck } from '../gate/gate-check.ts';
 import { countInText } from './paragraph.ts';
 import { spellGap } from './spelled-gap.ts';
 

@@ -176,6 +176,39 @@ describe('bitassay export', () => {
     },
   );
 
+  it(
+    'takes a cell of a run, and says of one without exported form what there is',
+    patience,
+    async () => {
+      const plan = join(folder, 'door.yaml');
+      writeFileSync(
+        plan,
+        [
+          'plan: 1',
+          'title: Door logs',
+          `corpora: { door: { files: ${JSON.stringify(log)}, symbols: bytes, messages: lines } }`,
+          'split: { by: message, order: in_time, train: 0.5 }',
+          'candidates: [huffman, "arith:order=1"]',
+          'tables: [shipped]',
+          'timing: { repeats: 1 }',
+        ].join('\n'),
+      );
+      const to = join(folder, 'door.run');
+      const silenced = process.stdout.write;
+      process.stdout.write = (() => true) as typeof process.stdout.write;
+      try {
+        await buildProgram().parseAsync(['node', 'bitassay', 'run', plan, '-o', to]);
+      } finally {
+        process.stdout.write = silenced;
+      }
+      const said = await run(to, '--cell', 'huffman', '--to', 'json', '-o', join(folder, 'cell'));
+      expect(said).toMatch(/^huffman, tables [0-9a-f]{8}: .* on the test part/);
+      await expect(run(to, '--cell', 'arith', '-o', join(folder, 'none'))).rejects.toThrow(
+        /door\/arith:order=1@shipped\/message cannot be exported: only range=32/,
+      );
+    },
+  );
+
   it.each([
     ['neither run nor coder', [], /from a run, or from --coder/],
     ['a coder without data', ['--coder', 'huffman'], /needs data to train/],

@@ -15,6 +15,7 @@ import { loadModule } from '../../src/export/run-ts.ts';
 import { tsFile } from '../../src/export/ts-file.ts';
 import { SeededGenerator } from '../../src/statistics/generator.ts';
 import { parseRecordField, type RecordShape } from '../../src/symbols/record.ts';
+import { RecordLayout } from '../../src/symbols/record-layout.ts';
 import type { SymbolSequence } from '../../src/symbols/sequence.ts';
 
 const naming = { name: 'reefer', provenance: ['Made by a test.'] };
@@ -137,6 +138,74 @@ describe('fields exported', () => {
     for (const proof of await proven(text, record, lengths, unitRecords)) {
       expect(proof.messages).toBe(700);
       expect(proof.damaged).toBe(600);
+    }
+  });
+});
+
+/** A record of random fields, and a random choice for each of its parts. */
+function randomPlan(random: SeededGenerator): { record: RecordShape; map: string } {
+  const below = (n: number) => random.integer(0, n - 1);
+  const types = ['u8', 's8', 'u16le', 's16be', 'u24le', 's24be', 'u32be', 's32le', 'u3', 's7'];
+  const fields: Record<string, string> = {};
+  let bytes = 0;
+  const count = 1 + below(5);
+  for (let i = 0; i < count; i++) {
+    const type = types[below(types.length)];
+    // Now and then a byte that no field names.
+    const at = bytes + (below(4) === 0 ? 1 : 0);
+    const bits = /^[us](3|7)$/.test(type);
+    fields[`f${i}`] = bits ? `${type}@${at}.${below(8)}` : `${type}@${at}`;
+    bytes = at + (bits ? 2 : Math.ceil(Number(/\d+/.exec(type)![0]) / 8));
+  }
+  const record = recordOf(bytes, fields);
+  const { names } = new RecordLayout(record);
+  const choice = (part: number): string => {
+    const others = names.filter((_, other) => other !== part);
+    const earlier = names.slice(0, part);
+    const one = (list: readonly string[]) => list[below(list.length)];
+    const shuffled = others.toSorted(() => below(3) - 1);
+    const transforms = ['raw', 'delta', 'xor', 'delta2', 'linear'];
+    transforms.push(['linear', ...shuffled.slice(0, 1 + below(3))].join(':'));
+    const contexts = ['', '/last', '/value'];
+    if (others.length > 0) contexts.push(`/was:${one(others)}`, `/was:${one(others)}`);
+    if (part > 0) contexts.push(`/field:${one(earlier)}`, `/at:${one(earlier)}`);
+    const first = part > 0 && below(2) === 0 ? `/first:${one(earlier)}` : '';
+    return one(transforms) + one(contexts) + first;
+  };
+  return { record, map: names.map((name, part) => `${name}:${choice(part)}`).join('+') };
+}
+
+describe('fields exported as TypeScript', () => {
+  it('does the same for any record and any choices', { timeout: 60_000 }, async () => {
+    const folder = mkdtempSync(join(tmpdir(), 'bitassay-fields-'));
+    try {
+      const random = new SeededGenerator(11);
+      for (let i = 0; i < 60; i++) {
+        const { record, map } = randomPlan(random);
+        const candidate = parseCandidate(`fields:range=32,map=${map}`);
+        const base: Setup = {
+          policy: 'shipped',
+          alphabetSize: 256,
+          reset: 'message',
+          lengths: (['link', 'sent', 'known'] as const)[i % 3],
+          align: 8,
+          record,
+          unitSymbols: record.bytes,
+        };
+        // Wild records train every other plan: weights as large as they can be.
+        const wild = adversarialMessages(256, record.bytes, 60, 12 + i);
+        const calm = driftingMessages(record.bytes, 60, 13 + i);
+        const setup: Setup = {
+          ...base,
+          tables: trainOn(candidate, base, i % 2 === 0 ? calm : wild)!,
+        };
+        const module = join(folder, `reefer${i}.mjs`);
+        writeFileSync(module, tsFile(exportedCoder(candidate, setup), setup, naming, false));
+        const expected = expectation(candidate, setup, [wild, calm], 100);
+        expect(prove(expected, await loadModule(module)).messages, map).toBe(120);
+      }
+    } finally {
+      rmSync(folder, { recursive: true, force: true });
     }
   });
 });

@@ -4,7 +4,7 @@ import { baselineOf, baselineSchema } from '../../src/gate/baseline.ts';
 import { baselineText, parseBaseline } from '../../src/gate/baseline-file.ts';
 import { type Gate, gateRun } from '../../src/gate/gate.ts';
 import type { CellRecord, RunRecord } from '../../src/harness/run-record.ts';
-import { linesRecord, packetsRecord } from '../report/sample-record.ts';
+import { linesRecord, wholeRecord } from '../report/sample-record.ts';
 import { cellOf, hashOf, recordOf, timesOf } from './made-up.ts';
 
 const IDS = [
@@ -39,7 +39,7 @@ describe('a run against itself', () => {
   it.each([
     ['made up', run()],
     ['of lines', linesRecord],
-    ['of packets', packetsRecord],
+    ['of packets', wholeRecord],
     ['without cells', recordOf([])],
   ])('holds: %s', (_, record) => {
     const gate = gated(record, record);

@@ -29,10 +29,11 @@ interface AdoptOptions {
 
 /** The baseline of a run: beside its folder, which lies beside the plan unless -o put it elsewhere. */
 export function baselineBeside(run: string): string {
-  const folder = run.endsWith('.json') ? dirname(resolve(run)) : resolve(run);
-  const usual = join(dirname(folder), BASELINE_NAME);
-  // As short as it was given, where that is possible.
-  return dirname(folder) === process.cwd() ? BASELINE_NAME : usual;
+  const folder = run.endsWith('.json') ? dirname(run) : run;
+  const above = dirname(folder);
+  // The folder above `.` is not `.`.
+  const real = dirname(resolve(folder));
+  return join(resolve(above) === real ? above : real, BASELINE_NAME);
 }
 
 /** The record of a run that was not interrupted. */

@@ -73,6 +73,14 @@ function cellOf(record: RunRecord, text: string | undefined): CellRecord {
   const best = named.toSorted((a, b) => (a.carried_bits ?? 0) - (b.carried_bits ?? 0))[0];
   if (best !== undefined) return best;
   const folded = record.cells.some((cell) => cell.vary?.fold !== undefined);
+  const meant = record.cells.find((cell) => text !== undefined && cell.id.includes(text));
+  const reason = meant && whyNotExported(parseCandidate(meant.candidate));
+  if (meant !== undefined && reason !== undefined) {
+    throw new InputError(`${meant.id} cannot be exported: ${reason}`, {
+      expected: `a verified cell with shipped tables of ${exportableCoders.join(', ')}`,
+      advice: 'Put the form that can be exported among the candidates, and run the plan again.',
+    });
+  }
   throw new InputError('no cell of this run can be exported', {
     ...(text === undefined ? {} : { got: `--cell ${text}` }),
     expected: `a verified cell with shipped tables of ${exportableCoders.join(', ')}`,
