@@ -36,11 +36,13 @@ export class CellFigures {
   readonly cell: CellRecord;
   readonly #pairs: MessagePairs | undefined;
   readonly #end: DeviceEnd;
+  readonly #sampled: boolean;
   readonly #known = new Map<FigureKey, Figure | undefined>();
 
   /** @param pairs  carried bits and symbols of each message, or unit; without them nothing has an interval but speed */
-  constructor(cell: CellRecord, pairs: MessagePairs | undefined, end: DeviceEnd) {
+  constructor(cell: CellRecord, pairs: MessagePairs | undefined, end: DeviceEnd, sampled = false) {
     this.cell = cell;
+    this.#sampled = sampled;
     this.#pairs = pairs;
     this.#end = end;
   }
@@ -92,7 +94,11 @@ export class CellFigures {
   #rateOver(pairs: MessagePairs): Figure {
     const value = this.cell.rate!;
     const filled = this.cell.unit_count === undefined ? undefined : this.cell.message_count;
-    const blocks = blocksFor(pairs.bits.length, filled);
+    // Of a sample each block stands as a file, and nothing smaller may be resampled.
+    const sampleBlocks = this.#sampled
+      ? (this.cell.files ?? []).filter((file) => file.symbol_count > 0).length
+      : undefined;
+    const blocks = blocksFor(pairs.bits.length, filled, sampleBlocks);
     if (blocks.count < LEAST_BLOCKS) return { value };
     const bits = blockSums(comparedBits(this.cell, pairs), blocks);
     const { low, high } = pairedDifference({

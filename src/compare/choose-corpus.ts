@@ -171,8 +171,9 @@ export function chooseForCorpus(
   const cells = choosable(record, corpus);
   const goal = goalOf(cells, terms.cost);
   const { rankOf } = ranksOf(record, messages);
+  const sampled = record.corpora.find(({ name }) => name === corpus)?.sample !== undefined;
   const judged = cells.map((cell) => {
-    const figures = new CellFigures(cell, messages.get(cell.id), terms.end);
+    const figures = new CellFigures(cell, messages.get(cell.id), terms.end, sampled);
     const verdicts = judge(figures, terms.limits);
     const rank = rankOf.get(cell.id);
     const cost = yearlyCost(cell, terms.cost);
