@@ -1,14 +1,13 @@
 import { InputError } from '../errors/errors.ts';
-import { PrefixBitCounter } from '../stages/prefix-bit-counter.ts';
 import { PrefixDecoder } from '../stages/prefix-decoder.ts';
 import { PrefixEncoder } from '../stages/prefix-encoder.ts';
 import type { Coder, CoderEntry, Declaration, Setup, Tables } from './contract.ts';
 import { PREFIX_WINDOW_BYTES, prefixCosts, prefixOperations } from './cost-prefix.ts';
 import { sentPrefixCosts, sentPrefixOperations } from './cost-sent-prefix.ts';
-import { countingFiller } from './fill-counted.ts';
 import { symbolWidth } from './fixed.ts';
 import { sentReader, shippedReader } from './huffman-decoder.ts';
 import { messageEncoder, streamEncoder } from './huffman-encoder.ts';
+import { wordFiller } from './huffman-filler.ts';
 import { decodeWordsInPieces, huffmanPricer } from './huffman-pieces.ts';
 import { priceHuffman } from './huffman-price.ts';
 import {
@@ -137,13 +136,7 @@ function createHuffman(values: ParameterValues): Coder {
 
     filler(setup) {
       if (setup.policy !== 'shipped') return undefined;
-      const { fill: _, ...plain } = setup;
-      const words = shippedEncoder(setup);
-      return countingFiller(
-        setup,
-        streamEncoder(plain, words, undefined, 0),
-        new PrefixBitCounter(words),
-      );
+      return wordFiller(setup, shippedEncoder(setup));
     },
 
     growsSteadily: (setup) => setup.policy !== 'sent',

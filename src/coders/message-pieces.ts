@@ -9,6 +9,8 @@ export interface PieceSink {
   take(symbols: SymbolArray, from: number, to: number): void;
   /** It is complete. */
   end(): void;
+  /** The chunk ends and the message is not complete: what was taken may be overwritten. */
+  pause?(): void;
   /**
    * Codes whole messages, as many as it likes, from message `index` on, which begins at `symbols[from]`.
    * @returns index of the first message that it leaves
@@ -62,6 +64,7 @@ export class MessagePieces {
     this.#taken += symbols.length - from;
     if (this.#taken > this.#symbolCount || chunk.openSymbolCount !== this.#symbolCount)
       this.#refuse(this.#taken);
+    sink.pause?.();
   }
 
   /** Throws when a message is still open. */
@@ -87,6 +90,14 @@ export function wholeMessages(
   let lastSymbols: SymbolArray = new Uint8Array(0);
   let lastFrom = 0;
   let lastTo = 0;
+  const gather = (symbols: SymbolArray, from: number, to: number): void => {
+    gathered ??= newSymbolArray(
+      symbols.BYTES_PER_ELEMENT === 1 ? 256 : symbols.BYTES_PER_ELEMENT === 2 ? 65536 : 2 ** 32,
+      expected,
+    );
+    gathered.set(symbols.subarray(from, to), filled);
+    filled += to - from;
+  };
   return new MessagePieces({
     begin(symbolCount) {
       expected = symbolCount;
@@ -102,12 +113,10 @@ export function wholeMessages(
         lastTo = to;
         return;
       }
-      gathered ??= newSymbolArray(
-        symbols.BYTES_PER_ELEMENT === 1 ? 256 : symbols.BYTES_PER_ELEMENT === 2 ? 65536 : 2 ** 32,
-        expected,
-      );
-      gathered.set(symbols.subarray(from, to), filled);
-      filled += to - from;
+      gather(symbols, from, to);
+    },
+    pause() {
+      if (gathered === undefined && lastTo > lastFrom) gather(lastSymbols, lastFrom, lastTo);
     },
     end() {
       if (gathered !== undefined) code(gathered, 0, filled);

@@ -22,8 +22,8 @@ beforeAll(() => {
 
 afterAll(() => rmSync(folder, { recursive: true, force: true }));
 
-/** What the command writes to standard output. */
-async function run(...args: string[]): Promise<string> {
+/** What a command of the program writes to standard output. */
+async function say(...args: string[]): Promise<string> {
   const written: string[] = [];
   const real = process.stdout.write;
   process.stdout.write = ((text: string, done?: unknown) => {
@@ -32,12 +32,14 @@ async function run(...args: string[]): Promise<string> {
     return true;
   }) as typeof process.stdout.write;
   try {
-    await buildProgram().parseAsync(['node', 'bitassay', 'export', ...args]);
+    await buildProgram().parseAsync(['node', 'bitassay', ...args]);
   } finally {
     process.stdout.write = real;
   }
   return written.join('');
 }
+
+const run = (...args: string[]): Promise<string> => say('export', ...args);
 
 describe('bitassay export', () => {
   const patience = { timeout: 120_000 };
@@ -194,13 +196,7 @@ describe('bitassay export', () => {
         ].join('\n'),
       );
       const to = join(folder, 'door.run');
-      const silenced = process.stdout.write;
-      process.stdout.write = (() => true) as typeof process.stdout.write;
-      try {
-        await buildProgram().parseAsync(['node', 'bitassay', 'run', plan, '-o', to]);
-      } finally {
-        process.stdout.write = silenced;
-      }
+      await say('run', plan, '-o', to);
       const said = await run(to, '--cell', 'huffman', '--to', 'json', '-o', join(folder, 'cell'));
       expect(said).toMatch(/^huffman, tables [0-9a-f]{8}: .* on the test part/);
       await expect(run(to, '--cell', 'arith', '-o', join(folder, 'none'))).rejects.toThrow(

@@ -1,8 +1,9 @@
 /** `bitassay adopt`, `gate` and `history` on runs as they lie in their folders. */
 import { existsSync, mkdirSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
-import { join } from 'node:path';
+import { dirname, join } from 'node:path';
 import { afterEach, beforeEach, describe, expect, it, vi } from 'vitest';
+import { baselineBeside } from '../../src/cli/commands/adopt.ts';
 import { CommandEnd } from '../../src/cli/exit.ts';
 import { buildProgram } from '../../src/cli/program.ts';
 import { InputError } from '../../src/errors/errors.ts';
@@ -56,6 +57,16 @@ async function say(...args: string[]): Promise<{ text: string; notes: string; co
 const lines = (name: string): string[] => readFileSync(at(name), 'utf8').trimEnd().split('\n');
 
 describe('adopt', () => {
+  it.each([
+    ['plan.run', 'bitassay.baseline.json'],
+    ['a/plan.run/', 'a/bitassay.baseline.json'],
+    ['a/plan.run/run.json', 'a/bitassay.baseline.json'],
+    ['../plan.run', '../bitassay.baseline.json'],
+    ['.', join(dirname(process.cwd()), 'bitassay.baseline.json')],
+  ])('looks for the baseline of %s in %s', (run, file) => {
+    expect(baselineBeside(run)).toBe(join(file));
+  });
+
   it('writes the baseline beside the run’s folder, and adds a line to the history', async () => {
     const run = leave('plan.run', 1000);
     const { text, code } = await say('adopt', run);

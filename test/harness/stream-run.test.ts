@@ -118,7 +118,11 @@ describe('a cell that is run in pieces', () => {
           }
         },
       ),
-      { numRuns: 25 },
+      {
+        numRuns: 25,
+        // A line that ends with its chunk, whose end comes with the next: its symbols must have been copied.
+        examples: [[[711, 1], { messages: 'lines' }, undefined, 2, false, 4]],
+      },
     );
     expect(readdirSync(coded)).toEqual([]);
   }, 30_000);
