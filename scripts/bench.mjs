@@ -3,7 +3,7 @@
  * every file of it, or those whose names hold one of the words given: `npm run bench -- rans`.
  * The open data files stand in the folder that BITASSAY_DATASETS names.
  */
-import { readdirSync, rmSync } from 'node:fs';
+import { copyFileSync, readdirSync, rmSync } from 'node:fs';
 import { join } from 'node:path';
 import { ensureDatasets } from './datasets.mjs';
 import { ensureInstalled, main, root, runNode, SetupError, tsc } from './ensure.mjs';
@@ -22,6 +22,8 @@ await main(async () => {
   if (tsc(['-p', 'tsconfig.bench.json']).status !== 0) {
     throw new SetupError('The benchmarks do not compile: the compiler says why above.');
   }
+  // The program reads its version from the package file two folders up.
+  copyFileSync(join(root, 'package.json'), join(root, '.bench', 'package.json'));
   const env = { ...process.env, BITASSAY_DATASETS: await ensureDatasets() };
   const failed = names.filter((name) => {
     console.log(`\n${name}`);
