@@ -23,6 +23,14 @@ export interface Why {
   readonly lines: readonly LineDifference[];
 }
 
+/** Names shown where there are many. */
+const MOST_NAMES = 6;
+
+function listed(names: readonly string[]): string {
+  const more = names.length - MOST_NAMES;
+  return more <= 0 ? names.join(', ') : `${names.slice(0, MOST_NAMES).join(', ')} and ${more} more`;
+}
+
 /** The cell that a text names: its whole id, or a part that only one has. */
 export function cellNamed(record: RunRecord, text: string): CellRecord {
   const exact = record.cells.find((cell) => cell.id === text);
@@ -33,7 +41,7 @@ export function cellNamed(record: RunRecord, text: string): CellRecord {
     `${text} names ${found.length === 0 ? 'no' : found.length} cells of this run`,
     {
       expected: 'the id of a cell, or a part that only one has',
-      got: found.length === 0 ? text : found.map((cell) => cell.id).join(', '),
+      got: found.length === 0 ? text : listed(found.map((cell) => cell.id)),
       advice: 'The table of `bitassay run` and the key cells in run.json have the ids.',
     },
   );

@@ -94,6 +94,17 @@ function exportCommand(run: string, choices: readonly CorpusChoice[]): string | 
     : `bitassay export ${run} --cell ${cell.id} --to c --prove -o tables`;
 }
 
+/** What a choice can bring about that no figure shows. */
+function cautionOf(choices: readonly CorpusChoice[]): string {
+  const shares = choices.some(
+    ({ pick }) => pick !== undefined && (pick.cell.tables === 'primed' || !pick.cell.decodes_alone),
+  );
+  const shared = shares
+    ? ' A pick here shares state between messages: across security domains that tells one side about the other.'
+    : '';
+  return `If messages are encrypted after coding, their lengths still tell of their content.${shared} A decoder is an attack surface: bound its output, and give messages a check of their own.`;
+}
+
 /** The screen of `bitassay choose`. */
 export function chooseScreen(
   record: RunRecord,
@@ -115,6 +126,7 @@ export function chooseScreen(
       columns,
     ),
   );
+  lines.push(...paragraph(cautionOf(choice.corpora), columns));
   const next = exportCommand(run, choice.corpora);
   if (next !== undefined) lines.push(` Next: ${next}`);
   return `${lines.join('\n')}\n`;

@@ -197,6 +197,11 @@ describe('bitassay export', () => {
       );
       const to = join(folder, 'door.run');
       await say('run', plan, '-o', to);
+      await say('choose', to);
+      // The pick of least rate is arith, which this range keeps from being exported.
+      await expect(run(to, '-o', join(folder, 'none'))).rejects.toThrow(/only range=32/);
+      rmSync(join(to, 'choice.json'));
+      expect(await run(to, '--to', 'json', '-o', join(folder, 'cell'))).toMatch(/^huffman, tables/);
       const said = await run(to, '--cell', 'huffman', '--to', 'json', '-o', join(folder, 'cell'));
       expect(said).toMatch(/^huffman, tables [0-9a-f]{8}: .* on the test part/);
       await expect(run(to, '--cell', 'arith', '-o', join(folder, 'none'))).rejects.toThrow(

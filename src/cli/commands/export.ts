@@ -1,8 +1,10 @@
 import { existsSync } from 'node:fs';
-import { join } from 'node:path';
+import { readFile } from 'node:fs/promises';
+import { dirname, join } from 'node:path';
 import { type Command, Option } from 'commander';
 import { type Candidate, parseCandidate } from '../../coders/candidate.ts';
 import { exportableCoders, whyNotExported } from '../../coders/exported.ts';
+import { choiceSchema } from '../../compare/choice.ts';
 import { readPlan } from '../../corpus/plan.ts';
 import { InputError } from '../../errors/errors.ts';
 import { type ExportFormat, exportFiles } from '../../export/export-files.ts';
@@ -44,6 +46,14 @@ function planBeside(run: string): string {
     expected: `${stem}.yaml`,
     advice: 'Give it with --plan FILE.',
   });
+}
+
+/** What was chosen from a run, where `choose` left its choice beside the record. */
+async function chosenCells(run: string): Promise<string[]> {
+  const file = join(run.endsWith('.json') ? dirname(run) : run, 'choice.json');
+  if (!existsSync(file)) return [];
+  const parsed = choiceSchema.safeParse(JSON.parse(await readFile(file, 'utf8')));
+  return parsed.success ? parsed.data.corpora.flatMap(({ pick }) => pick ?? []) : [];
 }
 
 /** The cell that is meant: the one named, else the verified one of least rate that can be exported. */
@@ -95,7 +105,8 @@ function cellOf(record: RunRecord, text: string | undefined): CellRecord {
 
 async function subjectOfRun(run: string, options: ExportOptions): Promise<ExportSubject> {
   const record = await readRunRecord(run);
-  const cell = cellOf(record, options.cell);
+  const chosen = options.cell === undefined ? await chosenCells(run) : [];
+  const cell = cellOf(record, options.cell ?? (chosen.length === 1 ? chosen[0] : undefined));
   const request = await requestOf(await readPlan(options.plan ?? planBeside(run)));
   const key = dataKeyOfCell(cell);
   const corpus = request.corpora.find((c) => c.key === key);
@@ -227,7 +238,7 @@ export function registerExport(program: Command): void {
     .requiredOption('-o, --output <folder>', 'folder to write into')
     .option(
       '--cell <text>',
-      'the cell whose id contains this text (default: the best that can be exported)',
+      'the cell whose id contains this text (default: the one that choose picked, else the best that can be exported)',
     )
     .option('--plan <file>', 'the plan of the run, if it is not beside it')
     .option('--coder <candidate>', 'a candidate, in place of a run')
