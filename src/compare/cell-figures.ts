@@ -53,6 +53,20 @@ export class CellFigures {
     return this.#known.get(key);
   }
 
+  /**
+   * Steps of so many bytes that a link bills for one unit, or message, were it to bill in these.
+   * @returns undefined where message lengths are not known: messages that are filled, and longer than a step
+   */
+  stepsPerUnit(stepBytes: number): number | undefined {
+    const { unit_count: units, message_count: messages, message_bytes: bytes } = this.cell;
+    if (messages === undefined || bytes === undefined || messages === 0) return undefined;
+    if (units !== undefined) return bytes.max <= stepBytes ? messages / units : undefined;
+    if (this.#pairs === undefined) return undefined;
+    let steps = 0;
+    for (const bits of this.#pairs.bits) steps += Math.ceil(bits / 8 / stepBytes);
+    return steps / messages;
+  }
+
   #figure(key: FigureKey): Figure | undefined {
     switch (key) {
       case 'rate':

@@ -85,6 +85,34 @@ function costSensitivity(
   return { key: `cost.${key}`, at, stretches: merged(points) };
 }
 
+/** Steps between half and twice the plan's that are tried at most; all of them where there are fewer. */
+const MOST_STEPS = 256;
+
+/** How the pick changes with the step in which the link bills; undefined where message lengths are not known for every step. */
+function stepSensitivity(
+  meeting: readonly Alternative[],
+  goal: Goal,
+  terms: ChoiceTerms,
+  at: number,
+): Sensitivity | undefined {
+  const [least, most] = [Math.max(1, Math.ceil(LEAST_FACTOR * at)), MOST_FACTOR * at];
+  const stride = Math.max(1, Math.ceil((most - least) / MOST_STEPS));
+  const points: { from: number; to: number; pick: string | undefined }[] = [];
+  for (let step = least; step <= most; step += stride) {
+    const billed = meeting.map((alternative) => {
+      const stepsPerUnit = alternative.figures.stepsPerUnit(step);
+      const { cell } = alternative;
+      if (stepsPerUnit === undefined || cell.billing === undefined) return undefined;
+      const billing = { ...cell.billing, step_bytes: step, steps_per_unit: stepsPerUnit };
+      return { ...alternative, cell: { ...cell, billing } };
+    });
+    if (billed.includes(undefined)) return undefined;
+    const pick = pickAmong(billed as Alternative[], goal, terms).pick?.cell.id;
+    points.push({ from: step, to: Math.min(most, step + stride), pick });
+  }
+  return { key: 'cost.bill_step_bytes', at, stretches: merged(points) };
+}
+
 /** How the pick changes as each limit and each cost goes from half to twice its value, the others kept. */
 export function sensitivities(
   alternatives: readonly Alternative[],
@@ -97,8 +125,14 @@ export function sensitivities(
     const at = cost[key];
     return at === undefined || goal !== 'yearly cost' ? [] : [{ key, at }];
   });
+  const stepBytes = cost.bill_step_bytes;
+  const step =
+    stepBytes === undefined || goal !== 'yearly cost'
+      ? undefined
+      : stepSensitivity(meeting, goal, terms, stepBytes);
   return [
     ...numericLimits(limits).map((one) => limitSensitivity(alternatives, goal, terms, limits, one)),
     ...costs.map(({ key, at }) => costSensitivity(meeting, goal, terms, key, at)),
+    ...(step === undefined ? [] : [step]),
   ];
 }

@@ -137,7 +137,8 @@ export function dominatedLines({ alternatives }: CorpusChoice, columns: number):
 /** Where the pick changes, limit by limit. */
 export function sensitivityLines(sensitivities: readonly Sensitivity[], columns: number): string[] {
   const scaling = sensitivities.filter(
-    (s) => s.key.startsWith('cost.') && s.stretches.length === 1,
+    ({ key, stretches }) =>
+      key.startsWith('cost.') && key !== 'cost.bill_step_bytes' && stretches.length === 1,
   );
   const lines = sensitivities
     .filter((s) => !scaling.includes(s))

@@ -258,6 +258,48 @@ describe('what would change the pick', () => {
     }
   });
 
+  it('finds the billing steps at which another message length pays, as trying each does', () => {
+    // Two coders of the same mean, 10 bytes: one always, one by turns 2 and 18. Equal steps favour one or the other.
+    const even = cell('even', 'a', { ...CELLS.small, rate: 4 });
+    const uneven = cell('uneven', 'a', { ...CELLS.small, rate: 4 });
+    const sized = (c: CellRecord): CellRecord => ({
+      ...c,
+      message_count: 4,
+      message_bytes: { mean: 10, p50: 10, p95: 18, p99: 18, max: 18 },
+      billing: { step_bytes: 8, steps: 8, steps_per_unit: 2, unused_share: 0 },
+    });
+    const both = recordOf([sized(even), sized(uneven)]);
+    const bitsOf = (bytes: number[]) => ({
+      bits: Float64Array.from(bytes, (b) => 8 * b),
+      symbols: new Float64Array(4).fill(10),
+    });
+    const lengths = { even: [10, 10, 10, 10], uneven: [2, 18, 2, 18] };
+    const messages = new Map([
+      [even.id, bitsOf(lengths.even)],
+      [uneven.id, bitsOf(lengths.uneven)],
+    ]);
+    const own: ChoiceTerms = {
+      limits: {},
+      cost: { price_per_megabyte: 1, units_per_day: 1, bill_step_bytes: 8 },
+      end: 'encoder',
+    };
+    const { alternatives, goal } = chooseForCorpus(both, messages, 'a', own);
+    const step = sensitivities(alternatives, goal, own).find(
+      (s) => s.key === 'cost.bill_step_bytes',
+    )!;
+    const stepsOf = (bytes: number[], size: number) =>
+      bytes.reduce((sum, b) => sum + Math.ceil(b / size), 0);
+    for (let size = 4; size <= 16; size++) {
+      const difference = stepsOf(lengths.even, size) - stepsOf(lengths.uneven, size);
+      const { pick } = step.stretches.find(
+        ({ from, to }) => from <= size && (size < to || to === 16),
+      )!;
+      // Where both need as many, memory and speed are equal too, and the name decides.
+      expect(pick, String(size)).toBe(difference <= 0 ? even.id : uneven.id);
+    }
+    expect(step.stretches.length).toBeGreaterThan(1);
+  });
+
   it('includes costs, which change the amount and not the pick', () => {
     const found = of({}, { price_per_megabyte: 2, units_per_day: 10, devices: 3 });
     expect(found.map(({ key, stretches }) => [key, stretches.length])).toEqual([
