@@ -51,6 +51,16 @@ export function workerEntry(): URL | undefined {
 }
 
 /**
+ * The pool asks for its worker by `require` first. Where the engine takes modules that way, a worker that is ended while one is
+ * being linked brings the whole process down (seen with Node 20.20: "IsGraphAsync must be used on an instantiated module"); refused,
+ * the pool imports it, which can be ended at any time.
+ */
+const NO_REQUIRED_MODULES = '--no-experimental-require-module';
+const ASYNCHRONOUS_LOADING = process.allowedNodeEnvironmentFlags.has(NO_REQUIRED_MODULES)
+  ? [NO_REQUIRED_MODULES]
+  : [];
+
+/**
  * Does the work in a pool of worker threads, so that a cell that crashes, hangs, ends its process or exceeds its budget is
  * one failed cell, and the others are right. What it cannot hold off: native code that ends the whole process, or a machine
  * whose memory is gone before the watch sees it.
@@ -97,7 +107,7 @@ export class WorkerPool implements Executor {
       maxThreads: this.lanes,
       idleTimeout: Number.POSITIVE_INFINITY,
       concurrentTasksPerWorker: 1,
-      execArgv: [],
+      execArgv: ASYNCHRONOUS_LOADING,
       recordTiming: false,
       workerData: this.#setup,
       resourceLimits: {
