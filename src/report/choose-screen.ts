@@ -63,6 +63,10 @@ function corpusLines(
   const currency = record.plan.cost?.currency ?? 'of the plan’s currency';
   // Every pair is in choice.json; a reader who has the pick wants those that it is part of.
   const own = choice.breakEvens.filter((b) => [b.cheaper, b.smaller].includes(pick.cell.id));
+  const changes = sensitivityLines(choice.sensitivities, columns);
+  const stepAsked = record.plan.cost?.bill_step_bytes !== undefined;
+  if (stepAsked && !choice.sensitivities.some(({ key }) => key === 'cost.bill_step_bytes'))
+    changes.push(' bill step bytes: not tried, since message lengths are not known for every step');
   const breakEvens = breakEvenLines(own, currency, columns);
   return [
     heading(
@@ -75,10 +79,7 @@ function corpusLines(
     ...section('Room under each limit', pick.verdicts.length === 0 ? [] : roomTable(pick)),
     ...section('Cells that no other beats in everything', frontTable(choice, columns)),
     ...section('Beaten', dominatedLines(choice, columns)),
-    ...section(
-      'Pick as one limit or cost changes',
-      sensitivityLines(choice.sensitivities, columns),
-    ),
+    ...section('Pick as one limit or cost changes', changes),
     ...section('When more memory pays', breakEvens),
   ];
 }
@@ -118,7 +119,7 @@ export function chooseScreen(
   }
   lines.push(
     ...paragraph(
-      `Read so: ${END_WORDS[choice.terms.end]}. Flash, RAM and code are declared by the coders, not measured: choose ${run} --measured device.csv takes your own. A limit that a cell has no figure for counts as not met. "open": the interval reaches over the limit.`,
+      `Read so: ${END_WORDS[choice.terms.end]}. Flash, RAM and code are those of an export built on x86-64 where there is one, else estimates: choose ${run} --measured device.csv takes your own. A limit that a cell has no figure for counts as not met. "open": the interval reaches over the limit.`,
       columns,
     ),
     ...paragraph(
